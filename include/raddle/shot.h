@@ -1,0 +1,98 @@
+/* raddle/shot.h: shot files (HDF5), library raddle_shot. The layout is specified in docs/shot-file.md.
+ * One shot object serves one call at a time. HDF5 itself is not thread-safe in most builds: use shots from one thread.
+ * Usable from C17 and C++17. */
+#ifndef RADDLE_SHOT_H
+#define RADDLE_SHOT_H
+
+#include <stddef.h>
+#include <stdint.h>
+
+#include "scene.h"
+#include "settings.h"
+#include "status.h"
+
+#ifdef __cplusplus
+extern "C" {
+#endif
+
+/* ---- writing: NAME.part grows frame by frame and becomes NAME when complete ---- */
+
+typedef struct rdl_shot_writer rdl_shot_writer;
+
+enum { /* which per-frame datasets the shot holds */
+    RDL_SHOT_START = 1, RDL_SHOT_PROPOSED = 2, RDL_SHOT_DELIVERED = 4,
+    RDL_SHOT_VERDICT = 8, RDL_SHOT_WAYPOINTS = 16, RDL_SHOT_MEMORY = 32, RDL_SHOT_PICTURE = 64,
+    RDL_SHOT_STEP = 127 /* all of the above: what a recording of engine steps holds */
+};
+
+typedef struct rdl_shot_options {
+    size_t size;          /* sizeof(rdl_shot_options) */
+    unsigned contents;    /* RDL_SHOT_... bits; DELIVERED implies digest */
+    int host_bits;        /* 32 or 64: the host's number format, for the digest */
+    int deflate;          /* 0 = no compression, 1..9 (default 1) */
+    int overwrite;        /* 1: NAME may exist and is replaced on finish */
+    const char *created_by; /* UTF-8 */
+    const rdl_settings *settings; /* or NULL: no /settings */
+} rdl_shot_options;
+
+/* One frame. Positions N x 3 doubles, metres; members that the shot does not hold are ignored.
+ * waypoint_times are shares of the step in (0, 1). memory: opaque block of the engine, before the step. */
+typedef struct rdl_shot_frame {
+    double time;                /* s */
+    uint32_t picture;
+    uint8_t verdict;
+    const double *start, *proposed, *delivered;
+    size_t waypoint_count;
+    const double *waypoint_times, *waypoint_positions;
+    const void *memory;
+    size_t memory_bytes;
+} rdl_shot_frame;
+
+RDL_API void rdl_shot_options_default(rdl_shot_options *options);
+/* Creates PATH.part with the scene. Errors: RDL_FILE_EXISTS (PATH exists and overwrite is 0), RDL_WRITE_FAILED,
+ * RDL_NO_FILE, RDL_BAD_ARGUMENT, RDL_NO_MEMORY. */
+RDL_API rdl_status rdl_shot_create(const char *path, const rdl_scene *scene, const rdl_shot_options *options,
+                                   rdl_shot_writer **writer, rdl_fault *fault);
+/* Appends and flushes one frame. On error the file holds the frames before it. */
+RDL_API rdl_status rdl_shot_append(rdl_shot_writer *writer, const rdl_shot_frame *frame, rdl_fault *fault);
+/* Closes and renames PATH.part to PATH. The writer is gone afterwards, also on error. */
+RDL_API rdl_status rdl_shot_finish(rdl_shot_writer *writer, rdl_fault *fault);
+/* Closes and deletes PATH.part. NULL is fine. */
+RDL_API void rdl_shot_discard(rdl_shot_writer *writer);
+
+/* ---- reading: untrusted input, everything is checked ---- */
+
+typedef struct rdl_shot rdl_shot;
+
+typedef struct rdl_shot_info {
+    size_t frame_count, vertex_count;
+    unsigned contents;   /* RDL_SHOT_... bits found */
+    int host_bits;
+    int complete;        /* 0: a .part, or a last frame was left out */
+    const char *created_by; /* owned by the shot */
+    int has_settings;
+    rdl_settings settings;  /* as recorded, over the defaults */
+} rdl_shot_info;
+
+/* Opens PATH and checks structure, sizes, indices and parts. Errors: RDL_NO_FILE, RDL_BAD_FILE, RDL_BAD_VERSION,
+ * RDL_NO_MEMORY and the scene errors of rdl_engine_create; fault->field is the dataset, index the row. */
+RDL_API rdl_status rdl_shot_open(const char *path, rdl_shot **shot, rdl_fault *fault);
+RDL_API void rdl_shot_close(rdl_shot *shot);
+/* Owned by the shot. Where the file has no mass, 1 kg (infinity for body vertices) stands in. */
+RDL_API const rdl_scene *rdl_shot_scene(const rdl_shot *shot);
+RDL_API const rdl_shot_info *rdl_shot_describe(const rdl_shot *shot);
+/* Reads one of RDL_SHOT_START, _PROPOSED, _DELIVERED of a frame into positions (N x 3). Checks that all are finite; for
+ * delivered also the digest (RDL_BAD_DIGEST). */
+RDL_API rdl_status rdl_shot_read_positions(rdl_shot *shot, size_t frame, unsigned which, double *positions,
+                                           rdl_fault *fault);
+/* The rest of a frame: time, picture, verdict, way-points, memory. Pointers are owned by the shot until its next call;
+ * start, proposed, delivered are NULL. */
+RDL_API rdl_status rdl_shot_read_frame(rdl_shot *shot, size_t frame, rdl_shot_frame *out, rdl_fault *fault);
+
+/* SHA-256 (FIPS 180-4) over N x 3 positions as little-endian values of the host's format, row-major. */
+RDL_API void rdl_shot_digest(const double *positions, size_t vertex_count, int host_bits, uint8_t digest[32]);
+
+#ifdef __cplusplus
+}
+#endif
+#endif
