@@ -40,7 +40,9 @@ typedef struct rdl_setting_info {
 RDL_API void rdl_settings_default(rdl_settings *settings);
 /* The table: *count entries, static storage. Safe from any thread. */
 RDL_API const rdl_setting_info *rdl_settings_table(size_t *count);
-/* RDL_OK, or RDL_BAD_SETTING with fault->field = name and fault->index = its row in the table. */
+/* RDL_OK, or RDL_BAD_SETTING with fault->field = name and fault->index = its row in the table. Only members that lie
+ * wholly within settings->size are read. RDL_BAD_ARGUMENT (field "size") when size is larger than this library's struct,
+ * since it may hold a setting that the library does not know, or smaller than its own member. */
 RDL_API rdl_status rdl_settings_check(const rdl_settings *settings, rdl_fault *fault);
 
 #ifdef __cplusplus
