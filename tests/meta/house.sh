@@ -212,7 +212,8 @@ rule_docs_are_indexed() {
 
 rule_test_programs_are_in_the_build() {
     find tests -name 'test_*.c' | sort | while read -r file; do
-        grep -qF "'${file##*/}'" "$(dirname "$file")/meson.build" 2>/dev/null || echo "$file"
+        name=$(basename "$file" .c)
+        grep -qE "'(test_)?${name#test_}(\\.c)?'" "$(dirname "$file")/meson.build" 2>/dev/null || echo "$file"
     done
 }
 
