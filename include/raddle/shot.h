@@ -72,6 +72,9 @@ typedef struct rdl_shot_info {
     const char *created_by; /* owned by the shot */
     int has_settings;
     rdl_settings settings;  /* as recorded, over the defaults */
+    const char *engine_version;  /* of the recording engine, or NULL; owned by the shot */
+    const char *unknown_setting; /* first recorded setting that this version does not have, or NULL; owned by the shot */
+    int has_mass;           /* 0: the masses of the scene stand in for ones that the file does not have */
 } rdl_shot_info;
 
 /* Opens PATH and checks structure, sizes, indices and parts. Errors: RDL_NO_FILE, RDL_BAD_FILE, RDL_BAD_VERSION,

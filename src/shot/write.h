@@ -1,0 +1,31 @@
+/* shot/write.h: the writer's object and the pieces of it. Included by src/shot only. */
+#ifndef RDLI_SHOT_WRITE_H
+#define RDLI_SHOT_WRITE_H
+
+#include <hdf5.h>
+
+#include "base/memory.h"
+#include "shot/layout.h"
+
+struct rdl_shot_writer {
+    rdli_memory memory;
+    hid_t file;
+    hid_t sets[RDLI_SET_COUNT]; /* open datasets of /frames, or negative */
+    uint64_t rows[RDLI_SET_COUNT];
+    char *path, *part;          /* NAME and NAME.part */
+    size_t path_bytes, part_bytes;
+    size_t vertex_count;
+    unsigned contents;
+    int host_bits, deflate;
+    bool overwrite;
+    bool broken;                /* a write failed: the file on disk ends with the frame before it */
+};
+
+/* Everything but the frames' rows: root attributes, parts, mesh, rules, settings. False: HDF5 refused. */
+bool rdli_write_scene(rdl_shot_writer *writer, const rdl_scene *scene, const rdl_shot_options *options);
+/* The empty datasets of /frames. */
+bool rdli_write_frame_sets(rdl_shot_writer *writer);
+bool rdli_write_text(hid_t object, const char *name, const char *text);
+bool rdli_write_attribute(hid_t object, const char *name, hid_t file_type, hid_t memory_type, const void *value);
+
+#endif
