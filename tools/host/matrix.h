@@ -1,0 +1,54 @@
+/* matrix.h: symmetric sparse matrices of 3x3 blocks and of scalars, and conjugate gradients on their sum. */
+#ifndef RADDLE_TOOLS_HOST_MATRIX_H
+#define RADDLE_TOOLS_HOST_MATRIX_H
+
+#include <stddef.h>
+#include <stdint.h>
+
+/* Where the entries above the diagonal are: row i holds columns column[first[i]] .. column[first[i + 1] - 1], all > i
+ * and ascending. The lower half is the mirror image and is not stored. */
+typedef struct host_pattern {
+    size_t rows;
+    size_t *first;
+    uint32_t *column;
+} host_pattern;
+
+typedef struct host_matrix {
+    host_pattern pattern;
+    double (*block)[9];    /* row-major, one per pattern entry */
+    double (*diagonal)[9]; /* one per row, symmetric */
+} host_matrix;
+
+/* Each entry stands for itself times the 3x3 identity. */
+typedef struct host_scalars {
+    host_pattern pattern;
+    double *value, *diagonal;
+} host_scalars;
+
+/* A bending element: energy 1/2 stiffness |sum weight[i] x_i|^2 over up to four vertices. */
+typedef struct host_bend {
+    uint32_t vertex[4], count;
+    double weight[4], stiffness;
+} host_bend;
+
+typedef struct host_solver {
+    double (*pivot)[9], (*inverse)[9]; /* the preconditioner's diagonal blocks, see factor() in matrix.c */
+    double (*residual)[3], (*direction)[3], (*image)[3], (*scaled)[3];
+} host_solver;
+
+/* pairs: vertex couples in any order, repeats welcome; sorted in place. 0 when memory ran out. */
+int host_pattern_build(host_pattern *pattern, size_t rows, uint32_t (*pairs)[2], size_t pair_count);
+void host_pattern_free(host_pattern *pattern);
+/* The entry of an existing pair. */
+size_t host_pattern_find(const host_pattern *pattern, uint32_t a, uint32_t b);
+
+/* y = (A + scale B) x */
+void host_multiply(const host_matrix *a, const host_scalars *b, double scale, const double (*x)[3], double (*y)[3]);
+/* y = B x */
+void host_multiply_scalars(const host_scalars *b, const double (*x)[3], double (*y)[3]);
+/* Solves (A + scale B) x = rhs for the rows with fixed[i] == 0; x holds the first guess, and the given values of fixed
+ * rows. Ends when the preconditioned residual has fallen to tolerance times that of rhs. Returns the iterations. */
+size_t host_solve(host_solver *solver, const host_matrix *a, const host_scalars *b, double scale,
+                  const uint8_t *fixed, const double (*rhs)[3], double tolerance, size_t limit, double (*x)[3]);
+
+#endif
