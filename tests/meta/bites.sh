@@ -10,7 +10,7 @@ checks=0
 failures=0
 copy=$(mktemp -d)
 trap 'rm -rf "$copy"' EXIT
-for name in .ci .clang-format .gitignore include src tests fixtures tools docs meson.build README.md DEVELOPERS.md LICENSE; do
+for name in .ci .clang-format .gitignore include src tests tools docs meson.build README.md DEVELOPERS.md LICENSE; do
     cp -R "$root/$name" "$copy/$name"
 done
 
