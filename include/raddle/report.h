@@ -30,7 +30,8 @@ enum { /* why a pair is named */
 };
 
 /* PT: first = vertex, second = triangle. EE: first = lower edge id, second = higher edge id (edge ids: see
- * rdl_engine_edges). */
+ * rdl_engine_edges). RDL_EDGE_TRIANGLE: first = edge id, second = triangle; only with RDL_WHY_INTERSECTS_AT_START. */
+enum { RDL_EDGE_TRIANGLE = 2 };
 typedef struct rdl_named_pair {
     uint32_t kind, first, second, why;
 } rdl_named_pair;

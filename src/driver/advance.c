@@ -1,0 +1,138 @@
+/* driver/advance.c: the one loop: detect, join, solve, detect again what moved. */
+#include "driver/engine.h"
+
+/* Shares of the pass limit after which a zone that is still violated falls back to separating directions, and one
+ * without driven vertices to a rigid body. The first levels settle ordinary zones in a few passes; the fence needs
+ * passes only to find the pairs that come near, so it gets the larger part. */
+static const double fence_share = 0.3, rigid_share = 0.75;
+/* Certified zones are refined towards the nearest point this often at most. */
+enum { REFINEMENTS = 6 };
+
+static bool all_settled(const rdl_engine *engine)
+{
+    const rdli_contact *contacts = engine->contacts.data;
+    for (size_t c = 0; c < engine->contact_count; c++)
+        if (contacts[c].violated || !contacts[c].settled)
+            return false;
+    return true;
+}
+
+static void mark_zone(rdl_engine *engine, const rdli_zone *zone, uint8_t level)
+{
+    const uint32_t *order = (const uint32_t *)engine->response.zone_contacts.data + zone->contact_first;
+    rdli_contact *contacts = engine->contacts.data;
+    for (uint32_t i = 0; i < zone->contact_count; i++) {
+        rdli_contact *contact = &contacts[order[i]];
+        contact->fenced |= level >= RDL_LEVEL_FENCE;
+        contact->rigid |= level >= RDL_LEVEL_RIGID;
+        contact->settled = 0;
+    }
+}
+
+static void settle_zone(rdl_engine *engine, rdli_zone *zone)
+{
+    const uint32_t *order = (const uint32_t *)engine->response.zone_contacts.data + zone->contact_first;
+    rdli_contact *contacts = engine->contacts.data;
+    zone->settled = 1;
+    for (uint32_t i = 0; i < zone->contact_count; i++)
+        contacts[order[i]].settled = 1;
+}
+
+static uint8_t clean_passes(rdl_engine *engine, const rdli_zone *zone)
+{
+    const uint32_t *order = (const uint32_t *)engine->response.zone_contacts.data + zone->contact_first;
+    rdli_contact *contacts = engine->contacts.data;
+    uint8_t least = UINT8_MAX;
+    for (uint32_t i = 0; i < zone->contact_count; i++) {
+        uint8_t *clean = &contacts[order[i]].clean;
+        *clean = (uint8_t)(*clean + (*clean < UINT8_MAX));
+        least = *clean < least ? *clean : least;
+    }
+    return least;
+}
+
+/* More energy than the host proposed, beyond rounding: never delivered by a zone that no driven vertex feeds. */
+static bool gains_energy(const rdli_zone *zone)
+{
+    return !zone->driven && zone->energy_after > zone->energy_before * (1.0 + 1e-12);
+}
+
+static void choose_levels(rdl_engine *engine, uint64_t pass, uint64_t passes_max)
+{
+    rdli_zone *zones = engine->response.zones.data;
+    double share = (double)pass / (double)passes_max;
+    for (uint32_t z = 0; z < engine->response.zone_count; z++) {
+        rdli_zone *zone = &zones[z];
+        if (zone->settled)
+            continue;
+        if (!zone->violated) {
+            if (clean_passes(engine, zone) > REFINEMENTS)
+                settle_zone(engine, zone);
+            continue;
+        }
+        uint8_t level = zone->level;
+        if (share >= fence_share && level < RDL_LEVEL_FENCE)
+            level = RDL_LEVEL_FENCE;
+        if (share >= rigid_share && !zone->driven)
+            level = RDL_LEVEL_RIGID;
+        if (level != zone->level || level > 0)
+            mark_zone(engine, zone, level);
+        zone->level = level;
+    }
+}
+
+/* After the solve: half spaces without a common point send a zone to the next level at once. */
+static bool react(rdl_engine *engine)
+{
+    rdli_zone *zones = engine->response.zones.data;
+    bool hopeless = false;
+    for (uint32_t z = 0; z < engine->response.zone_count; z++) {
+        rdli_zone *zone = &zones[z];
+        bool gain = zone->settled && gains_energy(zone);
+        if (!zone->infeasible && !gain)
+            continue;
+        if (zone->level == RDL_LEVEL_INEQUALITY)
+            mark_zone(engine, zone, RDL_LEVEL_FENCE);
+        else if (!zone->driven && zone->level == RDL_LEVEL_FENCE)
+            mark_zone(engine, zone, RDL_LEVEL_RIGID);
+        else if (zone->infeasible && zone->driven)
+            hopeless = true;
+    }
+    return !hopeless;
+}
+
+rdl_status rdli_advance(rdl_engine *engine, const rdli_piece *piece, bool first_piece, uint64_t passes_max, bool *apart)
+{
+    rdli_look look = { .from = piece->start, .to = (const double (*)[3])piece->trial, .awake = NULL,
+        .fixed = piece->fixed, .squeeze = engine->squeeze.data, .first_piece = first_piece };
+    uint8_t *awake = engine->awake.data;
+    engine->contact_count = 0;
+    engine->response.zone_count = 0; /* those of an earlier piece */
+    *apart = false;
+    bool hopeful = true;
+    for (uint64_t pass = 0;; pass++) {
+        rdl_status status = rdli_detect(engine, &look);
+        if (status != RDL_OK)
+            return status;
+        engine->passes++;
+        double begun = rdli_now();
+        status = rdli_contacts_merge(engine, piece);
+        if (status == RDL_OK && all_settled(engine)) {
+            *apart = true;
+            return RDL_OK;
+        }
+        if (status == RDL_OK)
+            status = rdli_zones_gather(&engine->response, piece, engine->contacts.data, engine->contact_count);
+        if (status != RDL_OK || pass == passes_max || !hopeful)
+            return status;
+        choose_levels(engine, pass, passes_max);
+        rdli_contacts_expand(engine, piece, false);
+        memset(awake, 0, piece->vertex_count);
+        status = rdli_zones_solve(&engine->response, piece, engine->contacts.data, awake);
+        if (status != RDL_OK)
+            return status;
+        hopeful = react(engine);
+        look.awake = awake;
+        engine->seconds[RDL_TIME_RESPONSE] += rdli_now() - begun;
+    }
+}

@@ -1,0 +1,222 @@
+/* driver/detect.c: boxes -> candidate pairs -> touches, in parallel and in a fixed order. */
+#include "bounds/bounds.h"
+#include "driver/engine.h"
+
+enum { CHUNK = 512 }; /* pairs per task: enough to hide the hand-out, few enough to share evenly */
+
+enum { PAIR_QUIET = 0, PAIR_NEAR = 1, PAIR_HIT = 2 };
+
+void rdli_pair_vertices(const rdli_mesh *mesh, uint32_t kind, uint32_t first, uint32_t second, uint32_t vertex[4])
+{
+    if (kind == RDL_POINT_TRIANGLE) {
+        vertex[0] = first;
+        for (int k = 0; k < 3; k++)
+            vertex[k + 1] = mesh->triangles[second][k];
+    } else {
+        for (int k = 0; k < 2; k++) {
+            vertex[k] = mesh->edges[first][k];
+            vertex[k + 2] = mesh->edges[second][k];
+        }
+    }
+}
+
+double rdli_pair_gap(const rdli_mesh *mesh, uint32_t kind, uint32_t first, uint32_t second)
+{
+    return kind == RDL_POINT_TRIANGLE ? mesh->vertex_half[first] + mesh->triangle_half[second]
+                                      : mesh->edge_half[first] + mesh->edge_half[second];
+}
+
+typedef struct sweep {
+    rdl_engine *engine;
+    const rdli_look *look;
+    rdli_pairs pairs;
+    size_t total;
+    uint8_t *flags;
+    rdli_counts *counts; /* per chunk */
+    const uint32_t *indices;
+    rdli_hit *hits;
+} sweep;
+
+static void pair_at(const sweep *s, size_t index, uint32_t *kind, rdli_pair *pair)
+{
+    size_t n = s->pairs.point_triangle_count;
+    *kind = index < n ? RDL_POINT_TRIANGLE : RDL_EDGE_EDGE;
+    *pair = index < n ? s->pairs.point_triangle[index] : s->pairs.edge_edge[index - n];
+}
+
+static double squeeze_of(const rdli_look *look, const uint32_t vertex[4])
+{
+    double factor = 1.0;
+    for (int k = 0; look->squeeze != NULL && k < 4; k++)
+        if (!look->fixed[vertex[k]])
+            factor = fmin(factor, look->squeeze[vertex[k]]);
+    return factor;
+}
+
+/* Vertices that went through driven surfaces when there was no room are free to come back. */
+static bool is_released(const rdl_engine *engine, const uint32_t vertex[4])
+{
+    const uint8_t *released = engine->released.data, *driven = engine->mesh.driven;
+    bool any_released = false, any_driven = false;
+    for (int k = 0; k < 4; k++) {
+        any_released = any_released || released[vertex[k]];
+        any_driven = any_driven || driven[vertex[k]];
+    }
+    return any_released && any_driven;
+}
+
+static void load_motion(const double (*from)[3], const double (*to)[3], const uint32_t vertex[4], rdl_motion *motion)
+{
+    for (int k = 0; k < 4; k++) {
+        memcpy(motion->start[k], from[vertex[k]], sizeof motion->start[k]);
+        memcpy(motion->end[k], to[vertex[k]], sizeof motion->end[k]);
+    }
+}
+
+/* Floors are taken from the start of the step, which is not the start of every piece; and where there is no room they
+ * are squeezed. */
+static void examine(const sweep *s, uint32_t kind, const uint32_t vertex[4], double gap, rdli_examined *examined)
+{
+    const rdl_engine *engine = s->engine;
+    const rdli_look *look = s->look;
+    double share = engine->settings.path_floor_share, squeeze = squeeze_of(look, vertex);
+    rdl_motion motion;
+    load_motion(look->from, look->to, vertex, &motion);
+    rdli_examine((int)kind, &motion, gap * squeeze, share, NULL, examined);
+    if (examined->quiet || (look->first_piece && squeeze == 1.0))
+        return;
+    double begin[4][3];
+    for (int k = 0; k < 4; k++)
+        memcpy(begin[k], ((const double (*)[3])engine->start.data)[vertex[k]], sizeof begin[k]);
+    rdli_closest closest;
+    rdli_closest_points((int)kind, (const double (*)[3])begin, &closest);
+    double floor_distance[2] = { closest.distance_lo * squeeze, closest.distance_hi * squeeze };
+    rdli_examine((int)kind, &motion, gap * squeeze, share, floor_distance, examined);
+}
+
+static bool look_at(const sweep *s, size_t index, rdli_examined *examined, uint32_t *kind, rdli_pair *pair,
+                    uint32_t vertex[4])
+{
+    pair_at(s, index, kind, pair);
+    rdli_pair_vertices(&s->engine->mesh, *kind, pair->first, pair->second, vertex);
+    if (s->engine->crossing_count > 0 && is_released(s->engine, vertex))
+        return false;
+    examine(s, *kind, vertex, rdli_pair_gap(&s->engine->mesh, *kind, pair->first, pair->second), examined);
+    return true;
+}
+
+static void flag_chunk(void *data, size_t chunk, unsigned worker)
+{
+    (void)worker;
+    sweep *s = data;
+    rdli_counts *counts = &s->counts[chunk];
+    memset(counts, 0, sizeof *counts);
+    size_t end = (chunk + 1) * CHUNK < s->total ? (chunk + 1) * CHUNK : s->total;
+    for (size_t i = chunk * CHUNK; i < end; i++) {
+        rdli_examined examined;
+        rdli_pair pair;
+        uint32_t kind, vertex[4];
+        s->flags[i] = PAIR_QUIET;
+        if (!look_at(s, i, &examined, &kind, &pair, vertex))
+            continue;
+        counts->pairs++;
+        counts->decided[examined.quiet ? RDL_STAGE_DIRECTION : examined.touch.stage]++;
+        if (examined.quiet)
+            continue;
+        counts->orders[examined.touch.order < 15 ? examined.touch.order : 15]++;
+        counts->depths[examined.touch.depth < 15 ? examined.touch.depth : 15]++;
+        bool hit = examined.reaches_path || examined.below_end;
+        counts->touches += hit;
+        s->flags[i] = hit || examined.contact_at_start ? PAIR_HIT : PAIR_NEAR;
+    }
+}
+
+static void detail_chunk(void *data, size_t chunk, unsigned worker)
+{
+    (void)worker;
+    sweep *s = data;
+    rdl_engine *engine = s->engine;
+    size_t end = (chunk + 1) * CHUNK < engine->hit_count ? (chunk + 1) * CHUNK : engine->hit_count;
+    for (size_t i = chunk * CHUNK; i < end; i++) {
+        rdli_examined examined;
+        rdli_pair pair;
+        rdli_hit *hit = &s->hits[i];
+        memset(hit, 0, sizeof *hit);
+        look_at(s, s->indices[i], &examined, &hit->kind, &pair, hit->vertex);
+        hit->first = pair.first;
+        hit->second = pair.second;
+        hit->gap = rdli_pair_gap(&engine->mesh, hit->kind, pair.first, pair.second);
+        hit->start_distance[0] = examined.start_lo;
+        hit->start_distance[1] = examined.start_hi;
+        hit->floor = examined.end_floor;
+        hit->time = examined.touch.time_lo;
+        hit->reaches_path = examined.reaches_path;
+        hit->below_end = examined.below_end;
+        hit->contact_at_start = examined.contact_at_start;
+    }
+}
+
+static void add_counts(rdli_counts *sum, const rdli_counts *part)
+{
+    sum->pairs += part->pairs;
+    sum->touches += part->touches;
+    for (int k = 0; k < RDL_STAGE_COUNT; k++)
+        sum->decided[k] += part->decided[k];
+    for (int k = 0; k < 16; k++) {
+        sum->orders[k] += part->orders[k];
+        sum->depths[k] += part->depths[k];
+    }
+}
+
+static rdl_status find_touches(rdl_engine *engine, sweep *s)
+{
+    size_t chunks = (s->total + CHUNK - 1) / CHUNK;
+    if (!rdli_room_reserve(&engine->memory, &engine->flags, s->total, 1, false)
+        || !rdli_room_reserve(&engine->memory, &engine->chunk_counts, chunks, sizeof(rdli_counts), false))
+        return RDL_NO_MEMORY;
+    s->flags = engine->flags.data;
+    s->counts = engine->chunk_counts.data;
+    rdli_parallel_for(engine->workers, chunks, flag_chunk, s);
+    for (size_t c = 0; c < chunks; c++)
+        add_counts(&engine->counts, &s->counts[c]);
+    size_t count = 0;
+    for (size_t i = 0; i < s->total; i++)
+        count += s->flags[i] == PAIR_HIT;
+    if (!rdli_room_reserve(&engine->memory, &engine->indices, count, sizeof(uint32_t), false)
+        || !rdli_room_reserve(&engine->memory, &engine->hits, count, sizeof(rdli_hit), false))
+        return RDL_NO_MEMORY;
+    uint32_t *indices = engine->indices.data;
+    engine->hit_count = 0;
+    for (size_t i = 0; i < s->total; i++)
+        if (s->flags[i] == PAIR_HIT)
+            indices[engine->hit_count++] = (uint32_t)i;
+    s->indices = indices;
+    s->hits = engine->hits.data;
+    rdli_parallel_for(engine->workers, (count + CHUNK - 1) / CHUNK, detail_chunk, s);
+    return RDL_OK;
+}
+
+rdl_status rdli_detect(rdl_engine *engine, const rdli_look *look)
+{
+    engine->hit_count = 0;
+    if (rdli_cancelled(engine->workers))
+        return RDL_CANCELLED;
+    double begun = rdli_now();
+    rdli_motion motion = { look->from, look->to, look->awake };
+    rdli_mesh mesh = engine->mesh;
+    mesh.driven = look->fixed; /* pairs among fixed vertices alone are of no interest now */
+    rdli_bounds_fill(&mesh, &motion, engine->workers, &engine->boxes);
+    double boxed = rdli_now();
+    sweep s = { .engine = engine, .look = look };
+    rdl_status status = rdli_broad_pairs(engine->broad, &mesh, &engine->boxes, look->awake, &s.pairs);
+    double paired = rdli_now();
+    s.total = s.pairs.point_triangle_count + s.pairs.edge_edge_count;
+    if (status == RDL_OK && s.total > UINT32_MAX)
+        status = RDL_TOO_LARGE;
+    if (status == RDL_OK && s.total > 0)
+        status = find_touches(engine, &s);
+    engine->seconds[RDL_TIME_BOXES] += boxed - begun;
+    engine->seconds[RDL_TIME_PAIRS] += paired - boxed;
+    engine->seconds[RDL_TIME_TOUCHES] += rdli_now() - paired;
+    return status;
+}

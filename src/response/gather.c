@@ -1,0 +1,160 @@
+/* response/gather.c: union-find over movable vertices; zones as rows. */
+#include "response/response.h"
+
+void rdli_response_init(rdli_response *response, rdli_memory *memory, rdli_workers *workers)
+{
+    memset(response, 0, sizeof *response);
+    response->memory = memory;
+    response->workers = workers;
+}
+
+void rdli_response_release(rdli_response *response)
+{
+    rdli_room *rooms[] = { &response->parent, &response->stamp, &response->local, &response->zones,
+        &response->zone_contacts, &response->zone_vertices, &response->rows, &response->loads, &response->row_work,
+        &response->inverse_mass, &response->targets, &response->solutions, &response->scratch };
+    for (size_t k = 0; k < sizeof rooms / sizeof rooms[0]; k++)
+        rdli_room_release(response->memory, rooms[k]);
+}
+
+static uint32_t find_root(uint32_t *parent, uint32_t v)
+{
+    while (parent[v] != v) {
+        parent[v] = parent[parent[v]]; /* path halving */
+        v = parent[v];
+    }
+    return v;
+}
+
+/* The lower number becomes the root, so that the outcome does not depend on the order of joins. */
+static void join(uint32_t *parent, uint32_t a, uint32_t b)
+{
+    a = find_root(parent, a);
+    b = find_root(parent, b);
+    if (a < b)
+        parent[b] = a;
+    else
+        parent[a] = b;
+}
+
+static bool reserve_marks(rdli_response *response, uint32_t vertex_count)
+{
+    bool fresh = response->stamp.bytes < vertex_count * sizeof(uint32_t);
+    bool fits = rdli_room_reserve(response->memory, &response->parent, vertex_count, sizeof(uint32_t), false)
+        && rdli_room_reserve(response->memory, &response->stamp, vertex_count, sizeof(uint32_t), false)
+        && rdli_room_reserve(response->memory, &response->local, vertex_count, sizeof(uint32_t), false);
+    if (fits && (fresh || response->pass_stamp == UINT32_MAX)) {
+        memset(response->stamp.data, 0, response->stamp.bytes);
+        response->pass_stamp = 0;
+    }
+    return fits;
+}
+
+static void join_contacts(rdli_response *response, const rdli_piece *piece, const rdli_contact *contacts, size_t count)
+{
+    uint32_t *parent = response->parent.data, *stamp = response->stamp.data, now = ++response->pass_stamp;
+    for (size_t c = 0; c < count; c++) {
+        uint32_t seen = UINT32_MAX;
+        for (int k = 0; k < 4; k++) {
+            uint32_t v = contacts[c].vertex[k];
+            if (piece->fixed[v])
+                continue;
+            if (stamp[v] != now) {
+                stamp[v] = now;
+                parent[v] = v;
+            }
+            if (seen != UINT32_MAX)
+                join(parent, seen, v);
+            seen = v;
+        }
+    }
+}
+
+/* A contact between fixed vertices alone belongs to no zone. */
+static uint32_t contact_root(rdli_response *response, const rdli_piece *piece, const rdli_contact *contact)
+{
+    for (int k = 0; k < 4; k++)
+        if (!piece->fixed[contact->vertex[k]])
+            return find_root(response->parent.data, contact->vertex[k]);
+    return UINT32_MAX;
+}
+
+static void add_to_zone(rdli_zone *zone, const rdli_piece *piece, const rdli_contact *contact)
+{
+    zone->contact_count++;
+    zone->violated |= contact->violated;
+    zone->settled = zone->settled && contact->settled && !contact->violated;
+    for (int k = 0; k < 4; k++)
+        zone->driven |= piece->fixed[contact->vertex[k]] != 0;
+    uint8_t level = contact->rigid ? 2 : contact->fenced ? 1 : 0;
+    if (level > zone->level)
+        zone->level = level;
+}
+
+static void number_vertices(rdli_response *response, const rdli_piece *piece, const rdli_contact *contacts)
+{
+    rdli_zone *zones = response->zones.data;
+    const uint32_t *order = response->zone_contacts.data;
+    uint32_t *vertices = response->zone_vertices.data, *local = response->local.data, *stamp = response->stamp.data;
+    uint32_t now = ++response->pass_stamp, total = 0;
+    for (uint32_t z = 0; z < response->zone_count; z++) {
+        rdli_zone *zone = &zones[z];
+        zone->vertex_first = total;
+        for (uint32_t i = 0; i < zone->contact_count; i++) {
+            const rdli_contact *contact = &contacts[order[zone->contact_first + i]];
+            for (int k = 0; k < 4; k++) {
+                uint32_t v = contact->vertex[k];
+                if (piece->fixed[v] || stamp[v] == now)
+                    continue;
+                stamp[v] = now;
+                local[v] = total - zone->vertex_first;
+                vertices[total++] = v;
+            }
+        }
+        zone->vertex_count = total - zone->vertex_first;
+    }
+    response->vertex_total = total;
+}
+
+rdl_status rdli_zones_gather(rdli_response *response, const rdli_piece *piece, rdli_contact *contacts, size_t count)
+{
+    response->zone_count = 0;
+    response->vertex_total = 0;
+    if (!reserve_marks(response, piece->vertex_count)
+        || !rdli_room_reserve(response->memory, &response->zones, count, sizeof(rdli_zone), false)
+        || !rdli_room_reserve(response->memory, &response->zone_contacts, count, sizeof(uint32_t), false)
+        || !rdli_room_reserve(response->memory, &response->zone_vertices, 4 * count, sizeof(uint32_t), false))
+        return RDL_NO_MEMORY;
+    join_contacts(response, piece, contacts, count);
+    rdli_zone *zones = response->zones.data;
+    uint32_t *local = response->local.data, *order = response->zone_contacts.data;
+    /* local serves as zone-of-root first; a root's entry counts only when stamped in this round. */
+    uint32_t *stamp = response->stamp.data, now = ++response->pass_stamp;
+    for (size_t c = 0; c < count; c++) {
+        uint32_t root = contact_root(response, piece, &contacts[c]);
+        contacts[c].zone = UINT32_MAX;
+        if (root == UINT32_MAX)
+            continue;
+        if (stamp[root] != now) {
+            stamp[root] = now;
+            local[root] = response->zone_count;
+            memset(&zones[response->zone_count], 0, sizeof *zones);
+            zones[response->zone_count++].settled = 1;
+        }
+        contacts[c].zone = local[root];
+        add_to_zone(&zones[local[root]], piece, &contacts[c]);
+    }
+    uint32_t first = 0;
+    for (uint32_t z = 0; z < response->zone_count; z++) {
+        zones[z].contact_first = first;
+        first += zones[z].contact_count;
+        zones[z].contact_count = 0;
+    }
+    for (size_t c = 0; c < count; c++)
+        if (contacts[c].zone != UINT32_MAX) {
+            rdli_zone *zone = &zones[contacts[c].zone];
+            order[zone->contact_first + zone->contact_count++] = (uint32_t)c;
+        }
+    number_vertices(response, piece, contacts);
+    return RDL_OK;
+}

@@ -1,0 +1,103 @@
+/* response/impulses.c: velocities for hosts. Positions tell where things may be; velocities follow from central impulses
+ * at the contacts (METHODS: I = -v_n / sum a_i^2 / m_i for a single contact), which keeps both momenta. */
+#include "base/vector.h"
+#include "response/response.h"
+#include "response/solve.h"
+
+typedef struct job {
+    rdli_response *response;
+    const rdli_piece *piece;
+    const rdli_contact *contacts;
+    double restitution;
+    double (*velocity)[3];
+    double *impulse;
+} job;
+
+static double approach(const rdli_contact *contact, const double (*velocity)[3])
+{
+    double sum = 0.0;
+    for (int k = 0; k < 4; k++)
+        sum += contact->plane.weight[k] * rdli_dot(contact->plane.normal, velocity[contact->vertex[k]]);
+    return sum;
+}
+
+static bool carries_load(const rdli_contact *contact)
+{
+    double load = contact->plane.load + contact->path.load;
+    for (int d = 0; d < 4; d++)
+        load += contact->fence_load[d];
+    return load > 0.0;
+}
+
+static void set_row(const job *j, const rdli_contact *contact, rdli_row *row)
+{
+    const uint32_t *local = j->response->local.data;
+    const double (*velocity)[3] = (const double (*)[3])j->velocity;
+    memset(row, 0, sizeof *row);
+    rdli_copy(contact->plane.normal, row->normal);
+    double before = approach(contact, velocity);
+    row->bound = before < 0.0 ? -j->restitution * before : 0.0;
+    row->tolerance = 1e-13 * fabs(before);
+    for (int k = 0; k < 4; k++) {
+        uint32_t v = contact->vertex[k];
+        if (j->piece->fixed[v]) {
+            row->bound -= contact->plane.weight[k] * rdli_dot(row->normal, velocity[v]);
+        } else {
+            row->weight[k] = contact->plane.weight[k];
+            row->vertex[k] = local[v];
+        }
+    }
+}
+
+static void solve_zone(void *data, size_t index, unsigned worker)
+{
+    (void)worker;
+    const job *j = data;
+    rdli_response *r = j->response;
+    const rdli_zone *zone = (const rdli_zone *)r->zones.data + index;
+    const uint32_t *order = (const uint32_t *)r->zone_contacts.data + zone->contact_first;
+    const uint32_t *vertices = (const uint32_t *)r->zone_vertices.data + zone->vertex_first;
+    double (*target)[3] = (double (*)[3])r->targets.data + zone->vertex_first;
+    double *inverse = (double *)r->inverse_mass.data + zone->vertex_first;
+    double *load = (double *)r->loads.data + zone->row_first;
+    rdli_row *rows = (rdli_row *)r->rows.data + zone->row_first;
+    uint32_t row = 0;
+    for (uint32_t i = 0; i < zone->contact_count; i++)
+        if (carries_load(&j->contacts[order[i]])) {
+            load[row] = 0.0;
+            set_row(j, &j->contacts[order[i]], &rows[row++]);
+        }
+    if (row == 0)
+        return;
+    double fastest = 0.0;
+    for (uint32_t i = 0; i < zone->vertex_count; i++) {
+        inverse[i] = 1.0 / j->piece->mass[vertices[i]];
+        rdli_copy((const double *)j->velocity[vertices[i]], target[i]);
+        fastest = fmax(fastest, rdli_length(target[i]));
+    }
+    for (uint32_t k = 0; k < row; k++)
+        rows[k].tolerance = fmax(rows[k].tolerance, fastest * 0x1p-48);
+    rdli_problem problem = { zone->vertex_count, row, inverse, (const double (*)[3])target, rows, load,
+        (double (*)[3])r->solutions.data + zone->vertex_first, (double (*)[3])r->scratch.data + zone->vertex_first,
+        (double *)r->row_work.data + 4 * (size_t)zone->row_first, j->piece->sweeps_max };
+    rdli_solve(&problem);
+    row = 0;
+    for (uint32_t i = 0; i < zone->contact_count; i++)
+        if (carries_load(&j->contacts[order[i]]))
+            j->impulse[order[i]] = load[row++];
+    for (uint32_t i = 0; i < zone->vertex_count; i++)
+        rdli_copy(problem.solution[i], j->velocity[vertices[i]]);
+}
+
+rdl_status rdli_zones_impulses(rdli_response *r, const rdli_piece *piece, const rdli_contact *contacts, size_t count,
+                               double restitution, double (*velocity)[3], double *impulse)
+{
+    /* Rooms for rows and vertices were made by the last position solve, which had at least as many rows. */
+    for (size_t c = 0; c < count; c++)
+        impulse[c] = 0.0;
+    if (r->row_total == 0)
+        return RDL_OK;
+    job j = { r, piece, contacts, restitution, velocity, impulse };
+    rdli_parallel_for(r->workers, r->zone_count, solve_zone, &j);
+    return RDL_OK;
+}

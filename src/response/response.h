@@ -1,0 +1,59 @@
+/* response/response.h: contacts -> zones -> corrected positions. Included by driver only. */
+#ifndef RDLI_RESPONSE_H
+#define RDLI_RESPONSE_H
+
+#include "base/workers.h"
+#include "flow/contacts.h"
+
+typedef struct rdli_response {
+    rdli_memory *memory;
+    rdli_workers *workers;
+    rdli_room parent, stamp, local;      /* per vertex: union-find, pass in which it was last seen, number in its zone */
+    uint32_t pass_stamp;
+    rdli_room zones, zone_contacts, zone_vertices;
+    rdli_room rows, loads, row_work, inverse_mass, targets, solutions, scratch;
+    uint32_t zone_count;
+    size_t row_total, vertex_total;
+} rdli_response;
+
+/* What the zones need to know about one piece of a step. */
+typedef struct rdli_piece {
+    uint32_t vertex_count;
+    const uint8_t *fixed;       /* driven, or held in this step */
+    const double *mass;         /* kg */
+    const double (*start)[3];   /* certified start of the piece, m */
+    const double (*target)[3];  /* where the host wants the vertices at the end of the piece, m */
+    double (*trial)[3];         /* in/out: the present answer, representable in the delivered format, m */
+    int format;                 /* RDL_FLOAT32 or RDL_FLOAT64 */
+    double aim_margin;
+    uint32_t sweeps_max;
+} rdli_piece;
+
+void rdli_response_init(rdli_response *response, rdli_memory *memory, rdli_workers *workers);
+void rdli_response_release(rdli_response *response);
+
+/* Joins contacts that share movable vertices into zones, in the order of the contact list; sets contact.zone and the
+ * flags of each zone. RDL_NO_MEMORY on failure. */
+rdl_status rdli_zones_gather(rdli_response *response, const rdli_piece *piece, rdli_contact *contacts, size_t count);
+
+/* Solves every zone that is not settled, in parallel, and writes the rounded answer into piece->trial. awake gets 1 for
+ * each vertex whose trial bits changed (entries are only set, never cleared). Sets zone results, and settled of the
+ * contacts. */
+rdl_status rdli_zones_solve(rdli_response *response, const rdli_piece *piece, rdli_contact *contacts, uint8_t *awake);
+
+/* Velocity impulses of the contacts that carry load: for each zone the smallest impulses along the contact normals with
+ * which no contact approaches (restitution 0), or separates at `restitution` times its approach. `velocity` (in/out, m per
+ * step) gets M^-1 J' impulse added; contact.plane must be up to date with the delivered positions; impulse[c] gets the
+ * impulse of contact c (kg m per step). */
+rdl_status rdli_zones_impulses(rdli_response *response, const rdli_piece *piece, const rdli_contact *contacts, size_t count,
+                               double restitution, double (*velocity)[3], double *impulse);
+
+/* The rigid motion nearest to the targets in the mass metric (Provot 1997; Bridson et al. 2002): linear and angular
+ * momentum of target - start are kept. The rotation is the Cayley transform of the angular displacement, below 120
+ * degrees, so that distances inside the zone keep half of themselves along the straight paths. All vertices must be
+ * movable. count vertices, listed by global number. Ends are rounded, which may shorten distances: the zone grows about
+ * its centre by what rounding can take from smallest_floor (m), a relative 1e-12 or so for doubles. */
+void rdli_rigid_motion(const rdli_piece *piece, const uint32_t *vertices, size_t count, double smallest_floor,
+                       double (*solution)[3]);
+
+#endif

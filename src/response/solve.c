@@ -1,0 +1,251 @@
+/* response/solve.c: see solve.h. */
+#include "response/solve.h"
+
+#include "base/vector.h"
+
+typedef struct state {
+    rdli_problem *problem;
+    double *gradient, *direction, *image, *scaled; /* row_count each: g, p, A p, scaled multipliers */
+    double step_bar;                               /* fixed step length of the projection, 1 / |A| */
+} state;
+
+static double row_value(const rdli_row *row, const double (*x)[3])
+{
+    double sum = 0.0;
+    for (int k = 0; k < 4; k++)
+        sum += row->weight[k] * rdli_dot(row->normal, x[row->vertex[k]]);
+    return sum;
+}
+
+/* scratch = M^-1 J' S v, with S the row scales. */
+static void spread(const rdli_problem *problem, const double *v)
+{
+    double (*out)[3] = problem->scratch;
+    memset(out, 0, problem->vertex_count * sizeof *out);
+    for (size_t r = 0; r < problem->row_count; r++) {
+        const rdli_row *row = &problem->rows[r];
+        double amount = row->scale * v[r];
+        if (amount == 0.0)
+            continue;
+        for (int k = 0; k < 4; k++)
+            rdli_add_scaled(out[row->vertex[k]], amount * row->weight[k], row->normal);
+    }
+    for (size_t i = 0; i < problem->vertex_count; i++)
+        for (int k = 0; k < 3; k++)
+            out[i][k] *= problem->inverse_mass[i];
+}
+
+/* image = S J M^-1 J' S v */
+static void apply(const rdli_problem *problem, const double *v, double *image)
+{
+    spread(problem, v);
+    for (size_t r = 0; r < problem->row_count; r++)
+        image[r] = problem->rows[r].scale * row_value(&problem->rows[r], (const double (*)[3])problem->scratch);
+}
+
+static void scale_rows(const rdli_problem *problem)
+{
+    for (size_t r = 0; r < problem->row_count; r++) {
+        rdli_row *row = &problem->rows[r];
+        double diagonal = 0.0, square = rdli_dot(row->normal, row->normal);
+        for (int k = 0; k < 4; k++)
+            if (row->weight[k] != 0.0)
+                diagonal += row->weight[k] * row->weight[k] * problem->inverse_mass[row->vertex[k]] * square;
+        row->scale = diagonal > 0.0 ? 1.0 / sqrt(diagonal) : 0.0;
+    }
+}
+
+/* Gershgorin bound of the scaled matrix, from absolute row sums gathered over the vertices. */
+static double norm_bound(const rdli_problem *problem)
+{
+    double (*sum)[3] = problem->scratch;
+    memset(sum, 0, problem->vertex_count * sizeof *sum);
+    for (size_t r = 0; r < problem->row_count; r++) {
+        const rdli_row *row = &problem->rows[r];
+        for (int k = 0; k < 4; k++)
+            for (int c = 0; c < 3; c++)
+                sum[row->vertex[k]][c] += row->scale * fabs(row->weight[k] * row->normal[c]);
+    }
+    double bound = 0.0;
+    for (size_t r = 0; r < problem->row_count; r++) {
+        const rdli_row *row = &problem->rows[r];
+        double total = 0.0;
+        for (int k = 0; k < 4; k++)
+            for (int c = 0; c < 3; c++)
+                total += fabs(row->weight[k] * row->normal[c]) * problem->inverse_mass[row->vertex[k]]
+                    * sum[row->vertex[k]][c];
+        bound = fmax(bound, row->scale * total);
+    }
+    return bound;
+}
+
+/* Solution and unscaled row residuals from the present multipliers; the gradient in scaled variables. */
+static double refresh(state *s)
+{
+    rdli_problem *problem = s->problem;
+    spread(problem, s->scaled);
+    for (size_t i = 0; i < problem->vertex_count; i++)
+        for (int k = 0; k < 3; k++)
+            problem->solution[i][k] = problem->target[i][k] + problem->scratch[i][k];
+    double worst = 0.0;
+    for (size_t r = 0; r < problem->row_count; r++) {
+        const rdli_row *row = &problem->rows[r];
+        double residual = row_value(row, (const double (*)[3])problem->solution) - row->bound;
+        s->gradient[r] = row->scale * residual;
+        worst = fmax(worst, -residual);
+    }
+    return worst;
+}
+
+static bool row_done(const state *s, size_t r)
+{
+    const rdli_row *row = &s->problem->rows[r];
+    double g = s->gradient[r], tolerance = row->scale * row->tolerance;
+    if (g < -tolerance)
+        return false;
+    return s->scaled[r] == 0.0 || g <= tolerance || s->scaled[r] <= s->step_bar * tolerance;
+}
+
+static bool all_done(const state *s)
+{
+    for (size_t r = 0; r < s->problem->row_count; r++)
+        if (s->problem->rows[r].scale > 0.0 && !row_done(s, r))
+            return false;
+    return true;
+}
+
+static void free_gradient(const state *s, double *out)
+{
+    for (size_t r = 0; r < s->problem->row_count; r++)
+        out[r] = s->scaled[r] > 0.0 ? s->gradient[r] : 0.0;
+}
+
+/* Square of the chopped gradient against the reduced free one: proportional iterates go on with conjugate gradients. */
+static bool is_proportional(const state *s)
+{
+    double chopped = 0.0, reduced = 0.0;
+    for (size_t r = 0; r < s->problem->row_count; r++) {
+        double g = s->gradient[r];
+        if (s->scaled[r] > 0.0)
+            reduced += g * fmin(s->scaled[r] / s->step_bar, g);
+        else if (g < 0.0)
+            chopped += g * g;
+    }
+    return chopped <= reduced;
+}
+
+static double dot(size_t n, const double *a, const double *b)
+{
+    double sum = 0.0;
+    for (size_t i = 0; i < n; i++)
+        sum += a[i] * b[i];
+    return sum;
+}
+
+/* Largest step along -direction that keeps all multipliers >= 0. */
+static double step_to_bound(const state *s)
+{
+    double step = DBL_MAX;
+    for (size_t r = 0; r < s->problem->row_count; r++)
+        if (s->direction[r] > 0.0)
+            step = fmin(step, s->scaled[r] / s->direction[r]);
+    return step;
+}
+
+static void walk(state *s, double step)
+{
+    for (size_t r = 0; r < s->problem->row_count; r++) {
+        double moved = s->scaled[r] - step * s->direction[r];
+        s->scaled[r] = moved > 0.0 ? moved : 0.0;
+        s->gradient[r] -= step * s->image[r];
+    }
+}
+
+/* Rows that no multiplier holds any more must not stay a rounding above zero. */
+static void expand(state *s, double step)
+{
+    size_t n = s->problem->row_count;
+    walk(s, step);
+    for (size_t r = 0; r < n; r++) {
+        if (s->scaled[r] > 0.0) {
+            double moved = s->scaled[r] - s->step_bar * s->gradient[r];
+            s->scaled[r] = moved > 0.0 ? moved : 0.0;
+        }
+    }
+    refresh(s);
+    free_gradient(s, s->direction);
+}
+
+/* One step; false when the direction has no curvature although the gradient wants to go on: the dual is unbounded. */
+static bool advance(state *s)
+{
+    size_t n = s->problem->row_count;
+    bool proportional = is_proportional(s);
+    if (!proportional)
+        for (size_t r = 0; r < n; r++)
+            s->direction[r] = s->scaled[r] == 0.0 && s->gradient[r] < 0.0 ? s->gradient[r] : 0.0;
+    apply(s->problem, s->direction, s->image);
+    double slope = dot(n, s->gradient, s->direction);
+    double curvature = dot(n, s->direction, s->image);
+    double size = dot(n, s->direction, s->direction);
+    /* 2^-40 of the largest possible curvature: what rounding leaves of a null direction. */
+    bool flat = !(curvature > size / s->step_bar * 0x1p-40);
+    double to_bound = step_to_bound(s);
+    if (flat && (to_bound == DBL_MAX || slope <= 0.0))
+        return false;
+    double step = flat ? 0.0 : slope / curvature;
+    if (!proportional) {
+        walk(s, step);
+        free_gradient(s, s->direction);
+    } else if (!flat && step <= to_bound) {
+        walk(s, step);
+        double beta = 0.0;
+        for (size_t r = 0; r < n; r++)
+            beta += s->scaled[r] > 0.0 ? s->gradient[r] * s->image[r] : 0.0;
+        beta /= curvature;
+        for (size_t r = 0; r < n; r++)
+            s->direction[r] = (s->scaled[r] > 0.0 ? s->gradient[r] : 0.0) - beta * s->direction[r];
+    } else {
+        expand(s, to_bound);
+    }
+    return true;
+}
+
+rdli_solved rdli_solve(rdli_problem *problem)
+{
+    size_t n = problem->row_count;
+    state s = { problem, problem->work, problem->work + n, problem->work + 2 * n, problem->work + 3 * n, 0.0 };
+    rdli_solved solved = { 0, false, false, 0.0, 0.0 };
+    scale_rows(problem);
+    double bound = norm_bound(problem);
+    s.step_bar = bound > 0.0 ? 1.0 / bound : 1.0;
+    memset(s.scaled, 0, n * sizeof(double));
+    solved.worst_before = refresh(&s);
+    for (size_t r = 0; r < n; r++)
+        s.scaled[r] = problem->rows[r].scale > 0.0 ? problem->load[r] / problem->rows[r].scale : 0.0;
+    refresh(&s);
+    free_gradient(&s, s.direction);
+    while (solved.sweeps < problem->sweeps_max) {
+        if (all_done(&s)) {
+            /* The recursive gradient drifts: trust only a fresh one. */
+            refresh(&s);
+            if (all_done(&s)) {
+                solved.converged = true;
+                break;
+            }
+            free_gradient(&s, s.direction);
+        }
+        solved.sweeps++;
+        if (!advance(&s)) {
+            solved.infeasible = true;
+            break;
+        }
+    }
+    for (size_t r = 0; r < n; r++)
+        problem->load[r] = s.scaled[r] * problem->rows[r].scale;
+    solved.worst_after = refresh(&s);
+    for (size_t r = 0; r < n; r++)
+        if (problem->rows[r].scale == 0.0 && problem->rows[r].bound > problem->rows[r].tolerance)
+            solved.infeasible = true;
+    return solved;
+}

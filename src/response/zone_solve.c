@@ -1,0 +1,294 @@
+/* response/zone_solve.c: contacts of a zone -> half spaces -> solve -> rounded positions. */
+#include "base/rounding.h"
+#include "base/vector.h"
+#include "raddle/query.h"
+#include "raddle/report.h"
+#include "response/response.h"
+#include "response/solve.h"
+
+typedef struct job {
+    rdli_response *response;
+    const rdli_piece *piece;
+    rdli_contact *contacts;
+    uint8_t *awake;
+} job;
+
+/* Vertex pairs (first feature, second feature) whose differences span the pair: PT 3, EE 4. */
+static const uint8_t differences[2][4][2] = { { { 0, 1 }, { 0, 2 }, { 0, 3 }, { 0, 3 } },
+                                              { { 0, 2 }, { 0, 3 }, { 1, 2 }, { 1, 3 } } };
+
+static uint32_t difference_count(uint32_t kind)
+{
+    return kind == RDL_POINT_TRIANGLE ? 3 : 4;
+}
+
+static uint32_t rows_of(const rdli_contact *contact, bool fenced)
+{
+    if (fenced)
+        return difference_count(contact->kind);
+    return contact->blocks > 1 ? 2 : 1;
+}
+
+/* What rounding to the host's format may take from normal . sum weight x: every coordinate moves by at most half a unit
+ * in the last place, and the weights of each feature sum to one. Positions of the answer are not known yet: a quarter
+ * more than the largest coordinate of start and target. */
+static double rounding_allowance(const rdli_piece *piece, const rdli_contact *contact, const double normal[3])
+{
+    double largest = 0.0;
+    for (int i = 0; i < 4; i++)
+        for (int k = 0; k < 3; k++) {
+            uint32_t v = contact->vertex[i];
+            largest = fmax(largest, fmax(fabs(piece->start[v][k]), fabs(piece->target[v][k])));
+        }
+    double spread = (fabs(normal[0]) + fabs(normal[1])) + fabs(normal[2]);
+    return 2.0 * spread * (1.25 * largest) * rdli_half_unit(piece->format);
+}
+
+static double aim_of(const rdli_piece *piece, const rdli_contact *contact, const double normal[3])
+{
+    /* The rounding of our own sums is a few units of the double format; it matters where the host's is double too. */
+    double own = piece->format == RDL_FLOAT64 ? 4.0 : 1.0;
+    return contact->floor * (1.0 + piece->aim_margin) + own * rounding_allowance(piece, contact, normal);
+}
+
+static void set_row(rdli_row *row, const job *j, const rdli_contact *contact, const double normal[3],
+                    const double weight[4])
+{
+    const rdli_piece *piece = j->piece;
+    const uint32_t *local = j->response->local.data;
+    memset(row, 0, sizeof *row);
+    rdli_copy(normal, row->normal);
+    row->bound = aim_of(piece, contact, normal);
+    for (int k = 0; k < 4; k++) {
+        uint32_t v = contact->vertex[k];
+        if (weight[k] == 0.0)
+            continue;
+        if (piece->fixed[v]) {
+            row->bound -= weight[k] * rdli_dot(normal, piece->trial[v]);
+        } else {
+            row->weight[k] = weight[k];
+            row->vertex[k] = local[v];
+        }
+    }
+    row->tolerance = 0.25 * piece->aim_margin * contact->floor;
+}
+
+static void fill_rows(const job *j, const rdli_contact *contact, bool fenced, rdli_row *rows, double *loads)
+{
+    if (!fenced) {
+        set_row(&rows[0], j, contact, contact->plane.normal, contact->plane.weight);
+        loads[0] = contact->plane.load;
+        if (contact->blocks > 1) {
+            set_row(&rows[1], j, contact, contact->path.normal, contact->path.weight);
+            loads[1] = contact->path.load;
+        }
+        return;
+    }
+    for (uint32_t d = 0; d < difference_count(contact->kind); d++) {
+        double weight[4] = { 0.0, 0.0, 0.0, 0.0 };
+        weight[differences[contact->kind][d][0]] = 1.0;
+        weight[differences[contact->kind][d][1]] = -1.0;
+        set_row(&rows[d], j, contact, contact->fence, weight);
+        loads[d] = contact->fence_load[d];
+    }
+}
+
+static void keep_loads(rdli_contact *contact, bool fenced, const double *loads)
+{
+    if (!fenced) {
+        contact->plane.load = loads[0];
+        contact->path.load = contact->blocks > 1 ? loads[1] : 0.0;
+        return;
+    }
+    for (uint32_t d = 0; d < difference_count(contact->kind); d++)
+        contact->fence_load[d] = loads[d];
+}
+
+/* A tolerance below what the positions can resolve would never be met; above a ten-millionth of the correction the
+ * answer would not be the nearest one to the promised 1e-6. */
+static void set_tolerances(rdli_problem *problem)
+{
+    double worst = 0.0, largest = 0.0;
+    for (size_t r = 0; r < problem->row_count; r++) {
+        const rdli_row *row = &problem->rows[r];
+        double value = -row->bound;
+        for (int k = 0; k < 4; k++)
+            value += row->weight[k] * rdli_dot(row->normal, problem->target[row->vertex[k]]);
+        worst = fmax(worst, -value);
+    }
+    for (size_t i = 0; i < problem->vertex_count; i++)
+        for (int k = 0; k < 3; k++)
+            largest = fmax(largest, fabs(problem->target[i][k]));
+    for (size_t r = 0; r < problem->row_count; r++) {
+        double *tolerance = &problem->rows[r].tolerance;
+        *tolerance = fmax(fmin(*tolerance, 1e-7 * worst), largest * 0x1p-48);
+    }
+}
+
+/* Kinetic energies as the squared displacements tell them, in the frame of the zone's centre of mass. */
+static void account(const job *j, rdli_zone *zone, const double (*solution)[3])
+{
+    const rdli_piece *piece = j->piece;
+    const uint32_t *vertices = (const uint32_t *)j->response->zone_vertices.data + zone->vertex_first;
+    double sum[3] = { 0.0, 0.0, 0.0 }, total = 0.0, all = 0.0, moved_sum[3] = { 0.0, 0.0, 0.0 };
+    double meant_sum[3] = { 0.0, 0.0, 0.0 }, after = 0.0, before = 0.0;
+    for (uint32_t i = 0; i < zone->vertex_count; i++) {
+        uint32_t v = vertices[i];
+        double moved[3], meant[3], pushed[3], mass = piece->mass[v];
+        rdli_subtract(solution[i], piece->start[v], moved);
+        rdli_subtract(piece->target[v], piece->start[v], meant);
+        rdli_subtract(solution[i], piece->target[v], pushed);
+        rdli_add_scaled(sum, mass, pushed);
+        rdli_add_scaled(moved_sum, mass, moved);
+        rdli_add_scaled(meant_sum, mass, meant);
+        total += mass * rdli_length(pushed);
+        all += mass;
+        after += mass * rdli_dot(moved, moved);
+        before += mass * rdli_dot(meant, meant);
+    }
+    zone->momentum_error = total > 0.0 ? rdli_length(sum) / total : 0.0;
+    zone->energy_before = 0.5 * (before - rdli_dot(meant_sum, meant_sum) / all);
+    zone->energy_after = 0.5 * (after - rdli_dot(moved_sum, moved_sum) / all);
+}
+
+/* Writes the rounded answer. Without a violation before the solve, an answer that differs by less than a ten-millionth of
+ * the correction is not written: the certified bits stay, and the zone is settled. */
+static void write_back(const job *j, rdli_zone *zone, const double (*solution)[3])
+{
+    const rdli_piece *piece = j->piece;
+    const uint32_t *vertices = (const uint32_t *)j->response->zone_vertices.data + zone->vertex_first;
+    double change = 0.0, correction = 0.0;
+    for (uint32_t i = 0; i < zone->vertex_count; i++)
+        for (int k = 0; k < 3; k++) {
+            uint32_t v = vertices[i];
+            change = fmax(change, fabs(rdli_round_to(piece->format, solution[i][k]) - piece->trial[v][k]));
+            correction = fmax(correction, fabs(solution[i][k] - piece->target[v][k]));
+        }
+    if (!zone->violated && change <= 1e-7 * correction) {
+        zone->settled = 1;
+        return;
+    }
+    bool stuck = true;
+    for (uint32_t i = 0; i < zone->vertex_count; i++) {
+        uint32_t v = vertices[i];
+        for (int k = 0; k < 3; k++) {
+            double x = rdli_round_to(piece->format, solution[i][k]);
+            if (x != piece->trial[v][k]) {
+                piece->trial[v][k] = x;
+                j->awake[v] = 1;
+                stuck = false;
+            }
+        }
+    }
+    /* A violation that the solve did not touch is still there: it must be seen again. */
+    for (uint32_t i = 0; stuck && i < zone->vertex_count; i++)
+        j->awake[vertices[i]] = 1;
+}
+
+static rdli_problem problem_of(const job *j, const rdli_zone *zone)
+{
+    rdli_response *r = j->response;
+    rdli_problem problem;
+    problem.vertex_count = zone->vertex_count;
+    problem.row_count = zone->row_count;
+    problem.inverse_mass = (double *)r->inverse_mass.data + zone->vertex_first;
+    problem.target = (const double (*)[3])((double (*)[3])r->targets.data + zone->vertex_first);
+    problem.rows = (rdli_row *)r->rows.data + zone->row_first;
+    problem.load = (double *)r->loads.data + zone->row_first;
+    problem.solution = (double (*)[3])r->solutions.data + zone->vertex_first;
+    problem.scratch = (double (*)[3])r->scratch.data + zone->vertex_first;
+    problem.work = (double *)r->row_work.data + 4 * (size_t)zone->row_first;
+    problem.sweeps_max = j->piece->sweeps_max;
+    return problem;
+}
+
+static void load_vertices(const job *j, const rdli_zone *zone, const double (*targets)[3])
+{
+    rdli_response *r = j->response;
+    const uint32_t *vertices = (const uint32_t *)r->zone_vertices.data + zone->vertex_first;
+    double *inverse = (double *)r->inverse_mass.data + zone->vertex_first;
+    double (*target)[3] = (double (*)[3])r->targets.data + zone->vertex_first;
+    for (uint32_t i = 0; i < zone->vertex_count; i++) {
+        inverse[i] = 1.0 / j->piece->mass[vertices[i]];
+        rdli_copy(targets[vertices[i]], target[i]);
+    }
+}
+
+static double smallest_floor(const job *j, const rdli_zone *zone)
+{
+    const uint32_t *order = (const uint32_t *)j->response->zone_contacts.data + zone->contact_first;
+    double floor = DBL_MAX;
+    for (uint32_t i = 0; i < zone->contact_count; i++)
+        floor = fmin(floor, j->contacts[order[i]].floor);
+    return floor;
+}
+
+static void solve_zone(void *data, size_t index, unsigned worker)
+{
+    (void)worker;
+    const job *j = data;
+    rdli_response *r = j->response;
+    rdli_zone *zone = (rdli_zone *)r->zones.data + index;
+    if (zone->settled)
+        return;
+    const uint32_t *order = (const uint32_t *)r->zone_contacts.data + zone->contact_first;
+    rdli_problem problem = problem_of(j, zone);
+    load_vertices(j, zone, j->piece->target);
+    if (zone->level == RDL_LEVEL_RIGID && !zone->driven) {
+        const uint32_t *vertices = (const uint32_t *)r->zone_vertices.data + zone->vertex_first;
+        rdli_rigid_motion(j->piece, vertices, zone->vertex_count, smallest_floor(j, zone), problem.solution);
+    } else {
+        bool fenced = zone->level >= RDL_LEVEL_FENCE;
+        uint32_t row = 0;
+        for (uint32_t i = 0; i < zone->contact_count; i++) {
+            fill_rows(j, &j->contacts[order[i]], fenced, &problem.rows[row], &problem.load[row]);
+            row += rows_of(&j->contacts[order[i]], fenced);
+        }
+        set_tolerances(&problem);
+        rdli_solved solved = rdli_solve(&problem);
+        zone->sweeps = solved.sweeps;
+        zone->infeasible = solved.infeasible;
+        zone->residual = solved.worst_before > 0.0 ? fmax(solved.worst_after, 0.0) / solved.worst_before : 0.0;
+        row = 0;
+        for (uint32_t i = 0; i < zone->contact_count; i++) {
+            keep_loads(&j->contacts[order[i]], fenced, &problem.load[row]);
+            row += rows_of(&j->contacts[order[i]], fenced);
+        }
+    }
+    account(j, zone, (const double (*)[3])problem.solution);
+    write_back(j, zone, (const double (*)[3])problem.solution);
+    for (uint32_t i = 0; i < zone->contact_count; i++)
+        j->contacts[order[i]].settled = zone->settled;
+}
+
+static rdl_status reserve_rows(rdli_response *r)
+{
+    size_t rows = r->row_total, vertices = r->vertex_total;
+    bool fits = rdli_room_reserve(r->memory, &r->rows, rows, sizeof(rdli_row), false)
+        && rdli_room_reserve(r->memory, &r->loads, rows, sizeof(double), false)
+        && rdli_room_reserve(r->memory, &r->row_work, 4 * rows, sizeof(double), false)
+        && rdli_room_reserve(r->memory, &r->inverse_mass, vertices, sizeof(double), false)
+        && rdli_room_reserve(r->memory, &r->targets, vertices, 3 * sizeof(double), false)
+        && rdli_room_reserve(r->memory, &r->solutions, vertices, 3 * sizeof(double), false)
+        && rdli_room_reserve(r->memory, &r->scratch, vertices, 3 * sizeof(double), false);
+    return fits ? RDL_OK : RDL_NO_MEMORY;
+}
+
+rdl_status rdli_zones_solve(rdli_response *r, const rdli_piece *piece, rdli_contact *contacts, uint8_t *awake)
+{
+    rdli_zone *zones = r->zones.data;
+    const uint32_t *order = r->zone_contacts.data;
+    r->row_total = 0;
+    for (uint32_t z = 0; z < r->zone_count; z++) {
+        zones[z].row_first = (uint32_t)r->row_total;
+        zones[z].row_count = 0;
+        for (uint32_t i = 0; i < zones[z].contact_count; i++)
+            zones[z].row_count += rows_of(&contacts[order[zones[z].contact_first + i]], zones[z].level >= RDL_LEVEL_FENCE);
+        r->row_total += zones[z].row_count;
+    }
+    if (reserve_rows(r) != RDL_OK)
+        return RDL_NO_MEMORY;
+    job j = { r, piece, contacts, awake };
+    rdli_parallel_for(r->workers, r->zone_count, solve_zone, &j);
+    return RDL_OK;
+}
