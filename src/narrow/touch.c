@@ -1,6 +1,7 @@
 /* narrow/touch.c: one pair's question from the cheap certificates to exact arithmetic. */
 #include "narrow/exact_pair.h"
 #include "narrow/filter.h"
+#include "narrow/interval.h"
 
 static bool exact_touch(mp_limb_t *limbs, size_t room, int kind, const rdl_motion *motion, double gap, rdl_touch *touch)
 {
@@ -38,5 +39,7 @@ void rdli_find_touch(int kind, const rdl_motion *motion, double gap, rdl_touch *
         *touch = (rdl_touch){.time_lo = 1, .time_hi = 1, .stage = stage};
         return;
     }
+    if (gap > 0 && rdli_interval_gap(kind, &scaled, shift ? ldexp(gap, shift) : gap, touch) == RDLI_SETTLED)
+        return;
     certain_touch(kind, motion, gap, touch);
 }
