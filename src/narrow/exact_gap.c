@@ -58,8 +58,6 @@ static void place_at(rdli_arena *arena, const moving *motion, rdli_int k, int64_
 {
     rdli_int rest = rdli_int_sub(arena, rdli_int_shift(arena, rdli_int_of_word(arena, 1), m), k);
     int64_t shift = motion->pair->unit - m - motion->unit;
-    local->kind = motion->pair->kind;
-    local->unit = 0;
     vector_at(arena, motion->pair->w, k, rest, shift, local->w[end]);
     vector_at(arena, motion->pair->u, k, rest, shift, local->u[end]);
     vector_at(arena, motion->pair->v, k, rest, shift, local->v[end]);
@@ -235,7 +233,7 @@ enum nearness { NEAR_NOT, NEAR_ALARM, NEAR_TOUCH };
 static enum nearness middle_of(rdli_arena *arena, const moving *motion, const node *at, const levels *level)
 {
     size_t mark = arena->used;
-    rdli_exact_pair local;
+    rdli_exact_pair local = {.kind = motion->pair->kind}; /* its other end is zero, and not looked at */
     rdli_int k = rdli_int_add(arena, rdli_int_shift(arena, at->k, 1), rdli_int_of_word(arena, 1));
     place_at(arena, motion, k, at->m + 1, 0, &local);
     rdli_ratio square = rdli_squared_distance(arena, &local, 0);
@@ -251,7 +249,7 @@ static enum nearness middle_of(rdli_arena *arena, const moving *motion, const no
 static bool node_keeps(rdli_arena *arena, const moving *motion, const node *at, const levels *level)
 {
     size_t mark = arena->used;
-    rdli_exact_pair local;
+    rdli_exact_pair local = {.kind = motion->pair->kind};
     place_at(arena, motion, at->k, at->m, 0, &local);
     place_at(arena, motion, rdli_int_add(arena, at->k, rdli_int_of_word(arena, 1)), at->m, 1, &local);
     bool keeps = interval_keeps(arena, &local, level);
