@@ -92,12 +92,13 @@ static double inner(int kind, double x[4][3])
     return fabs(dot(w, n)) / sqrt(n2);
 }
 
-double motion_distance(int kind, const rdl_motion *motion, double t)
+/* Distance of positions that are moved to unit size first, so that no square over- or underflows for want of scaling. */
+static double scaled_distance(int kind, const rdl_motion *motion, double t, int exponent)
 {
     double x[4][3];
     for (int i = 0; i < 4; i++)
         for (int k = 0; k < 3; k++)
-            x[i][k] = (1.0 - t) * motion->start[i][k] + t * motion->end[i][k];
+            x[i][k] = (1.0 - t) * ldexp(motion->start[i][k], -exponent) + t * ldexp(motion->end[i][k], -exponent);
     double best = inner(kind, x);
     if (kind == RDL_POINT_TRIANGLE) {
         for (int i = 1; i <= 3; i++)
@@ -111,12 +112,35 @@ double motion_distance(int kind, const rdl_motion *motion, double t)
     return best;
 }
 
+double motion_size(const rdl_motion *motion)
+{
+    double size = 0.0;
+    for (int i = 0; i < 4; i++)
+        for (int k = 0; k < 3; k++)
+            size = fmax(size, fmax(fabs(motion->start[i][k]), fabs(motion->end[i][k])));
+    return size;
+}
+
+static int size_exponent(const rdl_motion *motion)
+{
+    int exponent;
+    (void)frexp(motion_size(motion), &exponent);
+    return exponent;
+}
+
+double motion_distance(int kind, const rdl_motion *motion, double t)
+{
+    int exponent = size_exponent(motion);
+    return ldexp(scaled_distance(kind, motion, t, exponent), exponent);
+}
+
 double motion_least_distance(int kind, const rdl_motion *motion)
 {
     enum { SAMPLES = 24 };
+    int exponent = size_exponent(motion);
     double best = INFINITY, at = 0.0;
     for (int i = 0; i <= SAMPLES; i++) {
-        double t = (double)i / SAMPLES, d = motion_distance(kind, motion, t);
+        double t = (double)i / SAMPLES, d = scaled_distance(kind, motion, t, exponent);
         if (d < best) {
             best = d;
             at = t;
@@ -125,12 +149,12 @@ double motion_least_distance(int kind, const rdl_motion *motion)
     double lo = fmax(0.0, at - 1.0 / SAMPLES), hi = fmin(1.0, at + 1.0 / SAMPLES);
     for (int i = 0; i < 50; i++) {
         double a = lo + (hi - lo) / 3.0, b = hi - (hi - lo) / 3.0;
-        double da = motion_distance(kind, motion, a), db = motion_distance(kind, motion, b);
+        double da = scaled_distance(kind, motion, a, exponent), db = scaled_distance(kind, motion, b, exponent);
         best = fmin(best, fmin(da, db));
         if (da < db)
             hi = b;
         else
             lo = a;
     }
-    return best;
+    return ldexp(best, exponent);
 }

@@ -19,6 +19,7 @@ int motion_family_find(const char *name);
 
 /* Plain double distance of a pair at time t, and an estimate of its least value over [0, 1]: for choosing interesting
  * gaps, never for judging. */
+double motion_size(const rdl_motion *motion); /* largest coordinate */
 double motion_distance(int kind, const rdl_motion *motion, double t);
 double motion_least_distance(int kind, const rdl_motion *motion);
 
