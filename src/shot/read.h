@@ -39,7 +39,6 @@ struct rdl_shot {
     rdli_room rooms[RDLI_ROOM_COUNT];
     rdl_scene scene;
     rdl_shot_info info;
-    bool has_mass;
 };
 
 typedef struct rdli_table {

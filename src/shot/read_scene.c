@@ -294,7 +294,7 @@ static rdl_status fill_in(rdl_shot *shot, rdl_fault *fault)
         memset(part, 0, count * sizeof *part);
         scene->vertex_part = part;
     }
-    shot->has_mass = scene->mass != NULL;
+    shot->info.has_mass = scene->mass != NULL;
     if (scene->mass == NULL) {
         double *mass = room_for(shot, RDLI_ROOM_MASS, count, sizeof *mass);
         if (mass == NULL)

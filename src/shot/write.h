@@ -9,7 +9,7 @@
 
 struct rdl_shot_writer {
     rdli_memory memory;
-    hid_t file;
+    hid_t file, driver;
     hid_t sets[RDLI_SET_COUNT]; /* open datasets of /frames, or negative */
     uint64_t rows[RDLI_SET_COUNT];
     char *path, *part;          /* NAME and NAME.part */

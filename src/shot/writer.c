@@ -3,10 +3,9 @@
  * the file is readable at every moment, so that a host that is killed loses at most the frame it was writing. That mode
  * takes no new objects after it starts, and no variable-length data: hence all datasets are made first, and memory blocks
  * are spans of one dataset of bytes. */
-#define _GNU_SOURCE /* memfd_create */
-#include <sys/mman.h>
 #include <unistd.h>
 
+#include "shot/disk.h"
 #include "shot/publish.h"
 #include "shot/quiet.h"
 #include "shot/scene.h"
@@ -33,21 +32,6 @@ static rdl_status check_options(const rdl_shot_options *options, rdl_fault *faul
     return options->settings != NULL ? rdl_settings_check(options->settings, fault) : RDL_OK;
 }
 
-/* HDF5 keeps a file open for as long as it has bytes that the disk refuses, and tries again when the process exits. After
- * a failed write those bytes go into a scratch file in memory instead, so that closing works; what is on disk stays. */
-static void divert(rdl_shot_writer *writer)
-{
-    void *handle = NULL;
-    writer->broken = true;
-    int scratch = memfd_create("raddle", MFD_CLOEXEC);
-    if (scratch < 0)
-        return;
-    /* The default driver's handle is the address of its file descriptor. */
-    if (H5Fget_vfd_handle(writer->file, H5P_DEFAULT, &handle) >= 0 && handle != NULL)
-        (void)dup2(scratch, *(int *)handle);
-    close(scratch);
-}
-
 static void release(rdl_shot_writer *writer)
 {
     rdli_memory memory = writer->memory;
@@ -65,11 +49,13 @@ static bool close_file(rdl_shot_writer *writer)
             done = H5Dclose(writer->sets[k]) >= 0 && done;
     if (writer->file >= 0 && done)
         done = H5Fflush(writer->file, H5F_SCOPE_LOCAL) >= 0;
-    if (writer->file >= 0 && !done && !writer->broken)
-        divert(writer);
-    if (writer->file >= 0)
-        done = H5Fclose(writer->file) >= 0 && done;
-    return done && !writer->broken;
+    if (!done)
+        writer->broken = true;
+    if (writer->file >= 0 && H5Fclose(writer->file) < 0)
+        writer->broken = true;
+    if (writer->driver >= 0)
+        H5FDunregister(writer->driver);
+    return !writer->broken;
 }
 
 static rdl_shot_writer *new_writer(const char *path, size_t vertex_count, const rdl_shot_options *options)
@@ -83,6 +69,7 @@ static rdl_shot_writer *new_writer(const char *path, size_t vertex_count, const 
     memset(writer, 0, sizeof *writer);
     writer->memory = memory;
     writer->file = H5I_INVALID_HID;
+    writer->driver = H5I_INVALID_HID;
     for (size_t k = 0; k < RDLI_SET_COUNT; k++)
         writer->sets[k] = H5I_INVALID_HID;
     writer->path_bytes = strlen(path) + 1;
@@ -104,16 +91,14 @@ static rdl_shot_writer *new_writer(const char *path, size_t vertex_count, const 
     return writer;
 }
 
-static hid_t create_file(const char *path)
+static hid_t create_file(rdl_shot_writer *writer)
 {
     hid_t access = H5Pcreate(H5P_FILE_ACCESS), creation = H5Pcreate(H5P_FILE_CREATE);
     hid_t file = H5I_INVALID_HID;
-    /* The sec2 driver by name: HDF5_DRIVER in the environment must not change what a recording is. */
-    if (access >= 0 && creation >= 0 && H5Pset_fapl_sec2(access) >= 0 &&
+    if (access >= 0 && creation >= 0 && rdli_disk_use(access, &writer->broken, &writer->driver) &&
         H5Pset_libver_bounds(access, H5F_LIBVER_V110, H5F_LIBVER_V110) >= 0 &&
-        H5Pset_fclose_degree(access, H5F_CLOSE_STRONG) >= 0 && H5Pset_file_locking(access, true, true) >= 0 &&
-        H5Pset_obj_track_times(creation, false) >= 0)
-        file = H5Fcreate(path, H5F_ACC_TRUNC, creation, access);
+        H5Pset_fclose_degree(access, H5F_CLOSE_STRONG) >= 0 && H5Pset_obj_track_times(creation, false) >= 0)
+        file = H5Fcreate(writer->part, H5F_ACC_TRUNC, creation, access);
     if (access >= 0)
         H5Pclose(access);
     if (creation >= 0)
@@ -170,7 +155,7 @@ static bool add_rows(rdl_shot_writer *writer, rdli_set which, uint64_t count, ui
 static bool begin_file(rdl_shot_writer *writer, const rdl_scene *scene, const rdl_shot_options *options)
 {
     const uint64_t zero = 0;
-    writer->file = create_file(writer->part);
+    writer->file = create_file(writer);
     return writer->file >= 0 && rdli_write_scene(writer, scene, options) && rdli_write_frame_sets(writer) &&
            H5Fflush(writer->file, H5F_SCOPE_LOCAL) >= 0 && H5Fstart_swmr_write(writer->file) >= 0 &&
            open_sets(writer) && add_rows(writer, RDLI_SET_WAYPOINT_FIRST, 1, 1, &zero) &&
@@ -207,8 +192,6 @@ rdl_status rdl_shot_create(const char *path, const rdl_scene *scene, const rdl_s
     rdli_quiet quiet;
     rdli_quiet_begin(&quiet);
     bool begun = begin_file(made, scene, options);
-    if (!begun && made->file >= 0)
-        divert(made);
     rdli_quiet_end(&quiet);
     if (!begun) {
         rdl_shot_discard(made);
@@ -310,7 +293,7 @@ rdl_status rdl_shot_append(rdl_shot_writer *writer, const rdl_shot_frame *frame,
     rdli_quiet_begin(&quiet);
     uint64_t index = writer->rows[RDLI_SET_TIME];
     if (!write_frame(writer, frame)) {
-        divert(writer);
+        writer->broken = true;
         status = rdli_fault_set(fault, RDL_WRITE_FAILED, "file.part", index);
     }
     rdli_quiet_end(&quiet);
@@ -338,8 +321,7 @@ void rdl_shot_discard(rdl_shot_writer *writer)
         return;
     rdli_quiet quiet;
     rdli_quiet_begin(&quiet);
-    if (!writer->broken && writer->file >= 0)
-        divert(writer); /* the file is about to be deleted: a full disk must not keep it from closing */
+    writer->broken = true; /* the file is about to be deleted: nothing needs to reach it any more */
     (void)close_file(writer);
     rdli_quiet_end(&quiet);
     (void)unlink(writer->part);
