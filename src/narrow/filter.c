@@ -9,14 +9,16 @@ int rdli_scale_points(const double *x, size_t count, double *scaled)
     double largest = 0;
     for (size_t i = 0; i < count; i++)
         largest = fabs(x[i]) > largest ? fabs(x[i]) : largest;
-    if (largest == 0 || (largest > 0x1p-60 && largest < 0x1p60)) {
+    if (largest == 0 || (largest > 0x1p-20 && largest < 0x1p20)) {
         memcpy(scaled, x, count * sizeof *x);
         return 0;
     }
     int exponent;
     frexp(largest, &exponent);
+    int half = -exponent / 2; /* in two steps, because one factor may be out of range */
+    double first = ldexp(1, half), second = ldexp(1, -exponent - half);
     for (size_t i = 0; i < count; i++)
-        scaled[i] = ldexp(x[i], -exponent);
+        scaled[i] = x[i] * first * second;
     return -exponent;
 }
 

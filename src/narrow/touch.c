@@ -1,6 +1,6 @@
 /* narrow/touch.c: one pair's question from the cheap certificates to exact arithmetic. */
 #include "narrow/exact_pair.h"
-#include "narrow/filter.h"
+#include "narrow/series.h"
 #include "narrow/interval.h"
 
 static bool exact_touch(mp_limb_t *limbs, size_t room, int kind, const rdl_motion *motion, double gap, rdl_touch *touch)
@@ -34,12 +34,15 @@ void rdli_find_touch(int kind, const rdl_motion *motion, double gap, rdl_touch *
 {
     rdl_motion scaled;
     int shift = rdli_scale_points((const double *)motion, 24, (double *)&scaled);
+    double scaled_gap = shift ? ldexp(gap, shift) : gap;
     uint8_t stage;
-    if (rdli_filter_quiet(kind, &scaled, shift ? ldexp(gap, shift) : gap, &stage)) {
+    if (rdli_filter_quiet(kind, &scaled, scaled_gap, &stage)) {
         *touch = (rdl_touch){.time_lo = 1, .time_hi = 1, .stage = stage};
         return;
     }
     if (gap > 0 && rdli_interval_gap(kind, &scaled, shift ? ldexp(gap, shift) : gap, touch) == RDLI_SETTLED)
+        return;
+    if (gap > 0 && isnormal(scaled_gap) && rdli_series_touch(kind, &scaled, scaled_gap, touch))
         return;
     certain_touch(kind, motion, gap, touch);
 }
