@@ -121,7 +121,7 @@ static bool ends_keep(rdli_arena *arena, const rdli_point_segment *couple, rdli_
     for (int end = 0; end < 2; end++)
         for (int k = 0; k < 3; k++)
             rest[end][k] = rdli_int_sub(arena, couple->w[end][k], couple->u[end][k]);
-    rdli_poly far = rdli_dot(arena, rest, rest);
+    rdli_poly far = rdli_dot(arena, (const rdli_int (*)[3])rest, (const rdli_int (*)[3])rest);
     return at_least(arena, &far, level, &one);
 }
 

@@ -13,7 +13,7 @@ static void vector_between(rdli_arena *arena, const double p[3], const double q[
 }
 
 /* Sign of a . (b x c) for resting vectors. */
-static int orientation(rdli_arena *arena, const rdli_int a[2][3], const rdli_int b[2][3], const rdli_int c[2][3])
+static int orientation(rdli_arena *arena, rdli_int a[2][3], rdli_int b[2][3], rdli_int c[2][3])
 {
     size_t mark = arena->used;
     rdli_int sum = {NULL, 0};
