@@ -18,7 +18,7 @@ static int orientation(rdli_arena *arena, rdli_int a[2][3], rdli_int b[2][3], rd
     size_t mark = arena->used;
     rdli_int sum = {NULL, 0};
     for (int k = 0; k < 3; k++) {
-        rdli_poly n = rdli_cross_component(arena, b, c, k);
+        rdli_poly n = rdli_cross_component(arena, (const rdli_int (*)[3])b, (const rdli_int (*)[3])c, k);
         sum = rdli_int_add(arena, sum, rdli_int_mul(arena, a[0][k], n.c[0]));
     }
     arena->used = mark;
