@@ -1,115 +1,20 @@
-/* broad/broad.c: the engine's broad phase: three trees, their marks, the filters, the sorted lists. */
+/* broad/broad.c: the engine's broad phase: three trees, the rules, the sorted lists. */
 #include "broad/broad.h"
 
-#include "broad/walk.h"
+#include "broad/marks.h"
+#include "broad/sort.h"
 
 enum { VERTICES, EDGES, TRIANGLES, KINDS };
-
-enum { BLOCK = 512 }; /* packs per task */
-
-typedef struct marked_tree {
-    rdli_tree tree;
-    rdli_room mark_room;
-    rdli_marks *marks[RDLI_LEVELS];
-} marked_tree;
 
 struct rdli_broad {
     rdli_memory *memory;
     rdli_workers *workers;
-    marked_tree trees[KINDS];
-    rdli_walk walks[2];
-    rdli_sink sinks[2]; /* point-triangle, edge-edge */
+    const rdli_kernels *kernels;
+    rdli_marked_tree trees[KINDS];
+    rdli_walk walks[2]; /* point-triangle, edge-edge */
+    rdli_sink sinks[2];
+    rdli_sort sort;
 };
-
-typedef struct rules {
-    const rdli_mesh *mesh;
-    const uint8_t *awake;
-} rules;
-
-typedef struct mark_job {
-    marked_tree *tree;
-    const rules *rules;
-    unsigned kind, level;
-} mark_job;
-
-/* The vertices of an element. */
-static unsigned vertices_of(const rdli_mesh *mesh, unsigned kind, uint32_t element, const uint32_t **own)
-{
-    if (kind == EDGES) {
-        *own = mesh->edges[element];
-        return 2;
-    }
-    *own = mesh->triangles[element];
-    return 3;
-}
-
-static void mark_element(const mark_job *job, uint32_t element, bool *driven, bool *awake)
-{
-    const rules *r = job->rules;
-    const uint32_t *vertices = &element;
-    unsigned count = job->kind == VERTICES ? 1 : vertices_of(r->mesh, job->kind, element, &vertices);
-    *driven = true;
-    *awake = r->awake == NULL;
-    for (unsigned i = 0; i < count; i++) {
-        *driven &= r->mesh->driven[vertices[i]] != 0;
-        *awake |= r->awake != NULL && r->awake[vertices[i]] != 0;
-    }
-}
-
-static void mark_block(void *data, size_t block, unsigned worker)
-{
-    (void)worker;
-    const mark_job *job = data;
-    const rdli_tree *tree = &job->tree->tree;
-    size_t count = tree->pack_count[job->level], end = (block + 1) * BLOCK < count ? (block + 1) * BLOCK : count;
-    size_t inner = job->level == 0 ? tree->count : tree->pack_count[job->level - 1];
-    for (size_t p = block * BLOCK; p < end; p++) {
-        unsigned driven_bits = 0, awake_bits = 0;
-        for (unsigned i = 0; i < RDLI_WIDE && p * RDLI_WIDE + i < inner; i++) {
-            size_t child = p * RDLI_WIDE + i;
-            bool driven, awake;
-            if (job->level == 0) {
-                mark_element(job, tree->order[child], &driven, &awake);
-            } else {
-                const rdli_marks *below = &job->tree->marks[job->level - 1][child];
-                size_t under = job->level == 1 ? tree->count : tree->pack_count[job->level - 2];
-                size_t used = under - child * RDLI_WIDE < RDLI_WIDE ? under - child * RDLI_WIDE : RDLI_WIDE;
-                driven = below->driven == 0xFFu >> (RDLI_WIDE - used);
-                awake = below->awake != 0;
-            }
-            driven_bits |= (unsigned)driven << i;
-            awake_bits |= (unsigned)awake << i;
-        }
-        job->tree->marks[job->level][p] = (rdli_marks){(uint8_t)driven_bits, (uint8_t)awake_bits};
-    }
-}
-
-static rdl_status prepare_tree(rdli_broad *broad, unsigned kind, const rdl_box *boxes, uint32_t count, const rules *r)
-{
-    marked_tree *marked = &broad->trees[kind];
-    rdli_tree *tree = &marked->tree;
-    if (tree->count != count || tree->levels == 0) {
-        rdl_status status = rdli_tree_build(broad->memory, broad->workers, tree, boxes, count);
-        if (status != RDL_OK)
-            return status;
-    } else {
-        rdli_tree_update(broad->workers, tree, boxes);
-    }
-    size_t packs = 0;
-    for (unsigned level = 0; level < tree->levels; level++)
-        packs += tree->pack_count[level];
-    if (!rdli_room_reserve(broad->memory, &marked->mark_room, packs, sizeof(rdli_marks), false))
-        return RDL_NO_MEMORY;
-    rdli_marks *next = marked->mark_room.data;
-    mark_job job = {marked, r, kind, 0};
-    for (unsigned level = 0; level < tree->levels; level++) {
-        marked->marks[level] = next;
-        next += tree->pack_count[level];
-        job.level = level;
-        rdli_parallel_for(broad->workers, ((size_t)tree->pack_count[level] + BLOCK - 1) / BLOCK, mark_block, &job);
-    }
-    return RDL_OK;
-}
 
 static bool attached(const rdli_mesh *mesh, uint32_t v, uint32_t w)
 {
@@ -126,65 +31,62 @@ static bool attached(const rdli_mesh *mesh, uint32_t v, uint32_t w)
     return false;
 }
 
-/* The rules that depend on the vertices alone; a and b lie in the parts of a[0] and b[0]. */
-static bool may_meet(const rules *r, const uint32_t *a, unsigned count_a, const uint32_t *b, unsigned count_b)
+static bool muted(const rdli_mesh *mesh, uint32_t part, uint32_t other)
 {
-    const rdli_mesh *mesh = r->mesh;
-    bool driven = true, awake = r->awake == NULL;
-    for (unsigned i = 0; i < count_a; i++) {
-        driven &= mesh->driven[a[i]] != 0;
-        awake |= r->awake != NULL && r->awake[a[i]] != 0;
-    }
-    for (unsigned j = 0; j < count_b; j++) {
-        driven &= mesh->driven[b[j]] != 0;
-        awake |= r->awake != NULL && r->awake[b[j]] != 0;
-    }
-    if (driven || !awake)
+    uint64_t bit = (uint64_t)part * mesh->part_count + other;
+    return mesh->muted[bit / 64] >> (bit % 64) & 1;
+}
+
+/* All vertices of an element are of one part. */
+static bool may_meet(const rdli_mesh *mesh, const uint32_t *a, unsigned count_a, const uint32_t *b, unsigned count_b)
+{
+    if (muted(mesh, mesh->vertex_part[a[0]], mesh->vertex_part[b[0]]))
         return false;
-    uint64_t bit = (uint64_t)mesh->vertex_part[a[0]] * mesh->part_count + mesh->vertex_part[b[0]];
-    if (mesh->muted[bit / 64] >> (bit % 64) & 1)
-        return false;
-    for (unsigned i = 0; i < count_a; i++)
+    for (unsigned i = 0; mesh->attachment_count != 0 && i < count_a; i++)
         for (unsigned j = 0; j < count_b; j++)
-            if (a[i] == b[j] || (mesh->attachment_count != 0 && attached(mesh, a[i], b[j])))
+            if (attached(mesh, a[i], b[j]))
                 return false;
     return true;
 }
 
-static bool keep_edge_edge(const void *data, uint32_t a, uint32_t b)
+static bool keep_edge_edge(const void *mesh, const uint32_t *a, const uint32_t *b)
 {
-    const rules *r = data;
-    return may_meet(r, r->mesh->edges[a], 2, r->mesh->edges[b], 2);
+    return may_meet(mesh, a, 2, b, 2);
 }
 
-static bool keep_point_triangle(const void *data, uint32_t vertex, uint32_t triangle)
+static bool keep_point_triangle(const void *mesh, const uint32_t *a, const uint32_t *b)
 {
-    const rules *r = data;
-    return may_meet(r, &vertex, 1, r->mesh->triangles[triangle], 3);
+    return may_meet(mesh, a, 1, b, 3);
 }
 
-static void set_side(rdli_side *side, const marked_tree *marked)
+static bool any_muted(const rdli_mesh *mesh)
 {
-    side->tree = &marked->tree;
-    for (unsigned level = 0; level < marked->tree.levels; level++)
-        side->marks[level] = marked->marks[level];
+    uint64_t bits = (uint64_t)mesh->part_count * mesh->part_count;
+    for (uint64_t w = 0; w < (bits + 63) / 64; w++)
+        if (mesh->muted[w] != 0)
+            return true;
+    return false;
 }
 
 /* Walks trees a and b; the sorted list goes to *list. */
-static rdl_status collect(rdli_broad *broad, unsigned which, unsigned a, unsigned b, rdli_keep *keep, const rules *r,
-                          const rdli_pair **list, size_t *count)
+static rdl_status collect(rdli_broad *broad, unsigned which, const rdli_mesh *mesh, const rdli_pair **list, size_t *count)
 {
     rdli_walk *walk = &broad->walks[which];
-    set_side(&walk->a, &broad->trees[a]);
-    set_side(&walk->b, &broad->trees[b]);
+    const rdli_marked_tree *a = &broad->trees[which == 0 ? VERTICES : EDGES];
+    const rdli_marked_tree *b = &broad->trees[which == 0 ? TRIANGLES : EDGES];
+    walk->a = a->side;
+    walk->b = b->side;
     walk->self = a == b;
-    walk->keep = keep;
-    walk->rules = r;
+    walk->muted = mesh->muted;
+    walk->part_count = mesh->part_count;
+    walk->keep = which == 0 ? keep_point_triangle : keep_edge_edge;
+    walk->rules = mesh;
     walk->sink = &broad->sinks[which];
-    rdl_status status = rdli_walk_run(broad->memory, broad->workers, walk, count);
+    rdl_status status = rdli_walk_run(broad->memory, broad->workers, broad->kernels, walk, count);
     if (status != RDL_OK)
         return status;
-    return rdli_sink_sort(broad->memory, walk->sink, *count, broad->trees[a].tree.count, broad->trees[b].tree.count, list);
+    return rdli_sort_pairs(broad->memory, broad->workers, broad->kernels, &broad->sort, walk->sink, *count, a->tree.count,
+                           b->tree.count, list);
 }
 
 rdl_status rdli_broad_create(rdli_memory *memory, rdli_workers *workers, rdli_broad **broad)
@@ -195,6 +97,7 @@ rdl_status rdli_broad_create(rdli_memory *memory, rdli_workers *workers, rdli_br
     memset(made, 0, sizeof *made);
     made->memory = memory;
     made->workers = workers;
+    made->kernels = rdli_kernels_choose(true);
     *broad = made;
     return RDL_OK;
 }
@@ -203,10 +106,9 @@ void rdli_broad_destroy(rdli_broad *broad)
 {
     if (broad == NULL)
         return;
-    for (unsigned kind = 0; kind < KINDS; kind++) {
-        rdli_tree_release(broad->memory, &broad->trees[kind].tree);
-        rdli_room_release(broad->memory, &broad->trees[kind].mark_room);
-    }
+    for (unsigned kind = 0; kind < KINDS; kind++)
+        rdli_marks_release(broad->memory, &broad->trees[kind]);
+    rdli_sort_release(broad->memory, &broad->sort);
     for (unsigned which = 0; which < 2; which++) {
         rdli_sink_release(broad->memory, &broad->sinks[which]);
         rdli_room_release(broad->memory, &broad->walks[which].visit_room);
@@ -214,21 +116,29 @@ void rdli_broad_destroy(rdli_broad *broad)
     rdli_give(broad->memory, broad, 1, sizeof *broad);
 }
 
+void rdli_broad_use_vector(rdli_broad *broad, bool vector)
+{
+    broad->kernels = rdli_kernels_choose(vector);
+}
+
 rdl_status rdli_broad_pairs(rdli_broad *broad, const rdli_mesh *mesh, const rdli_boxes *boxes, const uint8_t *awake,
                             rdli_pairs *pairs)
 {
-    const rules r = {mesh, awake};
+    const rdli_elements elements[KINDS] = {
+        {NULL, 1, mesh->vertex_count, boxes->vertices},
+        {(const uint32_t *)mesh->edges, 2, mesh->edge_count, boxes->edges},
+        {(const uint32_t *)mesh->triangles, 3, mesh->triangle_count, boxes->triangles},
+    };
+    const bool with_parts = any_muted(mesh);
     rdli_pairs found = {0};
-    rdl_status status = prepare_tree(broad, VERTICES, boxes->vertices, mesh->vertex_count, &r);
+    rdl_status status = RDL_OK;
+    for (unsigned kind = 0; kind < KINDS && status == RDL_OK; kind++)
+        status = rdli_marks_prepare(broad->memory, broad->workers, broad->kernels, &broad->trees[kind], mesh,
+                                    &elements[kind], awake, with_parts);
     if (status == RDL_OK)
-        status = prepare_tree(broad, EDGES, boxes->edges, mesh->edge_count, &r);
+        status = collect(broad, 0, mesh, &found.point_triangle, &found.point_triangle_count);
     if (status == RDL_OK)
-        status = prepare_tree(broad, TRIANGLES, boxes->triangles, mesh->triangle_count, &r);
-    if (status == RDL_OK)
-        status = collect(broad, 0, VERTICES, TRIANGLES, keep_point_triangle, &r, &found.point_triangle,
-                         &found.point_triangle_count);
-    if (status == RDL_OK)
-        status = collect(broad, 1, EDGES, EDGES, keep_edge_edge, &r, &found.edge_edge, &found.edge_edge_count);
+        status = collect(broad, 1, mesh, &found.edge_edge, &found.edge_edge_count);
     if (status == RDL_OK)
         *pairs = found;
     return status;

@@ -14,6 +14,9 @@ typedef struct rdli_broad rdli_broad;
 rdl_status rdli_broad_create(rdli_memory *memory, rdli_workers *workers, rdli_broad **broad);
 void rdli_broad_destroy(rdli_broad *broad);
 
+/* Vector instructions where the machine has them (so after creation), or portable code: the same lists. */
+void rdli_broad_use_vector(rdli_broad *broad, bool vector);
+
 /* All point-triangle and edge-edge pairs with overlapping boxes, sorted, each once, without: shared vertices, muted
  * parts, attachments, pairs of which all four vertices are driven, and (where awake is given) pairs of which no vertex is
  * awake. The list is owned by broad and valid until its next call. Every vertex, edge and triangle of the mesh takes part.

@@ -1,33 +1,20 @@
 /* broad/selfpairs.c: see selfpairs.h. */
 #include "broad/selfpairs.h"
 
-#include "broad/walk.h"
+#include "broad/sort.h"
+
+enum { CORNERS = 4 };
 
 struct rdli_selfpairs {
     rdli_memory *memory;
     rdli_workers *workers;
+    const rdli_kernels *kernels;
     rdli_tree tree;
     rdli_walk walk;
     rdli_sink sink;
+    rdli_sort sort;
+    rdli_room corner_room;
 };
-
-static bool keep_all(const void *rules, uint32_t a, uint32_t b)
-{
-    (void)rules;
-    (void)a;
-    (void)b;
-    return true;
-}
-
-static bool keep_disjoint(const void *rules, uint32_t a, uint32_t b)
-{
-    const uint32_t *corners_a = (const uint32_t *)rules + (size_t)a * 4, *corners_b = (const uint32_t *)rules + (size_t)b * 4;
-    bool shared = false;
-    for (unsigned i = 0; i < 4; i++)
-        for (unsigned j = 0; j < 4; j++)
-            shared |= corners_a[i] == corners_b[j];
-    return !shared;
-}
 
 rdl_status rdli_selfpairs_create(rdli_memory *memory, rdli_workers *workers, const rdl_box *boxes, uint32_t count,
                                  rdli_selfpairs **pairs)
@@ -38,7 +25,8 @@ rdl_status rdli_selfpairs_create(rdli_memory *memory, rdli_workers *workers, con
     memset(made, 0, sizeof *made);
     made->memory = memory;
     made->workers = workers;
-    rdl_status status = rdli_tree_build(memory, workers, &made->tree, boxes, count);
+    made->kernels = rdli_kernels_choose(true);
+    rdl_status status = rdli_tree_build(memory, workers, made->kernels, &made->tree, boxes, count);
     if (status != RDL_OK) {
         rdli_selfpairs_destroy(made);
         return status;
@@ -47,23 +35,62 @@ rdl_status rdli_selfpairs_create(rdli_memory *memory, rdli_workers *workers, con
     return RDL_OK;
 }
 
+void rdli_selfpairs_use_vector(rdli_selfpairs *pairs, bool vector)
+{
+    pairs->kernels = rdli_kernels_choose(vector);
+}
+
 void rdli_selfpairs_update(rdli_selfpairs *pairs, const rdl_box *boxes)
 {
-    rdli_tree_update(pairs->workers, &pairs->tree, boxes);
+    rdli_tree_update(pairs->workers, pairs->kernels, &pairs->tree, boxes);
+}
+
+/* Corners in use: a last column that repeats the first everywhere need not be compared. */
+static unsigned corners_in_use(const uint32_t *corners, uint32_t count)
+{
+    for (unsigned c = CORNERS - 1; c > 0; c--)
+        for (uint32_t e = 0; e < count; e++)
+            if (corners[(size_t)e * CORNERS + c] != corners[(size_t)e * CORNERS])
+                return c + 1;
+    return 1;
+}
+
+static rdl_status set_corners(rdli_selfpairs *pairs, const uint32_t *corners)
+{
+    rdli_side *side = &pairs->walk.a;
+    const rdli_tree *tree = &pairs->tree;
+    side->tree = tree;
+    side->corner_count = corners == NULL ? 0 : corners_in_use(corners, tree->count);
+    side->corners = NULL;
+    if (corners != NULL && tree->count > 0) {
+        size_t packs = tree->pack_count[0];
+        unsigned used = side->corner_count;
+        if (!rdli_room_reserve(pairs->memory, &pairs->corner_room, packs * RDLI_WIDE * used, sizeof(uint32_t), false))
+            return RDL_NO_MEMORY;
+        uint32_t *to = pairs->corner_room.data;
+        for (size_t p = 0; p < packs; p++)
+            for (unsigned c = 0; c < used; c++)
+                for (unsigned i = 0; i < RDLI_WIDE; i++)
+                    *to++ = corners[(size_t)tree->order[p * RDLI_WIDE + i] * CORNERS + c];
+        side->corners = pairs->corner_room.data;
+    }
+    pairs->walk.b = *side;
+    return RDL_OK;
 }
 
 rdl_status rdli_selfpairs_find(rdli_selfpairs *pairs, const uint32_t *corners, const rdli_pair **list, size_t *count)
 {
-    rdli_walk *walk = &pairs->walk;
-    walk->a.tree = walk->b.tree = &pairs->tree;
-    walk->self = true;
-    walk->keep = corners == NULL ? keep_all : keep_disjoint;
-    walk->rules = corners;
-    walk->sink = &pairs->sink;
-    rdl_status status = rdli_walk_run(pairs->memory, pairs->workers, walk, count);
+    rdl_status status = set_corners(pairs, corners);
     if (status != RDL_OK)
         return status;
-    return rdli_sink_sort(pairs->memory, walk->sink, *count, pairs->tree.count, pairs->tree.count, list);
+    pairs->walk.self = true;
+    pairs->walk.sink = &pairs->sink;
+    pairs->sink.emit = NULL;
+    status = rdli_walk_run(pairs->memory, pairs->workers, pairs->kernels, &pairs->walk, count);
+    if (status != RDL_OK)
+        return status;
+    return rdli_sort_pairs(pairs->memory, pairs->workers, pairs->kernels, &pairs->sort, &pairs->sink, *count,
+                           pairs->tree.count, pairs->tree.count, list);
 }
 
 void rdli_selfpairs_destroy(rdli_selfpairs *pairs)
@@ -72,6 +99,8 @@ void rdli_selfpairs_destroy(rdli_selfpairs *pairs)
         return;
     rdli_tree_release(pairs->memory, &pairs->tree);
     rdli_sink_release(pairs->memory, &pairs->sink);
+    rdli_sort_release(pairs->memory, &pairs->sort);
     rdli_room_release(pairs->memory, &pairs->walk.visit_room);
+    rdli_room_release(pairs->memory, &pairs->corner_room);
     rdli_give(pairs->memory, pairs, 1, sizeof *pairs);
 }

@@ -11,6 +11,8 @@ typedef struct rdli_selfpairs rdli_selfpairs;
 /* Builds; boxes are valid. Errors: RDL_NO_MEMORY. */
 rdl_status rdli_selfpairs_create(rdli_memory *memory, rdli_workers *workers, const rdl_box *boxes, uint32_t count,
                                  rdli_selfpairs **pairs);
+/* Vector instructions where the machine has them (so after creation), or portable code: the same lists. */
+void rdli_selfpairs_use_vector(rdli_selfpairs *pairs, bool vector);
 /* The same number of valid boxes, moved. Allocates nothing. */
 void rdli_selfpairs_update(rdli_selfpairs *pairs, const rdl_box *boxes);
 /* All overlapping pairs, sorted; owned by the object until its next call. corners as in raddle/tree.h.

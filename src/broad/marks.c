@@ -1,0 +1,175 @@
+/* broad/marks.c: see marks.h. Corners and parts follow the order of the tree and change only with it; marks change with
+ * the driven and awake flags and are filled in every call. */
+#include "broad/marks.h"
+
+enum { BLOCK = 512 }; /* packs per task */
+
+typedef struct mark_job {
+    rdli_marked_tree *marked;
+    const rdli_mesh *mesh;
+    const rdli_elements *elements;
+    const uint8_t *awake;
+    unsigned level;
+    rdli_marks *marks[RDLI_LEVELS];
+    uint32_t *parts[RDLI_LEVELS];
+    uint32_t *corners;
+} mark_job;
+
+static size_t used_places(const rdli_tree *tree, unsigned level, size_t pack)
+{
+    size_t inner = level == 0 ? tree->count : tree->pack_count[level - 1];
+    return inner - pack * RDLI_WIDE < RDLI_WIDE ? inner - pack * RDLI_WIDE : RDLI_WIDE;
+}
+
+static void block_range(const mark_job *job, size_t block, size_t *first, size_t *last)
+{
+    size_t count = job->marked->tree.pack_count[job->level];
+    *first = block * BLOCK;
+    *last = count - *first < BLOCK ? count : *first + BLOCK;
+}
+
+static bool has_attachment(const rdli_mesh *mesh, uint32_t vertex)
+{
+    return mesh->attachment_count != 0 && mesh->attached_first[vertex] != mesh->attached_first[vertex + 1];
+}
+
+static rdli_marks mark_elements(const mark_job *job, size_t pack)
+{
+    const unsigned corner_count = job->elements->corner_count;
+    const uint32_t *corners = job->marked->side.corners + pack * RDLI_WIDE * corner_count;
+    unsigned driven = 0xFF, awake = job->awake == NULL ? 0xFF : 0, attached = 0;
+    for (unsigned c = 0; c < corner_count; c++)
+        for (unsigned i = 0; i < RDLI_WIDE; i++) {
+            uint32_t vertex = corners[c * RDLI_WIDE + i];
+            driven &= ~((unsigned)(job->mesh->driven[vertex] == 0) << i);
+            awake |= (unsigned)(job->awake != NULL && job->awake[vertex] != 0) << i;
+            attached |= (unsigned)has_attachment(job->mesh, vertex) << i;
+        }
+    return (rdli_marks){(uint8_t)driven, (uint8_t)awake, (uint8_t)attached};
+}
+
+/* The unused places of a pack hold copies of its last element, so all eight bits can be looked at; unused places of
+ * inner packs count as driven and asleep, which changes nothing. */
+static void mark_block(void *data, size_t block, unsigned worker)
+{
+    (void)worker;
+    mark_job *job = data;
+    size_t first, last;
+    block_range(job, block, &first, &last);
+    for (size_t p = first; p < last; p++) {
+        if (job->level == 0) {
+            job->marks[0][p] = mark_elements(job, p);
+            continue;
+        }
+        unsigned driven = 0xFF, awake = 0, attached = 0;
+        for (unsigned i = 0, used = (unsigned)used_places(&job->marked->tree, job->level, p); i < used; i++) {
+            const rdli_marks *below = &job->marks[job->level - 1][p * RDLI_WIDE + i];
+            driven &= ~((unsigned)(below->driven != 0xFF) << i);
+            awake |= (unsigned)(below->awake != 0) << i;
+            attached |= (unsigned)(below->attached != 0) << i;
+        }
+        job->marks[job->level][p] = (rdli_marks){(uint8_t)driven, (uint8_t)awake, (uint8_t)attached};
+    }
+}
+
+static void corner_block(void *data, size_t block, unsigned worker)
+{
+    (void)worker;
+    mark_job *job = data;
+    const unsigned corner_count = job->elements->corner_count;
+    const uint32_t *vertices = job->elements->vertices;
+    size_t first, last;
+    block_range(job, block, &first, &last);
+    uint32_t *to = job->corners + first * RDLI_WIDE * corner_count;
+    for (size_t p = first; p < last; p++)
+        for (unsigned c = 0; c < corner_count; c++)
+            for (unsigned i = 0; i < RDLI_WIDE; i++) {
+                uint32_t element = job->marked->tree.order[p * RDLI_WIDE + i];
+                *to++ = vertices == NULL ? element : vertices[(size_t)element * corner_count + c];
+            }
+}
+
+static void part_block(void *data, size_t block, unsigned worker)
+{
+    (void)worker;
+    mark_job *job = data;
+    const unsigned corner_count = job->elements->corner_count;
+    size_t first, last;
+    block_range(job, block, &first, &last);
+    for (size_t p = first; p < last; p++) {
+        uint32_t part = 0;
+        for (size_t i = 0, used = used_places(&job->marked->tree, job->level, p); i < used; i++) {
+            uint32_t own = job->level == 0 ? job->mesh->vertex_part[job->corners[p * RDLI_WIDE * corner_count + i]]
+                                           : job->parts[job->level - 1][p * RDLI_WIDE + i];
+            part = i == 0 || part == own ? own : RDLI_MIXED_PARTS;
+            if (part == RDLI_MIXED_PARTS)
+                break;
+        }
+        job->parts[job->level][p] = part;
+    }
+}
+
+static void each_level(rdli_workers *workers, mark_job *job, rdl_task *task)
+{
+    const rdli_tree *tree = &job->marked->tree;
+    for (job->level = 0; job->level < tree->levels; job->level++)
+        rdli_parallel_for(workers, ((size_t)tree->pack_count[job->level] + BLOCK - 1) / BLOCK, task, job);
+}
+
+static bool reserve(rdli_memory *memory, mark_job *job)
+{
+    rdli_marked_tree *marked = job->marked;
+    const rdli_tree *tree = &marked->tree;
+    size_t packs = 0, places = (size_t)tree->pack_count[0] * RDLI_WIDE * job->elements->corner_count;
+    for (unsigned level = 0; level < tree->levels; level++)
+        packs += tree->pack_count[level];
+    if (!rdli_room_reserve(memory, &marked->mark_room, packs, sizeof(rdli_marks), false) ||
+        !rdli_room_reserve(memory, &marked->part_room, packs, sizeof(uint32_t), false) ||
+        !rdli_room_reserve(memory, &marked->corner_room, places, sizeof(uint32_t), false))
+        return false;
+    size_t next = 0;
+    for (unsigned level = 0; level < tree->levels; level++) {
+        job->marks[level] = (rdli_marks *)marked->mark_room.data + next;
+        job->parts[level] = (uint32_t *)marked->part_room.data + next;
+        next += tree->pack_count[level];
+    }
+    job->corners = marked->corner_room.data;
+    return true;
+}
+
+rdl_status rdli_marks_prepare(rdli_memory *memory, rdli_workers *workers, const rdli_kernels *kernels,
+                              rdli_marked_tree *marked, const rdli_mesh *mesh, const rdli_elements *elements,
+                              const uint8_t *awake, bool with_parts)
+{
+    rdli_tree *tree = &marked->tree;
+    if (tree->count != elements->count || tree->levels == 0) {
+        rdl_status status = rdli_tree_build(memory, workers, kernels, tree, elements->boxes, elements->count);
+        if (status != RDL_OK)
+            return status;
+    } else {
+        rdli_tree_update(workers, kernels, tree, elements->boxes);
+    }
+    mark_job job = {.marked = marked, .mesh = mesh, .elements = elements, .awake = awake};
+    if (tree->levels > 0 && !reserve(memory, &job))
+        return RDL_NO_MEMORY;
+    marked->side = (rdli_side){.tree = tree, .corners = job.corners, .corner_count = elements->corner_count};
+    if (marked->arranged != tree->arranged) {
+        rdli_parallel_for(workers, tree->levels == 0 ? 0 : ((size_t)tree->pack_count[0] + BLOCK - 1) / BLOCK, corner_block, &job);
+        each_level(workers, &job, part_block);
+        marked->arranged = tree->arranged;
+    }
+    each_level(workers, &job, mark_block);
+    for (unsigned level = 0; level < tree->levels; level++) {
+        marked->side.marks[level] = job.marks[level];
+        marked->side.parts[level] = with_parts ? job.parts[level] : NULL;
+    }
+    return RDL_OK;
+}
+
+void rdli_marks_release(rdli_memory *memory, rdli_marked_tree *marked)
+{
+    rdli_tree_release(memory, &marked->tree);
+    rdli_room_release(memory, &marked->mark_room);
+    rdli_room_release(memory, &marked->part_room);
+    rdli_room_release(memory, &marked->corner_room);
+}
