@@ -1,5 +1,6 @@
 /* narrow/touch.c: one pair's question from the cheap certificates to exact arithmetic. */
 #include "narrow/exact_pair.h"
+#include "narrow/roots.h"
 #include "narrow/series.h"
 #include "narrow/interval.h"
 
@@ -43,6 +44,8 @@ void rdli_find_touch(int kind, const rdl_motion *motion, double gap, rdl_touch *
     if (gap > 0 && rdli_interval_gap(kind, &scaled, shift ? ldexp(gap, shift) : gap, touch) == RDLI_SETTLED)
         return;
     if (gap > 0 && isnormal(scaled_gap) && rdli_series_touch(kind, &scaled, scaled_gap, touch))
+        return;
+    if (gap == 0 && rdli_roots_touch(kind, &scaled, touch))
         return;
     certain_touch(kind, motion, gap, touch);
 }
