@@ -23,7 +23,7 @@ static const host_yarn YARN = {.mass_per_length = 4.5e-4, .stretch = 1.0, .bendi
 #define KNOT_LENGTH 2.0e-3     /* m, from the cloth's border to a strand's first point */
 #define KNOT_STIFFNESS 200.0   /* N/m */
 #define HAND_STIFFNESS 60.0    /* N/m, per held vertex */
-#define HAND_FORCE 0.2         /* N, per held vertex */
+#define HAND_FORCE 0.08        /* N, per held vertex */
 #define HANDS 4u
 #define HELD_EACH 6u           /* vertices in one hand: the six nearest a corner */
 #define START_HEIGHT 0.95      /* m */

@@ -1,6 +1,7 @@
 /* couple.c: plugging raddle in behind an integrator. */
 #include "couple.h"
 
+#include <math.h>
 #include <string.h>
 
 void host_describe(const host *h, rdl_part parts[], rdl_scene *scene)
@@ -35,4 +36,68 @@ rdl_status host_resolve(const host *h, rdl_engine *engine, double h_step, double
     step.delivered = (rdl_output_view){delivered, 0, RDL_FLOAT64};
     report->size = sizeof *report;
     return rdl_engine_step(engine, &step, report, fault);
+}
+
+/* Velocity of the driven side of a contact at the place of contact; 0 when neither side is driven as a whole. */
+static int driven_side(const host *h, const rdl_contact *contact, double velocity[3])
+{
+    double share = 0, sum[3] = {0, 0, 0};
+    for (int i = 0; i < 4; i++) {
+        uint32_t v = contact->vertices[i];
+        if (!h->driven[v])
+            continue;
+        share += contact->weights[i];
+        for (int k = 0; k < 3; k++)
+            sum[k] += contact->weights[i] * h->velocity[v][k];
+    }
+    if (share * share < 0.99) /* the weights of one side add up to 1 or -1 */
+        return 0;
+    for (int k = 0; k < 3; k++)
+        velocity[k] = sum[k] / share;
+    return 1;
+}
+
+/* Several contacts of one vertex: their normals are added up, weighed by impulse, and their speeds too. */
+static void add_support(host *h, const rdl_contact *contact, const double velocity[3])
+{
+    double speed = 0;
+    for (int k = 0; k < 3; k++)
+        speed += velocity[k] * contact->normal[k];
+    for (int i = 0; i < 4; i++) {
+        double weight = contact->weights[i];
+        host_support *support = &h->support[contact->vertices[i]];
+        if (h->driven[contact->vertices[i]] || weight * weight < 0.09 || support->pulls)
+            continue; /* corners far from the place of contact are left free */
+        if (!support->active) {
+            support->active = 1;
+            support->normal[0] = support->normal[1] = support->normal[2] = support->speed = 0;
+        }
+        for (int k = 0; k < 3; k++)
+            support->normal[k] += contact->impulse * weight * contact->normal[k];
+        support->speed += contact->impulse * weight * speed;
+    }
+}
+
+void host_learn(host *h, const rdl_report *report, double approach)
+{
+    host_clear_supports(h);
+    for (size_t c = 0; c < report->contact_count; c++) {
+        double velocity[3];
+        if (report->contacts[c].impulse > 0 && driven_side(h, &report->contacts[c], velocity))
+            add_support(h, &report->contacts[c], velocity);
+    }
+    for (size_t i = 0; i < h->soft_count; i++) {
+        host_support *support = &h->support[i];
+        const double *n = support->normal;
+        double length = sqrt(n[0] * n[0] + n[1] * n[1] + n[2] * n[2]);
+        if (!support->active)
+            continue;
+        if (!(length > 0)) { /* pushed equally from both sides */
+            support->active = 0;
+            continue;
+        }
+        for (int k = 0; k < 3; k++)
+            support->normal[k] /= length;
+        support->speed = support->speed / length - approach;
+    }
 }

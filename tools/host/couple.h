@@ -15,4 +15,8 @@ void host_describe(const host *h, rdl_part parts[], rdl_scene *scene);
 rdl_status host_resolve(const host *h, rdl_engine *engine, double h_step, double (*delivered)[3], rdl_report *report,
                         rdl_fault *fault);
 
+/* After host_accept: enters the supports that the report's contacts with driven vertices teach for the next step.
+ * approach: speed towards the body that supports keep, m/s > 0, so that a contact that lasts is found again. */
+void host_learn(host *h, const rdl_report *report, double approach);
+
 #endif

@@ -70,6 +70,15 @@ typedef struct host_pull {
     double target[3], stiffness, force_max;
 } host_pull;
 
+/* A vertex that a body pushed in the last step. The next step asks it to keep to the body's speed along the normal:
+ * without that, an implicit step lets the whole cloth press on the few vertices that touch, and proposes to sink them
+ * deep into the body (see docs/integrate.md). It is let go in the step after it was found to pull instead of push. */
+typedef struct host_support {
+    double normal[3]; /* unit, away from the body */
+    double speed;     /* m/s along normal */
+    uint8_t active, pulls;
+} host_support;
+
 typedef struct host {
     size_t part_count, vertex_count, soft_count;
     host_part *parts;
@@ -81,6 +90,7 @@ typedef struct host {
     double (*proposed)[3];                 /* where the step wants to go */
     double (*proposed_velocity)[3];
     double (*target)[3];                   /* where driven vertices are told to go */
+    host_support *support;                 /* per vertex: what the last step taught about the bodies */
 
     size_t membrane_count, spring_count, pull_count, triangle_count, segment_count, join_count, bend_count;
     host_membrane *membranes;
@@ -135,6 +145,9 @@ void host_propose(host *h, double h_step);
  * (delivered - start) / h_step: a held vertex would else gather speed from gravity, step by step.
  * impulses and moved may be NULL: a host without raddle passes delivered = proposed and nothing else. */
 void host_accept(host *h, double h_step, const double (*delivered)[3], const double *impulses, const uint8_t *moved);
+
+/* Forgets all supports: before those of a new step are entered, and after a cut. */
+void host_clear_supports(host *h);
 
 /* Kinetic energy of soft vertices that are not driven, and energy stored in springs, membranes and bending, J. */
 double host_kinetic_energy(const host *h);

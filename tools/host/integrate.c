@@ -192,26 +192,51 @@ void host_assemble(host *h, double h_step)
         add_pull(h, &h->pulls[p], scale);
 }
 
+/* First guess of the new velocities, and which of their components are given: all of a driven vertex, one of a
+ * supported vertex. The guess of free fall makes a step without deformation exact before the first iteration. */
+static void guess(host *h, double h_step)
+{
+    for (size_t i = 0; i < h->soft_count; i++) {
+        host_support *support = &h->support[i];
+        host_filter *filter = &h->solver.filter[i];
+        filter->count = h->driven[i] ? 3 : support->active;
+        for (int k = 0; k < 3; k++) {
+            h->proposed_velocity[i][k] = h->velocity[i][k] + h_step * h->gravity[k];
+            filter->along[k] = support->normal[k];
+        }
+        if (filter->count == 1) {
+            double lacking = support->speed - dot(h->proposed_velocity[i], support->normal);
+            for (int k = 0; k < 3; k++)
+                h->proposed_velocity[i][k] += lacking * support->normal[k];
+        }
+    }
+    for (size_t i = 0; i < h->vertex_count; i++)
+        for (int k = 0; h->driven[i] && k < 3; k++)
+            h->proposed_velocity[i][k] = (h->target[i][k] - h->position[i][k]) / h_step;
+}
+
 void host_propose(host *h, double h_step)
 {
     host_assemble(h, h_step);
     for (size_t i = 0; i < h->soft_count; i++)
-        for (int k = 0; k < 3; k++) {
+        for (int k = 0; k < 3; k++)
             h->force[i][k] = h->own_mass[i] * h->velocity[i][k] + h_step * h->force[i][k];
-            /* The guess of free fall makes a step without deformation exact before the first iteration. */
-            h->proposed_velocity[i][k] = h->velocity[i][k] + h_step * h->gravity[k];
-        }
-    for (size_t i = 0; i < h->vertex_count; i++)
-        if (h->driven[i])
-            for (int k = 0; k < 3; k++)
-                h->proposed_velocity[i][k] = (h->target[i][k] - h->position[i][k]) / h_step;
-    h->solver_used = host_solve(&h->solver, &h->matrix, &h->bending, h_step * h_step + h_step * h->damping, h->driven,
+    guess(h, h_step);
+    h->solver_used = host_solve(&h->solver, &h->matrix, &h->bending, h_step * h_step + h_step * h->damping,
                                 (const double (*)[3])h->force, h->solver_tolerance, h->solver_limit,
                                 h->proposed_velocity);
+    for (size_t i = 0; i < h->soft_count; i++) /* what is left along the normal is what the body must bear */
+        h->support[i].pulls = h->support[i].active && dot(h->solver.residual[i], h->support[i].normal) > 0;
     for (size_t i = 0; i < h->vertex_count; i++)
         for (int k = 0; k < 3; k++)
             h->proposed[i][k] =
                 h->driven[i] ? h->target[i][k] : h->position[i][k] + h_step * h->proposed_velocity[i][k];
+}
+
+void host_clear_supports(host *h)
+{
+    for (size_t i = 0; i < h->vertex_count; i++)
+        h->support[i].active = 0;
 }
 
 void host_accept(host *h, double h_step, const double (*delivered)[3], const double *impulses, const uint8_t *moved)

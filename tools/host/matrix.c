@@ -151,8 +151,9 @@ static int invert_positive(const double m[9], double out[9])
 /* Factors of the preconditioner P = (E + L) E^-1 (E + L^T), L the strict lower half of A and E block-diagonal with
  * E_j = D_j - sum_i L_ji E_i^-1 L_ji^T: P equals A on the diagonal, and on a chain without bending everywhere (Pommerell
  * 1992 calls it D-ILU). Where a block would cease to be positive definite, D_j itself serves: P stays positive definite
- * with any such E. Rows of driven vertices are cut off. */
-static void factor(host_solver *solver, const host_matrix *a, const host_scalars *b, double scale, const uint8_t *fixed)
+ * with any such E. Rows without a free motion are cut
+ * off. */
+static void factor(host_solver *solver, const host_matrix *a, const host_scalars *b, double scale)
 {
     for (size_t i = 0; i < a->pattern.rows; i++) {
         memcpy(solver->pivot[i], a->diagonal[i], sizeof solver->pivot[i]);
@@ -166,23 +167,34 @@ static void factor(host_solver *solver, const host_matrix *a, const host_scalars
                 solver->pivot[i][k] += scale * b->diagonal[i];
             invert_positive(solver->pivot[i], solver->inverse[i]);
         }
-        if (fixed[i])
+        if (solver->filter[i].count == 3)
             continue;
         for (size_t e = a->pattern.first[i]; e < a->pattern.first[i + 1]; e++)
             subtract_sandwich(a->block[e], solver->inverse[i], solver->pivot[a->pattern.column[e]]);
     }
 }
 
-/* z = P^-1 r on free rows, 0 on fixed rows; returns r . z. */
-static double precondition(const host_solver *solver, const host_matrix *a, const uint8_t *fixed, const double (*r)[3],
-                           double (*z)[3])
+static void keep_free(const host_filter *filter, double v[3])
+{
+    if (filter->count == 0)
+        return;
+    double along = v[0] * filter->along[0] + v[1] * filter->along[1] + v[2] * filter->along[2];
+    for (int k = 0; k < 3; k++)
+        v[k] = filter->count == 3 ? 0 : v[k] - along * filter->along[k];
+}
+
+/* z = F P^-1 F r with the filter F; returns r . z. */
+static double precondition(const host_solver *solver, const host_matrix *a, const double (*r)[3], double (*z)[3])
 {
     size_t rows = a->pattern.rows;
     double dot = 0;
-    memcpy(z, r, rows * sizeof *z);
+    for (size_t i = 0; i < rows; i++) {
+        memcpy(z[i], r[i], sizeof z[i]);
+        keep_free(&solver->filter[i], z[i]);
+    }
     for (size_t i = 0; i < rows; i++) { /* z := (E + L)^-1 r */
         double own[3] = {0, 0, 0};
-        if (!fixed[i])
+        if (solver->filter[i].count < 3)
             add_block(solver->inverse[i], z[i], own);
         memcpy(z[i], own, sizeof own);
         for (size_t e = a->pattern.first[i]; e < a->pattern.first[i + 1]; e++)
@@ -190,30 +202,33 @@ static double precondition(const host_solver *solver, const host_matrix *a, cons
     }
     for (size_t i = rows; i-- > 0;) { /* z := (I + E^-1 L^T)^-1 z */
         double sum[3] = {0, 0, 0}, own[3] = {0, 0, 0};
-        if (fixed[i])
+        if (solver->filter[i].count == 3)
             continue;
         for (size_t e = a->pattern.first[i]; e < a->pattern.first[i + 1]; e++)
             add_block(a->block[e], z[a->pattern.column[e]], sum);
         add_block(solver->inverse[i], sum, own);
         for (int k = 0; k < 3; k++)
             z[i][k] -= own[k];
+    }
+    for (size_t i = 0; i < rows; i++) {
+        keep_free(&solver->filter[i], z[i]);
         dot += r[i][0] * z[i][0] + r[i][1] * z[i][1] + r[i][2] * z[i][2];
     }
     return dot;
 }
 
 size_t host_solve(host_solver *solver, const host_matrix *a, const host_scalars *b, double scale,
-                  const uint8_t *fixed, const double (*rhs)[3], double tolerance, size_t limit, double (*x)[3])
+                  const double (*rhs)[3], double tolerance, size_t limit, double (*x)[3])
 {
     size_t rows = a->pattern.rows, used = 0;
     double (*r)[3] = solver->residual, (*p)[3] = solver->direction, (*q)[3] = solver->image, (*z)[3] = solver->scaled;
-    factor(solver, a, b, scale, fixed);
-    double aim = precondition(solver, a, fixed, rhs, z) * tolerance * tolerance;
+    factor(solver, a, b, scale);
+    double aim = precondition(solver, a, rhs, z) * tolerance * tolerance;
     host_multiply(a, b, scale, (const double (*)[3])x, q);
     for (size_t i = 0; i < rows; i++)
         for (int k = 0; k < 3; k++)
             r[i][k] = rhs[i][k] - q[i][k];
-    double size = precondition(solver, a, fixed, (const double (*)[3])r, z);
+    double size = precondition(solver, a, (const double (*)[3])r, z);
     memcpy(p, z, rows * sizeof *p);
     while (size > aim && used < limit) {
         host_multiply(a, b, scale, (const double (*)[3])p, q);
@@ -226,7 +241,7 @@ size_t host_solve(host_solver *solver, const host_matrix *a, const host_scalars 
                 x[i][k] += step * p[i][k];
                 r[i][k] -= step * q[i][k];
             }
-        double next = precondition(solver, a, fixed, (const double (*)[3])r, z);
+        double next = precondition(solver, a, (const double (*)[3])r, z);
         double turn = next / size;
         for (size_t i = 0; i < rows; i++)
             for (int k = 0; k < 3; k++)

@@ -31,7 +31,14 @@ typedef struct host_bend {
     double weight[4], stiffness;
 } host_bend;
 
+/* Which motions of a row are free: all but those along `count` given directions; 3: none. */
+typedef struct host_filter {
+    uint32_t count; /* 0, 1 or 3 */
+    double along[3]; /* unit vector, for count 1 */
+} host_filter;
+
 typedef struct host_solver {
+    host_filter *filter;
     double (*pivot)[9], (*inverse)[9]; /* the preconditioner's diagonal blocks, see factor() in matrix.c */
     double (*residual)[3], (*direction)[3], (*image)[3], (*scaled)[3];
 } host_solver;
@@ -46,9 +53,10 @@ size_t host_pattern_find(const host_pattern *pattern, uint32_t a, uint32_t b);
 void host_multiply(const host_matrix *a, const host_scalars *b, double scale, const double (*x)[3], double (*y)[3]);
 /* y = B x */
 void host_multiply_scalars(const host_scalars *b, const double (*x)[3], double (*y)[3]);
-/* Solves (A + scale B) x = rhs for the rows with fixed[i] == 0; x holds the first guess, and the given values of fixed
- * rows. Ends when the preconditioned residual has fallen to tolerance times that of rhs. Returns the iterations. */
+/* Solves (A + scale B) x = rhs in the free motions of solver->filter; x holds the first guess, and keeps its given
+ * values elsewhere. Ends when the preconditioned residual has fallen to tolerance times that of rhs. Returns the
+ * iterations and leaves rhs - (A + scale B) x, unfiltered, in solver->residual. */
 size_t host_solve(host_solver *solver, const host_matrix *a, const host_scalars *b, double scale,
-                  const uint8_t *fixed, const double (*rhs)[3], double tolerance, size_t limit, double (*x)[3]);
+                  const double (*rhs)[3], double tolerance, size_t limit, double (*x)[3]);
 
 #endif

@@ -39,9 +39,9 @@ void host_destroy(host *h)
     if (!h)
         return;
     void *owned[] = {h->parts, h->vertex_part, h->own_mass, h->mass, h->driven, h->position, h->velocity, h->proposed,
-                     h->proposed_velocity, h->target, h->membranes, h->springs, h->pulls, h->bends, h->triangles,
+                     h->proposed_velocity, h->target, h->support, h->membranes, h->springs, h->pulls, h->bends, h->triangles,
                      h->segments, h->joins, h->matrix.block, h->matrix.diagonal, h->bending.value, h->bending.diagonal,
-                     h->force, h->solver.pivot, h->solver.inverse, h->solver.residual, h->solver.direction, h->solver.image,
+                     h->force, h->solver.filter, h->solver.pivot, h->solver.inverse, h->solver.residual, h->solver.direction, h->solver.image,
                      h->solver.scaled};
     for (size_t k = 0; k < sizeof owned / sizeof owned[0]; k++)
         free(owned[k]);
@@ -63,7 +63,7 @@ static int add_part(host *h, const char *name, int kind, double half_thickness, 
         !grow(&h->driven, n, count, sizeof *h->driven) || !grow(&h->position, n, count, sizeof *h->position) ||
         !grow(&h->velocity, n, count, sizeof *h->velocity) || !grow(&h->proposed, n, count, sizeof *h->proposed) ||
         !grow(&h->proposed_velocity, n, count, sizeof *h->proposed_velocity) ||
-        !grow(&h->target, n, count, sizeof *h->target))
+        !grow(&h->target, n, count, sizeof *h->target) || !grow(&h->support, n, count, sizeof *h->support))
         return 0;
     host_part *part = &h->parts[h->part_count];
     snprintf(part->name, sizeof part->name, "%s", name);

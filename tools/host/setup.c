@@ -77,7 +77,8 @@ static int build_solver(host *h)
     h->solver.direction = malloc(rows * sizeof *h->solver.direction);
     h->solver.image = malloc(rows * sizeof *h->solver.image);
     h->solver.scaled = malloc(rows * sizeof *h->solver.scaled);
-    return h->force && h->solver.pivot && h->solver.inverse && h->solver.residual && h->solver.direction && h->solver.image &&
+    h->solver.filter = malloc(rows * sizeof *h->solver.filter);
+    return h->solver.filter && h->force && h->solver.pivot && h->solver.inverse && h->solver.residual && h->solver.direction && h->solver.image &&
            h->solver.scaled;
 }
 
