@@ -465,6 +465,7 @@ int main(void)
 {
     Suite *suite = suite_create("shot");
     TCase *group = tcase_create("round");
+    tcase_set_timeout(group, 60);
     tcase_add_test(group, sha256_gives_the_published_digests);
     tcase_add_test(group, sha256_takes_pieces_of_any_length);
     tcase_add_test(group, digest_is_over_the_hosts_format);
