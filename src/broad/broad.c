@@ -2,7 +2,6 @@
 #include "broad/broad.h"
 
 #include "broad/marks.h"
-#include "broad/sort.h"
 
 enum { VERTICES, EDGES, TRIANGLES, KINDS };
 
@@ -11,9 +10,7 @@ struct rdli_broad {
     rdli_workers *workers;
     const rdli_kernels *kernels;
     rdli_marked_tree trees[KINDS];
-    rdli_walk walks[2]; /* point-triangle, edge-edge */
-    rdli_sink sinks[2];
-    rdli_sort sort;
+    rdli_query queries[2]; /* point-triangle, edge-edge */
 };
 
 static bool attached(const rdli_mesh *mesh, uint32_t v, uint32_t w)
@@ -68,25 +65,21 @@ static bool any_muted(const rdli_mesh *mesh)
     return false;
 }
 
-/* Walks trees a and b; the sorted list goes to *list. */
+/* Point-triangle (which = 0) or edge-edge pairs (1). */
 static rdl_status collect(rdli_broad *broad, unsigned which, const rdli_mesh *mesh, const rdli_pair **list, size_t *count)
 {
-    rdli_walk *walk = &broad->walks[which];
-    const rdli_marked_tree *a = &broad->trees[which == 0 ? VERTICES : EDGES];
-    const rdli_marked_tree *b = &broad->trees[which == 0 ? TRIANGLES : EDGES];
-    walk->a = a->side;
-    walk->b = b->side;
-    walk->self = a == b;
-    walk->muted = mesh->muted;
-    walk->part_count = mesh->part_count;
-    walk->keep = which == 0 ? keep_point_triangle : keep_edge_edge;
-    walk->rules = mesh;
-    walk->sink = &broad->sinks[which];
-    rdl_status status = rdli_walk_run(broad->memory, broad->workers, broad->kernels, walk, count);
-    if (status != RDL_OK)
-        return status;
-    return rdli_sort_pairs(broad->memory, broad->workers, broad->kernels, &broad->sort, walk->sink, *count, a->tree.count,
-                           b->tree.count, list);
+    rdli_query *query = &broad->queries[which];
+    query->a = broad->trees[which == 0 ? VERTICES : EDGES].side;
+    query->b = broad->trees[which == 0 ? TRIANGLES : EDGES].side;
+    query->self = which == 1;
+    query->range_lo = 0;
+    query->range_hi = INT32_MAX;
+    query->muted = mesh->muted;
+    query->part_count = mesh->part_count;
+    query->keep = which == 0 ? keep_point_triangle : keep_edge_edge;
+    query->rules = mesh;
+    rdl_status status = rdli_query_run(broad->memory, broad->workers, broad->kernels, query, count);
+    return status == RDL_OK ? rdli_rows_list(broad->memory, broad->workers, &query->rows, list) : status;
 }
 
 rdl_status rdli_broad_create(rdli_memory *memory, rdli_workers *workers, rdli_broad **broad)
@@ -108,11 +101,8 @@ void rdli_broad_destroy(rdli_broad *broad)
         return;
     for (unsigned kind = 0; kind < KINDS; kind++)
         rdli_marks_release(broad->memory, &broad->trees[kind]);
-    rdli_sort_release(broad->memory, &broad->sort);
-    for (unsigned which = 0; which < 2; which++) {
-        rdli_sink_release(broad->memory, &broad->sinks[which]);
-        rdli_room_release(broad->memory, &broad->walks[which].visit_room);
-    }
+    for (unsigned which = 0; which < 2; which++)
+        rdli_query_release(broad->memory, &broad->queries[which]);
     rdli_give(broad->memory, broad, 1, sizeof *broad);
 }
 

@@ -3,7 +3,7 @@
 #ifndef RDLI_KERNELS_H
 #define RDLI_KERNELS_H
 
-#include "broad/walk.h"
+#include "broad/query.h"
 
 typedef struct rdli_kernels {
     /* Refits level 0 for packs [first, last), writes their boxes into level 1 (or the crown), and returns the sum of the
@@ -12,13 +12,8 @@ typedef struct rdli_kernels {
     double (*refit_elements)(rdli_tree *tree, const rdl_box *boxes, uint32_t first, uint32_t last);
     /* Writes the boxes of the packs [first, last) of `level` > 0 into the level above. */
     void (*refit_inner)(rdli_tree *tree, unsigned level, uint32_t first, uint32_t last);
-    /* Appends the visits one level below v; v.level_a + v.level_b > 0. Room for 64 at least. Returns how many. */
-    size_t (*expand)(const rdli_walk *walk, rdli_visit v, rdli_visit *children);
-    /* Everything below v, in the order of `expand`; pairs go to the walk's sink. */
-    void (*walk)(const rdli_walk *walk, rdli_visit v, unsigned worker);
-    /* Sorts count > 1 pairs of one first by their seconds. bits: zero, and left zero: a bit set of `words` words, then its
-     * summary (bit w: word w is not zero) of words / 64 + 1 words, then the summary of that. */
-    void (*sort_row)(rdli_pair *pairs, size_t count, uint64_t *bits, size_t words);
+    /* Finds the pairs of one group (query.h), unless it is done. */
+    void (*match_group)(rdli_query *query, uint32_t group, unsigned worker);
 } rdli_kernels;
 
 /* vector: use AVX2 where the machine has it. */

@@ -4,7 +4,7 @@
 #error "include the lanes first"
 #endif
 
-enum { STACK_ROOM = 64 * 2 * RDLI_LEVELS }; /* a visit opens into at most 64, and both trees have few levels */
+enum { STACK_ROOM = RDLI_WIDE * RDLI_LEVELS }; /* a pack opens into at most eight, at most once per level */
 
 static const float NOWHERE[2][3] = {{INFINITY, INFINITY, INFINITY}, {-INFINITY, -INFINITY, -INFINITY}};
 
@@ -61,192 +61,114 @@ static inline unsigned welcome(const rdli_marks *a, unsigned i, const rdli_marks
     return mask;
 }
 
-static inline const rdli_marks *marks_of(const rdli_side *side, unsigned level, uint32_t pack)
+static bool parts_muted(const rdli_query *query, uint32_t p, uint32_t q)
 {
-    return side->marks[0] == NULL ? NULL : &side->marks[level][pack];
+    uint64_t bit = (uint64_t)p * query->part_count + q;
+    return p != RDLI_MIXED_PARTS && q != RDLI_MIXED_PARTS && (query->muted[bit / 64] >> (bit % 64) & 1);
 }
 
-/* The children of v's two packs that overlap the other pack's own box. */
-static inline void row_masks(const rdli_walk *walk, rdli_visit v, const lanes_pack *a, const lanes_pack *b, unsigned *rows,
-                             unsigned *columns)
+/* One group of a, as the search sees it. */
+typedef struct group_view {
+    const rdli_pack *box; /* the group's box is number `place` of this pack */
+    unsigned place;
+    bool driven, awake;   /* all driven, some awake */
+    uint32_t part, lowest;
+} group_view;
+
+static group_view view_group(const rdli_query *query, uint32_t group)
 {
-    const rdli_tree *tree_a = walk->a.tree, *tree_b = walk->b.tree;
-    *rows = lanes_overlap(&tree_b->packs[v.level_b + 1][v.b / RDLI_WIDE], v.b % RDLI_WIDE, *a);
-    *columns = lanes_overlap(&tree_a->packs[v.level_a + 1][v.a / RDLI_WIDE], v.a % RDLI_WIDE, *b);
+    const rdli_side *a = &query->a;
+    const rdli_tree *tree = a->tree;
+    group_view g = {.driven = false, .awake = true, .part = RDLI_MIXED_PARTS, .lowest = UINT32_MAX};
+    g.box = tree->levels == 1 ? tree->packs[1] : &tree->packs[2][group / RDLI_WIDE]; /* a crown has but one box, its own */
+    g.place = tree->levels == 1 ? 0 : group % RDLI_WIDE;
+    if (a->marks[0] != NULL) {
+        g.driven = a->marks[1][group].driven == 0xFF;
+        g.awake = a->marks[1][group].awake != 0;
+    }
+    if (a->parts[0] != NULL)
+        g.part = a->parts[1][group];
+    for (size_t i = (size_t)group * 64; i < tree->count && i < (size_t)group * 64 + 64; i++)
+        g.lowest = tree->order[i] < g.lowest ? tree->order[i] : g.lowest;
+    return g;
 }
 
-/* False: the packs are of two parts that ignore each other. Clears check_parts where nothing is left to be checked. */
-static bool parts_may_meet(const rdli_walk *walk, rdli_visit *v)
+/* Children of a pack of b that the group has to look at. */
+static unsigned worth_opening(const rdli_query *query, const group_view *g, unsigned level, uint32_t pack)
 {
-    uint32_t p = walk->a.parts[v->level_a][v->a], q = walk->b.parts[v->level_b][v->b];
-    if (p == RDLI_MIXED_PARTS || q == RDLI_MIXED_PARTS)
-        return true;
-    uint64_t bit = (uint64_t)p * walk->part_count + q;
-    v->check_parts = 0;
-    return !(walk->muted[bit / 64] >> (bit % 64) & 1);
+    const rdli_side *b = &query->b;
+    unsigned mask = lanes_overlap(g->box, g->place, lanes_load(&b->tree->packs[level][pack]));
+    if (b->marks[0] != NULL) {
+        mask &= g->driven ? ~(unsigned)b->marks[level][pack].driven : 0xFF;
+        mask &= g->awake ? 0xFF : b->marks[level][pack].awake;
+    }
+    for (unsigned left = mask; left != 0; left &= left - 1) {
+        unsigned i = (unsigned)__builtin_ctz(left);
+        uint32_t child = pack * RDLI_WIDE + i;
+        if ((query->self && b->tree->highest[level - 1][child] <= g->lowest) ||
+            (b->parts[0] != NULL && parts_muted(query, g->part, b->parts[level - 1][child])))
+            mask &= ~(1u << i);
+    }
+    return mask;
 }
 
-/* Packs of one level: all pairs of children that overlap. */
-static size_t expand_level(const rdli_walk *walk, rdli_visit v, rdli_visit *children)
+/* Lists the level-0 packs of b that the group overlaps; how many, even if they have no room. */
+static size_t list_packs(const rdli_query *query, uint32_t group, rdli_scratch *scratch)
 {
-    const unsigned level = v.level_a;
-    const rdli_pack *packs_a = &walk->a.tree->packs[level][v.a], *packs_b = &walk->b.tree->packs[level][v.b];
-    const rdli_marks *marks_a = marks_of(&walk->a, level, v.a), *marks_b = marks_of(&walk->b, level, v.b);
-    const bool same = walk->self && v.a == v.b;
-    lanes_pack a = lanes_load(packs_a), b = lanes_load(packs_b);
-    unsigned rows = 0xFF, columns = 0xFF;
-    size_t count = 0;
-    rdli_visit child = {0, 0, (uint8_t)(level - 1), (uint8_t)(level - 1), v.check_parts, 0};
-    if (!same)
-        row_masks(walk, v, &a, &b, &rows, &columns);
-    for (; rows != 0; rows &= rows - 1) {
-        unsigned i = (unsigned)__builtin_ctz(rows);
-        unsigned mask = lanes_overlap(packs_a, i, b) & columns;
-        if (marks_a != NULL)
-            mask &= welcome(marks_a, i, marks_b);
-        if (same)
-            mask &= 0xFFu << i;
-        child.a = v.a * RDLI_WIDE + i;
+    struct { uint32_t pack, level; } stack[STACK_ROOM];
+    const rdli_tree *tree = query->b.tree;
+    const group_view g = view_group(query, group);
+    size_t waiting = 0, count = 0;
+    stack[waiting].pack = 0;
+    stack[waiting++].level = tree->levels;
+    while (waiting > 0) {
+        const uint32_t pack = stack[--waiting].pack;
+        const unsigned level = stack[waiting].level;
+        unsigned mask = worth_opening(query, &g, level, pack);
+        if (level == 1) {
+            if (mask != 0 && count + RDLI_WIDE <= query->list_room)
+                lanes_append(scratch, count, &tree->packs[1][pack], pack * RDLI_WIDE, tree->highest[0], mask);
+            count += (size_t)__builtin_popcount(mask);
+            continue;
+        }
         for (; mask != 0; mask &= mask - 1) {
-            child.b = v.b * RDLI_WIDE + (unsigned)__builtin_ctz(mask);
-            children[count++] = child;
+            stack[waiting].pack = pack * RDLI_WIDE + (unsigned)__builtin_ctz(mask);
+            stack[waiting++].level = level - 1;
         }
     }
+    for (size_t i = count; i % RDLI_WIDE != 0 && i < query->list_room; i++)
+        for (unsigned k = 0; k < 3; k++) {
+            scratch->list_lo[k][i] = NOWHERE[0][k];
+            scratch->list_hi[k][i] = NOWHERE[1][k];
+        }
     return count;
 }
 
-/* Packs of two levels: the children of the higher one that overlap the lower pack. */
-static size_t expand_uneven(const rdli_walk *walk, rdli_visit v, rdli_visit *children)
+/* Asks query->keep about the pairs of child i of pack a with the children of pack b in mask. */
+static unsigned kept(const rdli_query *query, uint32_t a, unsigned i, uint32_t b, unsigned mask)
 {
-    const bool open_a = v.level_a > v.level_b;
-    const rdli_side *high = open_a ? &walk->a : &walk->b, *low = open_a ? &walk->b : &walk->a;
-    const unsigned high_level = open_a ? v.level_a : v.level_b, low_level = open_a ? v.level_b : v.level_a;
-    const uint32_t high_pack = open_a ? v.a : v.b, low_pack = open_a ? v.b : v.a;
-    const rdli_marks *high_marks = marks_of(high, high_level, high_pack), *low_marks = marks_of(low, low_level, low_pack);
-    lanes_pack eight = lanes_load(&high->tree->packs[high_level][high_pack]);
-    unsigned mask = lanes_overlap(&low->tree->packs[low_level + 1][low_pack / RDLI_WIDE], low_pack % RDLI_WIDE, eight);
-    size_t count = 0;
-    for (; mask != 0; mask &= mask - 1) {
-        unsigned i = (unsigned)__builtin_ctz(mask);
-        if (high_marks != NULL && welcome(high_marks, i, low_marks) == 0)
-            continue;
-        rdli_visit child = v;
-        *(open_a ? &child.a : &child.b) = high_pack * RDLI_WIDE + i;
-        *(open_a ? &child.level_a : &child.level_b) -= 1;
-        children[count++] = child;
-    }
-    return count;
-}
-
-static size_t expand(const rdli_walk *walk, rdli_visit v, rdli_visit *children)
-{
-    if (v.check_parts && !parts_may_meet(walk, &v))
-        return 0;
-    return v.level_a == v.level_b ? expand_level(walk, v, children) : expand_uneven(walk, v, children);
-}
-
-/* Asks walk->keep about each of the pairs. */
-static unsigned kept(const rdli_walk *walk, rdli_visit v, unsigned i, unsigned mask)
-{
-    uint32_t a[4], b[4];
-    unsigned left = mask;
-    for (unsigned c = 0; c < walk->a.corner_count; c++)
-        a[c] = walk->a.corners[((size_t)v.a * walk->a.corner_count + c) * RDLI_WIDE + i];
-    for (; left != 0; left &= left - 1) {
+    uint32_t corners_a[4], corners_b[4];
+    for (unsigned c = 0; c < query->a.corner_count; c++)
+        corners_a[c] = query->a.corners[((size_t)a * query->a.corner_count + c) * RDLI_WIDE + i];
+    for (unsigned left = mask; left != 0; left &= left - 1) {
         unsigned j = (unsigned)__builtin_ctz(left);
-        for (unsigned c = 0; c < walk->b.corner_count; c++)
-            b[c] = walk->b.corners[((size_t)v.b * walk->b.corner_count + c) * RDLI_WIDE + j];
-        if (!walk->keep(walk->rules, a, b))
+        for (unsigned c = 0; c < query->b.corner_count; c++)
+            corners_b[c] = query->b.corners[((size_t)b * query->b.corner_count + c) * RDLI_WIDE + j];
+        if (!query->keep(query->rules, corners_a, corners_b))
             mask &= ~(1u << j);
     }
     return mask;
 }
 
-/* Bit j: the first of the pair (id, ids[j]) lies in the walk's range. */
-static unsigned in_range(const rdli_walk *walk, uint32_t id, const uint32_t *ids)
+/* The rules beyond boxes, order and shared vertices. */
+static unsigned ruled(const rdli_query *query, uint32_t a, unsigned i, uint32_t b, unsigned mask)
 {
-    unsigned id_inside = id >= walk->range_lo && id < walk->range_hi ? 0xFF : 0;
-    if (!walk->self)
-        return id_inside;
-    /* The lower of two ids lies in [lo, hi): neither is below lo, and one of them is below hi. */
-    unsigned not_below = id >= walk->range_lo ? lanes_within(ids, walk->range_lo, (uint32_t)INT32_MAX) : 0;
-    return not_below & (id_inside | lanes_within(ids, walk->range_lo, walk->range_hi));
-}
-
-/* Two level-0 packs with ca and cb corners; constants in every call, so that the loops over corners vanish. */
-static inline __attribute__((always_inline)) void leaves(const rdli_walk *walk, rdli_visit v, unsigned worker, unsigned ca,
-                                                         unsigned cb)
-{
-    const rdli_pack *pack_a = &walk->a.tree->packs[0][v.a], *pack_b = &walk->b.tree->packs[0][v.b];
-    const rdli_marks *marks_a = marks_of(&walk->a, 0, v.a), *marks_b = marks_of(&walk->b, 0, v.b);
-    const uint32_t *ids_a = walk->a.tree->order + (size_t)v.a * RDLI_WIDE;
-    const uint32_t *ids_b = walk->b.tree->order + (size_t)v.b * RDLI_WIDE;
-    const uint32_t *corners_a = walk->a.corners + (size_t)v.a * RDLI_WIDE * ca;
-    const uint32_t *corners_b = walk->b.corners + (size_t)v.b * RDLI_WIDE * cb;
-    const bool same = walk->self && v.a == v.b;
-    lanes_pack b = lanes_load(pack_b);
-    unsigned rows = 0xFF, columns = 0xFF;
-    if (!same) {
-        lanes_pack a = lanes_load(pack_a);
-        row_masks(walk, v, &a, &b, &rows, &columns);
-    }
-    if (columns == 0)
-        return;
-    rdli_sink_worker *out = &walk->sink->workers[worker];
-    for (; rows != 0; rows &= rows - 1) {
-        unsigned i = (unsigned)__builtin_ctz(rows);
-        unsigned mask = lanes_overlap(pack_a, i, b);
-        if (same)
-            mask &= 0xFEu << i;
-        if (mask == 0)
-            continue;
-        for (unsigned x = 0; x < ca; x++)
-            for (unsigned y = 0; y < cb; y++)
-                mask &= ~lanes_equal(corners_a[x * RDLI_WIDE + i], corners_b + y * RDLI_WIDE);
-        if (marks_a != NULL) {
-            mask &= welcome(marks_a, i, marks_b);
-            if (mask != 0 && (v.check_parts || ((marks_a->attached >> i & 1) && marks_b->attached != 0)))
-                mask = kept(walk, v, i, mask);
-        }
-        if (walk->ranged)
-            mask &= in_range(walk, ids_a[i], ids_b);
-        if (mask == 0)
-            continue;
-        if (out->next >= out->limit)
-            rdli_sink_turn(walk->sink, worker);
-        out->next = lanes_put(out->next, ids_a[i], ids_b, mask, walk->self ? LANES_SORTED : LANES_A_FIRST);
-    }
-}
-
-static void visit_leaves(const rdli_walk *walk, rdli_visit v, unsigned worker)
-{
-    if (v.check_parts && !parts_may_meet(walk, &v))
-        return;
-    unsigned ca = walk->a.corner_count, cb = walk->b.corner_count;
-    if (ca == 0)
-        leaves(walk, v, worker, 0, 0);
-    else if (ca == 2 && cb == 2)
-        leaves(walk, v, worker, 2, 2);
-    else if (ca == 1 && cb == 3)
-        leaves(walk, v, worker, 1, 3);
-    else if (ca == 3 && cb == 3)
-        leaves(walk, v, worker, 3, 3);
-    else
-        leaves(walk, v, worker, ca, cb);
-}
-
-static void walk_visit(const rdli_walk *walk, rdli_visit v, unsigned worker)
-{
-    rdli_visit stack[STACK_ROOM];
-    size_t count = 0;
-    stack[count++] = v;
-    while (count > 0) {
-        v = stack[--count];
-        if (v.level_a == 0 && v.level_b == 0)
-            visit_leaves(walk, v, worker);
-        else
-            count += expand(walk, v, stack + count);
-    }
+    const rdli_marks *marks_a = &query->a.marks[0][a], *marks_b = &query->b.marks[0][b];
+    mask &= welcome(marks_a, i, marks_b);
+    bool ask = (marks_a->attached >> i & 1) && marks_b->attached != 0;
+    if (query->a.parts[0] != NULL)
+        ask |= query->a.parts[0][a] == RDLI_MIXED_PARTS || query->b.parts[0][b] == RDLI_MIXED_PARTS;
+    return mask != 0 && ask ? kept(query, a, i, b, mask) : mask;
 }
 
 static void set_bit(uint64_t *bits, size_t words, size_t summary, uint32_t id)
@@ -256,30 +178,129 @@ static void set_bit(uint64_t *bits, size_t words, size_t summary, uint32_t id)
     bits[words + summary + id / 262144] |= (uint64_t)1 << id / 4096 % 64;
 }
 
-static void sort_row(rdli_pair *pairs, size_t count, uint64_t *bits, size_t words)
+/* Sorts count distinct ids. bits: a bit set of `words` words, all zero, then its summary (bit w: word w is not zero) of
+ * words / 64 + 1 words, then the summary of that; left zero. So a long row costs a few steps per id whatever its ids, and
+ * a short one goes by counting, for each id, the ids below it. */
+static void sort_row(uint32_t *ids, size_t count, uint32_t *to, uint64_t *bits, size_t words)
 {
     if (count <= LANES_RANKED) {
-        uint32_t ids[LANES_RANKED];
-        for (size_t i = 0; i < count; i++)
-            ids[i] = pairs[i].second;
-        for (size_t i = count; i % RDLI_WIDE != 0; i++)
-            ids[i] = 0;
-        lanes_rank(ids, count, pairs);
+        lanes_rank(ids, count, to);
         return;
     }
     const size_t summary = words / 64 + 1, top = words / 4096 + 1;
     for (size_t i = 0; i < count; i++)
-        set_bit(bits, words, summary, pairs[i].second);
+        set_bit(bits, words, summary, ids[i]);
     for (size_t t = 0; t < top; t++) {
         for (uint64_t *high = &bits[words + summary + t]; *high != 0; *high &= *high - 1) {
             size_t s = t * 64 + (size_t)__builtin_ctzll(*high);
             for (uint64_t *middle = &bits[words + s]; *middle != 0; *middle &= *middle - 1) {
                 size_t w = s * 64 + (size_t)__builtin_ctzll(*middle);
                 for (; bits[w] != 0; bits[w] &= bits[w] - 1)
-                    (pairs++)->second = (uint32_t)(w * 64 + (size_t)__builtin_ctzll(bits[w]));
+                    *to++ = (uint32_t)(w * 64 + (size_t)__builtin_ctzll(bits[w]));
             }
         }
     }
 }
 
-const rdli_kernels LANES_KERNELS = {refit_elements, refit_inner, expand, walk_visit, sort_row};
+static void store_row(rdli_query *query, rdli_scratch *scratch, unsigned worker, uint32_t first, const uint64_t *hits,
+                      size_t hit_count)
+{
+    uint32_t *to = scratch->row;
+    for (size_t h = 0; h < hit_count; h++)
+        to = lanes_compress(to, query->b.tree->order + (size_t)(hits[h] >> 8) * RDLI_WIDE, (unsigned)hits[h] & 0xFF);
+    const size_t count = (size_t)(to - scratch->row);
+    if (query->emit == NULL) {
+        uint32_t *place = rdli_rows_take(&query->rows, &query->portions[worker], count);
+        if (place == NULL)
+            return;
+        sort_row(scratch->row, count, place, scratch->bits, query->bit_words);
+        query->rows.rows[first] = (rdli_row){(uint64_t)(place - query->rows.seconds), (uint32_t)count, 0};
+        return;
+    }
+    query->portions[worker].found += count;
+    for (size_t i = 0; i < count; i++) {
+        if (scratch->block_count == RDLI_EMIT_BLOCK)
+            rdli_query_flush(query, worker);
+        uint32_t second = scratch->row[i];
+        bool ordered = !query->self || first < second;
+        scratch->block[scratch->block_count++] = ordered ? (rdli_pair){first, second} : (rdli_pair){second, first};
+    }
+}
+
+/* All pairs of the elements of pack a, child `place` of the group, with those of the listed packs. ca and cb are
+ * constants in every call, so that the loops over corners vanish. */
+static inline __attribute__((always_inline)) void match_pack(rdli_query *query, uint32_t a, size_t listed, unsigned worker,
+                                                             const bool self, const unsigned ca, const unsigned cb)
+{
+    rdli_scratch *scratch = &query->scratch[worker];
+    const rdli_tree *tree_b = query->b.tree;
+    const rdli_pack *pack_a = &query->a.tree->packs[0][a], *group = &query->a.tree->packs[1][a / RDLI_WIDE];
+    const uint32_t *ids_a = query->a.tree->order + (size_t)a * RDLI_WIDE;
+    const uint32_t *corners_a = query->a.corners + (size_t)a * RDLI_WIDE * ca;
+    const unsigned alive = lanes_within(ids_a, query->range_lo, query->range_hi);
+    const lanes_pack eight_a = lanes_load(pack_a);
+    size_t hit_count[RDLI_WIDE] = {0};
+    uint32_t lowest = UINT32_MAX;
+    for (unsigned i = 0; i < RDLI_WIDE; i++)
+        lowest = ids_a[i] < lowest ? ids_a[i] : lowest;
+    for (size_t at = 0; at < listed && alive != 0; at += RDLI_WIDE) {
+        unsigned packs = lanes_overlap(group, a % RDLI_WIDE, lanes_listed(scratch, at));
+        if (self)
+            packs &= lanes_above(scratch->list_highest + at, lowest);
+        for (; packs != 0; packs &= packs - 1) {
+            const size_t entry = at + (unsigned)__builtin_ctz(packs);
+            const uint32_t b = scratch->list_packs[entry];
+            const uint32_t *ids_b = tree_b->order + (size_t)b * RDLI_WIDE;
+            const uint32_t *corners_b = query->b.corners + (size_t)b * RDLI_WIDE * cb;
+            unsigned rows = lanes_overlap_entry(scratch, entry, eight_a) & alive;
+            if (query->a.parts[0] != NULL && parts_muted(query, query->a.parts[0][a], query->b.parts[0][b]))
+                continue;
+            const lanes_pack eight_b = lanes_load(&tree_b->packs[0][b]);
+            for (; rows != 0; rows &= rows - 1) {
+                const unsigned i = (unsigned)__builtin_ctz(rows);
+                unsigned mask = lanes_overlap(pack_a, i, eight_b);
+                if (self)
+                    mask &= lanes_above(ids_b, ids_a[i]);
+                for (unsigned x = 0; x < ca; x++)
+                    for (unsigned y = 0; y < cb; y++)
+                        mask &= ~lanes_equal(corners_a[x * RDLI_WIDE + i], corners_b + y * RDLI_WIDE);
+                if (mask != 0 && query->a.marks[0] != NULL)
+                    mask = ruled(query, a, i, b, mask);
+                scratch->hits[i][hit_count[i]] = (uint64_t)b << 8 | mask;
+                hit_count[i] += mask != 0;
+            }
+        }
+    }
+    for (unsigned i = 0; i < RDLI_WIDE; i++)
+        if (hit_count[i] > 0)
+            store_row(query, scratch, worker, ids_a[i], scratch->hits[i], hit_count[i]);
+}
+
+static void match_group(rdli_query *query, uint32_t group, unsigned worker)
+{
+    rdli_scratch *scratch = &query->scratch[worker];
+    if (query->done[group])
+        return;
+    const size_t listed = list_packs(query, group, scratch);
+    if (listed > scratch->list_need)
+        scratch->list_need = listed;
+    if (listed > query->list_room - RDLI_WIDE)
+        return; /* query.c makes the list longer and comes back */
+    const uint32_t packs = query->a.tree->pack_count[0], first = group * RDLI_WIDE;
+    const unsigned ca = query->a.corner_count, cb = query->b.corner_count;
+    for (uint32_t a = first; a < packs && a < first + RDLI_WIDE; a++) {
+        if (!query->self)
+            match_pack(query, a, listed, worker, false, 1, 3);
+        else if (ca == 0)
+            match_pack(query, a, listed, worker, true, 0, 0);
+        else if (ca == 2)
+            match_pack(query, a, listed, worker, true, 2, 2);
+        else if (ca == 3)
+            match_pack(query, a, listed, worker, true, 3, 3);
+        else
+            match_pack(query, a, listed, worker, true, ca, cb);
+    }
+    query->done[group] = 1;
+}
+
+const rdli_kernels LANES_KERNELS = {refit_elements, refit_inner, match_group};

@@ -22,15 +22,40 @@ static inline lanes_pack lanes_load(const rdli_pack *pack)
     return eight;
 }
 
+/* Bounds of one box as broadcast sources. */
+static inline unsigned lanes_overlap_bounds(const float *const lo[3], const float *const hi[3], lanes_pack eight)
+{
+    __m256 x = _mm256_and_ps(_mm256_cmp_ps(_mm256_broadcast_ss(lo[0]), eight.hi[0], _CMP_LE_OQ),
+                             _mm256_cmp_ps(eight.lo[0], _mm256_broadcast_ss(hi[0]), _CMP_LE_OQ));
+    __m256 y = _mm256_and_ps(_mm256_cmp_ps(_mm256_broadcast_ss(lo[1]), eight.hi[1], _CMP_LE_OQ),
+                             _mm256_cmp_ps(eight.lo[1], _mm256_broadcast_ss(hi[1]), _CMP_LE_OQ));
+    __m256 z = _mm256_and_ps(_mm256_cmp_ps(_mm256_broadcast_ss(lo[2]), eight.hi[2], _CMP_LE_OQ),
+                             _mm256_cmp_ps(eight.lo[2], _mm256_broadcast_ss(hi[2]), _CMP_LE_OQ));
+    return (unsigned)_mm256_movemask_ps(_mm256_and_ps(x, _mm256_and_ps(y, z)));
+}
+
 static inline unsigned lanes_overlap(const rdli_pack *pack, unsigned i, lanes_pack eight)
 {
-    __m256 x = _mm256_and_ps(_mm256_cmp_ps(_mm256_broadcast_ss(&pack->lo[0][i]), eight.hi[0], _CMP_LE_OQ),
-                             _mm256_cmp_ps(eight.lo[0], _mm256_broadcast_ss(&pack->hi[0][i]), _CMP_LE_OQ));
-    __m256 y = _mm256_and_ps(_mm256_cmp_ps(_mm256_broadcast_ss(&pack->lo[1][i]), eight.hi[1], _CMP_LE_OQ),
-                             _mm256_cmp_ps(eight.lo[1], _mm256_broadcast_ss(&pack->hi[1][i]), _CMP_LE_OQ));
-    __m256 z = _mm256_and_ps(_mm256_cmp_ps(_mm256_broadcast_ss(&pack->lo[2][i]), eight.hi[2], _CMP_LE_OQ),
-                             _mm256_cmp_ps(eight.lo[2], _mm256_broadcast_ss(&pack->hi[2][i]), _CMP_LE_OQ));
-    return (unsigned)_mm256_movemask_ps(_mm256_and_ps(x, _mm256_and_ps(y, z)));
+    const float *const lo[3] = {&pack->lo[0][i], &pack->lo[1][i], &pack->lo[2][i]};
+    const float *const hi[3] = {&pack->hi[0][i], &pack->hi[1][i], &pack->hi[2][i]};
+    return lanes_overlap_bounds(lo, hi, eight);
+}
+
+static inline unsigned lanes_overlap_entry(const rdli_scratch *scratch, size_t entry, lanes_pack eight)
+{
+    const float *const lo[3] = {&scratch->list_lo[0][entry], &scratch->list_lo[1][entry], &scratch->list_lo[2][entry]};
+    const float *const hi[3] = {&scratch->list_hi[0][entry], &scratch->list_hi[1][entry], &scratch->list_hi[2][entry]};
+    return lanes_overlap_bounds(lo, hi, eight);
+}
+
+static inline lanes_pack lanes_listed(const rdli_scratch *scratch, size_t at)
+{
+    lanes_pack eight;
+    for (unsigned k = 0; k < 3; k++) {
+        eight.lo[k] = _mm256_loadu_ps(scratch->list_lo[k] + at);
+        eight.hi[k] = _mm256_loadu_ps(scratch->list_hi[k] + at);
+    }
+    return eight;
 }
 
 static inline __m256i lanes_ids(const uint32_t *eight)
@@ -44,33 +69,46 @@ static inline unsigned lanes_equal(uint32_t value, const uint32_t *eight)
     return (unsigned)_mm256_movemask_ps(_mm256_castsi256_ps(equal));
 }
 
+/* Ids are below 2^31, so signed comparisons serve. */
+static inline unsigned lanes_above(const uint32_t *eight, uint32_t value)
+{
+    __m256i above = _mm256_cmpgt_epi32(lanes_ids(eight), _mm256_set1_epi32((int)value));
+    return (unsigned)_mm256_movemask_ps(_mm256_castsi256_ps(above));
+}
+
 static inline unsigned lanes_within(const uint32_t *eight, uint32_t lo, uint32_t hi)
 {
-    __m256i ids = lanes_ids(eight); /* all below 2^31, so signed comparisons serve */
+    __m256i ids = lanes_ids(eight);
     __m256i below = _mm256_cmpgt_epi32(_mm256_set1_epi32((int)lo), ids);
     __m256i inside = _mm256_andnot_si256(below, _mm256_cmpgt_epi32(_mm256_set1_epi32((int)hi), ids));
     return (unsigned)_mm256_movemask_ps(_mm256_castsi256_ps(inside));
 }
 
-enum { LANES_SORTED, LANES_A_FIRST, LANES_B_FIRST };
-
-static inline rdli_pair *lanes_put(rdli_pair *to, uint32_t id, const uint32_t *ids, unsigned mask, int order)
+/* The places of the set bits of mask, lowest first: an extract of the bytes 0..7. */
+static inline __m256i lanes_places(unsigned mask)
 {
-    /* The places of the set bits of mask, lowest first: pext of the bytes 0..7. */
     uint64_t places = _pext_u64(0x0706050403020100u, _pdep_u64(mask, 0x0101010101010101u) * 0xFF);
-    __m256i others = _mm256_permutevar8x32_epi32(lanes_ids(ids), _mm256_cvtepu8_epi32(_mm_cvtsi64_si128((long long)places)));
-    __m256i own = _mm256_set1_epi32((int)id), first, second;
-    if (order == LANES_SORTED) {
-        first = _mm256_min_epu32(own, others);
-        second = _mm256_max_epu32(own, others);
-    } else {
-        first = order == LANES_A_FIRST ? own : others;
-        second = order == LANES_A_FIRST ? others : own;
-    }
-    __m256i low = _mm256_unpacklo_epi32(first, second), high = _mm256_unpackhi_epi32(first, second);
-    _mm256_storeu_si256((__m256i *)(void *)to, _mm256_permute2x128_si256(low, high, 0x20));
-    _mm256_storeu_si256((__m256i *)(void *)(to + 4), _mm256_permute2x128_si256(low, high, 0x31));
+    return _mm256_cvtepu8_epi32(_mm_cvtsi64_si128((long long)places));
+}
+
+static inline uint32_t *lanes_compress(uint32_t *to, const uint32_t *ids, unsigned mask)
+{
+    _mm256_storeu_si256((__m256i *)(void *)to, _mm256_permutevar8x32_epi32(lanes_ids(ids), lanes_places(mask)));
     return to + _mm_popcnt_u32(mask);
+}
+
+static inline void lanes_append(rdli_scratch *scratch, size_t count, const rdli_pack *pack, uint32_t first_child,
+                                const uint32_t *highest, unsigned mask)
+{
+    const __m256i places = lanes_places(mask);
+    for (unsigned k = 0; k < 3; k++) {
+        _mm256_storeu_ps(scratch->list_lo[k] + count, _mm256_permutevar8x32_ps(_mm256_load_ps(pack->lo[k]), places));
+        _mm256_storeu_ps(scratch->list_hi[k] + count, _mm256_permutevar8x32_ps(_mm256_load_ps(pack->hi[k]), places));
+    }
+    __m256i packs = _mm256_add_epi32(_mm256_set1_epi32((int)first_child), places);
+    _mm256_storeu_si256((__m256i *)(void *)(scratch->list_packs + count), packs);
+    _mm256_storeu_si256((__m256i *)(void *)(scratch->list_highest + count),
+                        _mm256_permutevar8x32_epi32(lanes_ids(highest + first_child), places));
 }
 
 /* Four rows (a b c d) per 128-bit half become four columns. */
@@ -150,7 +188,7 @@ static inline void lanes_bound(const rdli_pack *pack, rdli_pack *above, unsigned
 }
 
 enum { LANES_RANKED = 64 };
-static inline void lanes_rank(uint32_t *ids, size_t count, rdli_pair *pairs)
+static inline void lanes_rank(uint32_t *ids, size_t count, uint32_t *to)
 {
     uint32_t rank[LANES_RANKED];
     for (size_t b = 0; b < count; b += RDLI_WIDE) {
@@ -160,7 +198,7 @@ static inline void lanes_rank(uint32_t *ids, size_t count, rdli_pair *pairs)
         _mm256_storeu_si256((__m256i *)(void *)(rank + b), sum);
     }
     for (size_t i = 0; i < count; i++)
-        pairs[rank[i]].second = ids[i];
+        to[rank[i]] = ids[i];
 }
 
 #endif

@@ -6,11 +6,11 @@
 
 #define LANES_KERNELS rdli_kernels_portable
 
-typedef const rdli_pack *lanes_pack;
+typedef rdli_pack lanes_pack;
 
 static inline lanes_pack lanes_load(const rdli_pack *pack)
 {
-    return pack;
+    return *pack;
 }
 
 /* Bit j: box j of `eight` overlaps box i of pack. Boxes are closed. */
@@ -20,7 +20,7 @@ static inline unsigned lanes_overlap(const rdli_pack *pack, unsigned i, lanes_pa
     for (unsigned j = 0; j < RDLI_WIDE; j++) {
         bool hit = true;
         for (unsigned k = 0; k < 3; k++)
-            hit &= (pack->lo[k][i] <= eight->hi[k][j]) & (eight->lo[k][j] <= pack->hi[k][i]);
+            hit &= (pack->lo[k][i] <= eight.hi[k][j]) & (eight.lo[k][j] <= pack->hi[k][i]);
         mask |= (unsigned)hit << j;
     }
     return mask;
@@ -35,6 +35,15 @@ static inline unsigned lanes_equal(uint32_t value, const uint32_t *eight)
     return mask;
 }
 
+/* Bit j: eight[j] > value. */
+static inline unsigned lanes_above(const uint32_t *eight, uint32_t value)
+{
+    unsigned mask = 0;
+    for (unsigned j = 0; j < RDLI_WIDE; j++)
+        mask |= (unsigned)(eight[j] > value) << j;
+    return mask;
+}
+
 /* Bit j: eight[j] lies in [lo, hi). */
 static inline unsigned lanes_within(const uint32_t *eight, uint32_t lo, uint32_t hi)
 {
@@ -44,16 +53,49 @@ static inline unsigned lanes_within(const uint32_t *eight, uint32_t lo, uint32_t
     return mask;
 }
 
-enum { LANES_SORTED, LANES_A_FIRST, LANES_B_FIRST }; /* which of the two ids of a pair comes first */
-
-/* Writes the pairs of id with ids[j] for the bits j of mask; returns the place behind. Room for 8 is needed. */
-static inline rdli_pair *lanes_put(rdli_pair *to, uint32_t id, const uint32_t *ids, unsigned mask, int order)
+/* Appends the children in mask of a level-1 pack to the list, as entries from `count` on; first_child: number of child
+ * 0; highest: of the level-0 packs. Writes eight places. */
+static inline void lanes_append(rdli_scratch *scratch, size_t count, const rdli_pack *pack, uint32_t first_child,
+                                const uint32_t *highest, unsigned mask)
 {
-    for (; mask != 0; mask &= mask - 1) {
-        uint32_t other = ids[__builtin_ctz(mask)];
-        bool id_first = order == LANES_A_FIRST || (order == LANES_SORTED && id < other);
-        *to++ = id_first ? (rdli_pair){id, other} : (rdli_pair){other, id};
+    for (; mask != 0; mask &= mask - 1, count++) {
+        unsigned i = (unsigned)__builtin_ctz(mask);
+        for (unsigned k = 0; k < 3; k++) {
+            scratch->list_lo[k][count] = pack->lo[k][i];
+            scratch->list_hi[k][count] = pack->hi[k][i];
+        }
+        scratch->list_packs[count] = first_child + i;
+        scratch->list_highest[count] = highest[first_child + i];
     }
+}
+
+/* Eight entries of the list. */
+static inline rdli_pack lanes_listed(const rdli_scratch *scratch, size_t at)
+{
+    rdli_pack eight;
+    for (unsigned k = 0; k < 3; k++) {
+        memcpy(eight.lo[k], scratch->list_lo[k] + at, sizeof eight.lo[k]);
+        memcpy(eight.hi[k], scratch->list_hi[k] + at, sizeof eight.hi[k]);
+    }
+    return eight;
+}
+
+/* Bit j: box j of `eight` overlaps entry `entry` of the list. */
+static inline unsigned lanes_overlap_entry(const rdli_scratch *scratch, size_t entry, lanes_pack eight)
+{
+    rdli_pack one;
+    for (unsigned k = 0; k < 3; k++) {
+        one.lo[k][0] = scratch->list_lo[k][entry];
+        one.hi[k][0] = scratch->list_hi[k][entry];
+    }
+    return lanes_overlap(&one, 0, eight);
+}
+
+/* Writes ids[j] for the bits j of mask, lowest first; returns the place behind. Room for 8 is needed. */
+static inline uint32_t *lanes_compress(uint32_t *to, const uint32_t *ids, unsigned mask)
+{
+    for (; mask != 0; mask &= mask - 1)
+        *to++ = ids[__builtin_ctz(mask)];
     return to;
 }
 
@@ -103,15 +145,15 @@ static inline void lanes_bound(const rdli_pack *pack, rdli_pack *above, unsigned
     }
 }
 
-/* Sorts `count` <= 64 distinct ids below 2^31 from `ids`, which has room for LANES_RANKED, into the seconds of pairs. */
+/* Sorts `count` <= LANES_RANKED distinct ids below 2^31; up to seven ids behind them may be overwritten. */
 enum { LANES_RANKED = 64 };
-static inline void lanes_rank(uint32_t *ids, size_t count, rdli_pair *pairs)
+static inline void lanes_rank(uint32_t *ids, size_t count, uint32_t *to)
 {
     for (size_t i = 0; i < count; i++) {
         size_t rank = 0;
         for (size_t j = 0; j < count; j++)
             rank += ids[j] < ids[i];
-        pairs[rank].second = ids[i];
+        to[rank] = ids[i];
     }
 }
 

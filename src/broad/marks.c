@@ -28,6 +28,13 @@ static void block_range(const mark_job *job, size_t block, size_t *first, size_t
     *last = count - *first < BLOCK ? count : *first + BLOCK;
 }
 
+/* Tasks of the current level. */
+static size_t blocks(const mark_job *job)
+{
+    const rdli_tree *tree = &job->marked->tree;
+    return tree->levels == 0 ? 0 : ((size_t)tree->pack_count[job->level] + BLOCK - 1) / BLOCK;
+}
+
 static bool has_attachment(const rdli_mesh *mesh, uint32_t vertex)
 {
     return mesh->attachment_count != 0 && mesh->attached_first[vertex] != mesh->attached_first[vertex + 1];
@@ -112,8 +119,10 @@ static void part_block(void *data, size_t block, unsigned worker)
 static void each_level(rdli_workers *workers, mark_job *job, rdl_task *task)
 {
     const rdli_tree *tree = &job->marked->tree;
-    for (job->level = 0; job->level < tree->levels; job->level++)
-        rdli_parallel_for(workers, ((size_t)tree->pack_count[job->level] + BLOCK - 1) / BLOCK, task, job);
+    if (tree->levels == 0)
+        return;
+    for (job->level = 0; job->level <= tree->levels; job->level++)
+        rdli_parallel_for(workers, blocks(job), task, job);
 }
 
 static bool reserve(rdli_memory *memory, mark_job *job)
@@ -121,14 +130,14 @@ static bool reserve(rdli_memory *memory, mark_job *job)
     rdli_marked_tree *marked = job->marked;
     const rdli_tree *tree = &marked->tree;
     size_t packs = 0, places = (size_t)tree->pack_count[0] * RDLI_WIDE * job->elements->corner_count;
-    for (unsigned level = 0; level < tree->levels; level++)
+    for (unsigned level = 0; level <= tree->levels; level++)
         packs += tree->pack_count[level];
     if (!rdli_room_reserve(memory, &marked->mark_room, packs, sizeof(rdli_marks), false) ||
         !rdli_room_reserve(memory, &marked->part_room, packs, sizeof(uint32_t), false) ||
         !rdli_room_reserve(memory, &marked->corner_room, places, sizeof(uint32_t), false))
         return false;
     size_t next = 0;
-    for (unsigned level = 0; level < tree->levels; level++) {
+    for (unsigned level = 0; level <= tree->levels; level++) {
         job->marks[level] = (rdli_marks *)marked->mark_room.data + next;
         job->parts[level] = (uint32_t *)marked->part_room.data + next;
         next += tree->pack_count[level];
@@ -154,12 +163,13 @@ rdl_status rdli_marks_prepare(rdli_memory *memory, rdli_workers *workers, const 
         return RDL_NO_MEMORY;
     marked->side = (rdli_side){.tree = tree, .corners = job.corners, .corner_count = elements->corner_count};
     if (marked->arranged != tree->arranged) {
-        rdli_parallel_for(workers, tree->levels == 0 ? 0 : ((size_t)tree->pack_count[0] + BLOCK - 1) / BLOCK, corner_block, &job);
+        job.level = 0;
+        rdli_parallel_for(workers, blocks(&job), corner_block, &job);
         each_level(workers, &job, part_block);
         marked->arranged = tree->arranged;
     }
     each_level(workers, &job, mark_block);
-    for (unsigned level = 0; level < tree->levels; level++) {
+    for (unsigned level = 0; tree->levels > 0 && level <= tree->levels; level++) {
         marked->side.marks[level] = job.marks[level];
         marked->side.parts[level] = with_parts ? job.parts[level] : NULL;
     }

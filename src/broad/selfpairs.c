@@ -1,7 +1,7 @@
 /* broad/selfpairs.c: see selfpairs.h. */
 #include "broad/selfpairs.h"
 
-#include "broad/sort.h"
+#include "broad/kernels.h"
 
 enum { CORNERS = 4 };
 
@@ -10,9 +10,7 @@ struct rdli_selfpairs {
     rdli_workers *workers;
     const rdli_kernels *kernels;
     rdli_tree tree;
-    rdli_walk walk;
-    rdli_sink sink;
-    rdli_sort sort;
+    rdli_query query;
     rdli_room corner_room;
 };
 
@@ -57,7 +55,7 @@ static unsigned corners_in_use(const uint32_t *corners, uint32_t count)
 
 static rdl_status set_corners(rdli_selfpairs *pairs, const uint32_t *corners)
 {
-    rdli_side *side = &pairs->walk.a;
+    rdli_side *side = &pairs->query.a;
     const rdli_tree *tree = &pairs->tree;
     side->tree = tree;
     side->corner_count = corners == NULL ? 0 : corners_in_use(corners, tree->count);
@@ -74,7 +72,7 @@ static rdl_status set_corners(rdli_selfpairs *pairs, const uint32_t *corners)
                     *to++ = corners[(size_t)tree->order[p * RDLI_WIDE + i] * CORNERS + c];
         side->corners = pairs->corner_room.data;
     }
-    pairs->walk.b = *side;
+    pairs->query.b = *side;
     return RDL_OK;
 }
 
@@ -83,14 +81,13 @@ rdl_status rdli_selfpairs_find(rdli_selfpairs *pairs, const uint32_t *corners, c
     rdl_status status = set_corners(pairs, corners);
     if (status != RDL_OK)
         return status;
-    pairs->walk.self = true;
-    pairs->walk.sink = &pairs->sink;
-    pairs->sink.emit = NULL;
-    status = rdli_walk_run(pairs->memory, pairs->workers, pairs->kernels, &pairs->walk, count);
+    pairs->query.self = true;
+    pairs->query.range_lo = 0;
+    pairs->query.range_hi = INT32_MAX;
+    status = rdli_query_run(pairs->memory, pairs->workers, pairs->kernels, &pairs->query, count);
     if (status != RDL_OK)
         return status;
-    return rdli_sort_pairs(pairs->memory, pairs->workers, pairs->kernels, &pairs->sort, &pairs->sink, *count,
-                           pairs->tree.count, pairs->tree.count, list);
+    return rdli_rows_list(pairs->memory, pairs->workers, &pairs->query.rows, list);
 }
 
 void rdli_selfpairs_destroy(rdli_selfpairs *pairs)
@@ -98,9 +95,7 @@ void rdli_selfpairs_destroy(rdli_selfpairs *pairs)
     if (pairs == NULL)
         return;
     rdli_tree_release(pairs->memory, &pairs->tree);
-    rdli_sink_release(pairs->memory, &pairs->sink);
-    rdli_sort_release(pairs->memory, &pairs->sort);
-    rdli_room_release(pairs->memory, &pairs->walk.visit_room);
+    rdli_query_release(pairs->memory, &pairs->query);
     rdli_room_release(pairs->memory, &pairs->corner_room);
     rdli_give(pairs->memory, pairs, 1, sizeof *pairs);
 }

@@ -55,19 +55,35 @@ static bool reserve(rdli_memory *memory, rdli_tree *tree, uint32_t count)
     size_t sums = levels > 0 ? blocks(tree->pack_count[0]) : 0;
     size_t places = levels > 0 ? (size_t)tree->pack_count[0] * RDLI_WIDE : 0;
     if (!rdli_room_reserve(memory, &tree->pack_room, packs, sizeof(rdli_pack), false) ||
+        !rdli_room_reserve(memory, &tree->highest_room, packs + RDLI_WIDE, sizeof(uint32_t), false) ||
         !rdli_room_reserve(memory, &tree->order_room, places, sizeof(uint32_t), false) ||
         !rdli_room_reserve(memory, &tree->item_room, count, 4 * sizeof(float), false) ||
         !rdli_room_reserve(memory, &tree->sum_room, sums, sizeof(double), false))
         return false;
-    rdli_pack *next = tree->pack_room.data;
+    size_t next = 0;
     for (unsigned level = 0; level <= levels; level++) {
-        tree->packs[level] = next;
+        tree->packs[level] = (rdli_pack *)tree->pack_room.data + next;
+        tree->highest[level] = (uint32_t *)tree->highest_room.data + next;
         next += tree->pack_count[level];
     }
     tree->order = tree->order_room.data;
     tree->count = count;
     tree->levels = levels;
     return true;
+}
+
+static void find_highest(rdli_tree *tree)
+{
+    const uint32_t *below = tree->order;
+    size_t inner = tree->count;
+    for (unsigned level = 0; level <= tree->levels; level++) {
+        memset(tree->highest[level], 0, tree->pack_count[level] * sizeof(uint32_t));
+        for (size_t i = 0; i < inner; i++)
+            if (tree->highest[level][i / RDLI_WIDE] < below[i])
+                tree->highest[level][i / RDLI_WIDE] = below[i];
+        below = tree->highest[level];
+        inner = tree->pack_count[level];
+    }
 }
 
 static void arrange_and_refit(rdli_workers *workers, const rdli_kernels *kernels, rdli_tree *tree, const rdl_box *boxes)
@@ -77,6 +93,7 @@ static void arrange_and_refit(rdli_workers *workers, const rdli_kernels *kernels
     rdli_tree_arrange(workers, tree, boxes);
     for (size_t i = tree->count; i % RDLI_WIDE != 0; i++)
         tree->order[i] = tree->order[tree->count - 1];
+    find_highest(tree);
     tree->arranged++;
     tree->built_spread = refit(workers, kernels, tree, boxes);
 }
@@ -102,6 +119,7 @@ void rdli_tree_update(rdli_workers *workers, const rdli_kernels *kernels, rdli_t
 void rdli_tree_release(rdli_memory *memory, rdli_tree *tree)
 {
     rdli_room_release(memory, &tree->pack_room);
+    rdli_room_release(memory, &tree->highest_room);
     rdli_room_release(memory, &tree->order_room);
     rdli_room_release(memory, &tree->item_room);
     rdli_room_release(memory, &tree->sum_room);

@@ -30,8 +30,9 @@ typedef struct rdli_tree {
     uint32_t pack_count[RDLI_LEVELS];
     rdli_pack *packs[RDLI_LEVELS];   /* into pack_room */
     uint32_t *order;                 /* count entries, then copies of the last up to a full pack */
+    uint32_t *highest[RDLI_LEVELS];  /* highest element number below each pack; into highest_room */
     uint32_t arranged;               /* grows with every new order */
-    rdli_room pack_room, order_room, item_room, sum_room;
+    rdli_room pack_room, highest_room, order_room, item_room, sum_room;
     double built_spread;             /* looseness right after the last build; see rdli_tree_update */
 } rdli_tree;
 
