@@ -38,17 +38,58 @@ static void settle_zone(rdl_engine *engine, rdli_zone *zone)
         contacts[order[i]].settled = 1;
 }
 
-static uint8_t clean_passes(rdl_engine *engine, const rdli_zone *zone)
+/* What a clean pass leaves of the lead over the floor (contacts.c). Planes taken at a certified answer err by the square of
+ * the next move over the floor, so that the lead may shrink as fast. */
+static double shorter_lead(double lead, double floor)
+{
+    return fmin(0.25 * lead, 8.0 * lead * (lead / floor));
+}
+
+/* The zone is certified as it stands: keep it, and look whether a closer answer is worth another pass. */
+static bool wants_refinement(rdl_engine *engine, const rdli_piece *piece, const rdli_zone *zone)
 {
     const uint32_t *order = (const uint32_t *)engine->response.zone_contacts.data + zone->contact_first;
+    const uint32_t *vertices = (const uint32_t *)engine->response.zone_vertices.data + zone->vertex_first;
     rdli_contact *contacts = engine->contacts.data;
+    double (*certified)[3] = engine->certified.data;
     uint8_t least = UINT8_MAX;
+    bool frozen = false;
+    for (uint32_t i = 0; i < zone->vertex_count; i++)
+        memcpy(certified[vertices[i]], piece->trial[vertices[i]], sizeof certified[0]);
     for (uint32_t i = 0; i < zone->contact_count; i++) {
-        uint8_t *clean = &contacts[order[i]].clean;
-        *clean = (uint8_t)(*clean + (*clean < UINT8_MAX));
-        least = *clean < least ? *clean : least;
+        rdli_contact *contact = &contacts[order[i]];
+        contact->clean = (uint8_t)(contact->clean + (contact->clean < UINT8_MAX));
+        contact->ahead = shorter_lead(contact->ahead, contact->floor);
+        least = contact->clean < least ? contact->clean : least;
+        frozen = frozen || contact->frozen;
     }
-    return least;
+    return !frozen && least <= REFINEMENTS;
+}
+
+/* A zone that was certified and broke in refinement goes back to what was certified, once. */
+static bool restore_zone(rdl_engine *engine, const rdli_piece *piece, const rdli_zone *zone)
+{
+    const uint32_t *order = (const uint32_t *)engine->response.zone_contacts.data + zone->contact_first;
+    const uint32_t *vertices = (const uint32_t *)engine->response.zone_vertices.data + zone->vertex_first;
+    rdli_contact *contacts = engine->contacts.data;
+    const double (*certified)[3] = engine->certified.data;
+    bool was_clean = false;
+    for (uint32_t i = 0; i < zone->contact_count; i++) {
+        const rdli_contact *contact = &contacts[order[i]];
+        if (contact->frozen || (contact->violated ? !contact->relapsed : contact->clean == 0))
+            return false;
+        was_clean = was_clean || contact->clean > 0 || contact->ahead > 0.0;
+    }
+    if (!was_clean)
+        return false;
+    for (uint32_t i = 0; i < zone->contact_count; i++)
+        contacts[order[i]].frozen = 1;
+    uint8_t *awake = engine->awake.data;
+    for (uint32_t i = 0; i < zone->vertex_count; i++) {
+        memcpy(piece->trial[vertices[i]], certified[vertices[i]], sizeof certified[0]);
+        awake[vertices[i]] = 1;
+    }
+    return true;
 }
 
 /* More energy than the host proposed, beyond rounding: never delivered by a zone that no driven vertex feeds. */
@@ -57,25 +98,35 @@ static bool gains_energy(const rdli_zone *zone)
     return !zone->driven && zone->energy_after > zone->energy_before * (1.0 + 1e-12);
 }
 
-static void choose_levels(rdl_engine *engine, uint64_t pass, uint64_t passes_max)
+static uint8_t next_level(const rdli_zone *zone, double share)
+{
+    uint8_t level = zone->level;
+    if (share >= fence_share && level < RDL_LEVEL_FENCE)
+        level = RDL_LEVEL_FENCE;
+    if (share >= rigid_share && !zone->driven)
+        level = RDL_LEVEL_RIGID;
+    return level;
+}
+
+static void choose_levels(rdl_engine *engine, const rdli_piece *piece, double share)
 {
     rdli_zone *zones = engine->response.zones.data;
-    double share = (double)pass / (double)passes_max;
     for (uint32_t z = 0; z < engine->response.zone_count; z++) {
         rdli_zone *zone = &zones[z];
         if (zone->settled)
             continue;
         if (!zone->violated) {
-            if (clean_passes(engine, zone) > REFINEMENTS)
+            /* A zone that took long to certify is not put at risk again for a closer answer. */
+            if (!wants_refinement(engine, piece, zone) || share >= fence_share)
                 settle_zone(engine, zone);
             continue;
         }
-        uint8_t level = zone->level;
-        if (share >= fence_share && level < RDL_LEVEL_FENCE)
-            level = RDL_LEVEL_FENCE;
-        if (share >= rigid_share && !zone->driven)
-            level = RDL_LEVEL_RIGID;
-        if (level != zone->level || level > 0)
+        if (restore_zone(engine, piece, zone)) {
+            zone->settled = 1; /* nothing to solve; the next detection judges */
+            continue;
+        }
+        uint8_t level = next_level(zone, share);
+        if (level > RDL_LEVEL_INEQUALITY)
             mark_zone(engine, zone, level);
         zone->level = level;
     }
@@ -106,6 +157,7 @@ rdl_status rdli_advance(rdl_engine *engine, const rdli_piece *piece, bool first_
     rdli_look look = { .from = piece->start, .to = (const double (*)[3])piece->trial, .awake = NULL,
         .fixed = piece->fixed, .squeeze = engine->squeeze.data, .first_piece = first_piece };
     uint8_t *awake = engine->awake.data;
+    memcpy(engine->certified.data, piece->target, piece->vertex_count * sizeof piece->target[0]);
     engine->contact_count = 0;
     engine->response.zone_count = 0; /* those of an earlier piece */
     *apart = false;
@@ -125,9 +177,9 @@ rdl_status rdli_advance(rdl_engine *engine, const rdli_piece *piece, bool first_
             status = rdli_zones_gather(&engine->response, piece, engine->contacts.data, engine->contact_count);
         if (status != RDL_OK || pass == passes_max || !hopeful)
             return status;
-        choose_levels(engine, pass, passes_max);
-        rdli_contacts_expand(engine, piece, false);
         memset(awake, 0, piece->vertex_count);
+        choose_levels(engine, piece, (double)pass / (double)passes_max);
+        rdli_contacts_expand(engine, piece, false);
         status = rdli_zones_solve(&engine->response, piece, engine->contacts.data, awake);
         if (status != RDL_OK)
             return status;

@@ -1,4 +1,5 @@
 /* driver/contacts.c: the contact list of a piece: merging hits, first-order expansions. */
+#include "base/vector.h"
 #include "driver/engine.h"
 
 enum { CHUNK = 64 };
@@ -23,17 +24,70 @@ static void positions_at(const rdli_piece *piece, const uint32_t vertex[4], doub
         }
 }
 
-static bool expand_at(const rdli_piece *piece, const rdli_contact *contact, double time, rdli_plane *plane)
+static bool closest_at(const rdli_piece *piece, const rdli_contact *contact, double time, rdli_plane *plane)
 {
     double x[4][3];
     rdli_closest closest;
     positions_at(piece, contact->vertex, time, x);
     rdli_closest_points((int)contact->kind, (const double (*)[3])x, &closest);
     if (closest.distance_hi == 0.0)
-        return false; /* no direction here: the last one stays */
+        return false; /* no direction here */
+    memset(plane, 0, sizeof *plane);
     memcpy(plane->normal, closest.normal, sizeof plane->normal);
     memcpy(plane->weight, closest.weight, sizeof plane->weight);
     return true;
+}
+
+static double weight_distance(const rdli_plane *a, const rdli_plane *b)
+{
+    double most = 0.0;
+    for (int k = 0; k < 4; k++)
+        most = fmax(most, fabs(a->weight[k] - b->weight[k]));
+    return most;
+}
+
+/* Adds the plane at the closest points, in the place of a plane at nearly the same points, or, when all places are
+ * taken, of the one that carries least. A plane at a distance of less than a sixteenth of the features sees the same
+ * curvature. */
+static void add_plane(rdli_contact *contact, const rdli_plane *plane)
+{
+    uint8_t place = contact->plane_count;
+    double load = 0.0, near = 0x1p-4;
+    for (uint8_t i = 0; i < contact->plane_count; i++) {
+        double apart = weight_distance(&contact->plane[i], plane);
+        if (apart < near && !contact->plane[i].kept) {
+            near = apart;
+            place = i;
+            load = contact->plane[i].load;
+        }
+    }
+    if (place == RDLI_PLANES) {
+        place = 0;
+        for (uint8_t i = 1; i < RDLI_PLANES; i++)
+            if (contact->plane[i].load < contact->plane[place].load)
+                place = i;
+    } else if (place == contact->plane_count) {
+        contact->plane_count++;
+    }
+    contact->plane[place] = *plane;
+    contact->plane[place].load = load;
+    contact->nearest = place;
+}
+
+/* The planes at other points of the pair, about the present end. */
+static void turn_planes(const rdli_piece *piece, rdli_contact *contact)
+{
+    for (uint8_t i = 0; i < contact->plane_count; i++) {
+        rdli_plane *plane = &contact->plane[i];
+        double d[3] = { 0.0, 0.0, 0.0 };
+        if (plane->kept)
+            continue;
+        for (int k = 0; k < 4; k++)
+            rdli_add_scaled(d, plane->weight[k], piece->trial[contact->vertex[k]]);
+        double length = rdli_length(d);
+        for (int k = 0; length > 0.0 && k < 3; k++)
+            plane->normal[k] = d[k] / length;
+    }
 }
 
 static void start_contact(const rdli_piece *piece, const rdli_hit *hit, rdli_contact *contact)
@@ -46,28 +100,47 @@ static void start_contact(const rdli_piece *piece, const rdli_hit *hit, rdli_con
     contact->gap = hit->gap;
     memcpy(contact->start_distance, hit->start_distance, sizeof contact->start_distance);
     contact->time = 1.0;
-    rdli_plane begin = { { 0.0, 0.0, 0.0 }, { 0.0, 0.0, 0.0, 0.0 }, 0.0 };
-    expand_at(piece, contact, 0.0, &begin);
-    memcpy(contact->fence, begin.normal, sizeof contact->fence);
-    contact->plane = begin;
+    rdli_plane begin;
+    if (closest_at(piece, contact, 0.0, &begin))
+        memcpy(contact->fence, begin.normal, sizeof contact->fence);
 }
 
-static void strike(const rdli_piece *piece, const rdli_hit *hit, rdli_contact *contact)
+/* A contact that was solved and is violated again lost to curvature. Aiming ahead by some multiple of the loss, and of the
+ * last lead where that was not enough, certifies the zone in the next pass or two; clean passes then take the lead back
+ * (advance.c). A lead below a thousandth of the floor would be lost among the curvature of the neighbours. */
+static const double lead_least = 0x1p-10, lead_most = 0.5;
+
+static void aim_ahead(const rdli_piece *piece, const rdli_plane *plane, rdli_contact *contact)
+{
+    double value = 0.0;
+    for (int i = 0; i < 4; i++)
+        value += plane->weight[i] * rdli_dot(plane->normal, piece->trial[contact->vertex[i]]);
+    double lost = contact->floor - value;
+    double lead = 4.0 * fmax(lost, contact->ahead);
+    lead = fmax(lead, lead_least * contact->floor);
+    contact->ahead = fmax(contact->ahead, fmin(lead, lead_most * contact->floor));
+}
+
+static void strike(const rdli_piece *piece, const rdli_hit *hit, bool fresh, rdli_contact *contact)
 {
     contact->violated = 1;
+    contact->relapsed = fresh || contact->clean > 0;
     contact->clean = 0;
     contact->settled = 0;
     contact->floor = hit->floor;
     contact->time = hit->reaches_path ? hit->time : 1.0;
-    double load = contact->plane.load;
-    expand_at(piece, contact, contact->time, &contact->plane);
-    contact->plane.load = load;
+    if (!hit->reaches_path)
+        turn_planes(piece, contact);
+    rdli_plane plane;
+    if (!closest_at(piece, contact, contact->time, &plane))
+        return;
+    if (!fresh)
+        aim_ahead(piece, &plane, contact);
     if (hit->reaches_path) {
-        if (contact->blocks < UINT8_MAX)
-            contact->blocks++;
-        contact->path = contact->plane;
-        contact->path.load = 0.0;
+        contact->blocks = (uint8_t)(contact->blocks + (contact->blocks < UINT8_MAX));
+        plane.kept = contact->blocks > 1;
     }
+    add_plane(contact, &plane);
 }
 
 typedef struct job {
@@ -90,9 +163,10 @@ static void strike_chunk(void *data, size_t chunk, unsigned worker)
             continue;
         rdli_contact *contact = &j->contacts[c];
         const rdli_hit *hit = &hits[j->hit_of[c]];
-        if (contact->gap == 0.0) /* fresh: the merge has only set its key */
+        bool fresh = contact->gap == 0.0; /* the merge has left it empty */
+        if (fresh)
             start_contact(j->piece, hit, contact);
-        strike(j->piece, hit, contact);
+        strike(j->piece, hit, fresh, contact);
     }
 }
 
@@ -144,9 +218,10 @@ static void expand_chunk(void *data, size_t chunk, unsigned worker)
         if (contact->violated || (idle && !j->all))
             continue;
         contact->time = 1.0;
-        double load = contact->plane.load;
-        expand_at(j->piece, contact, 1.0, &contact->plane);
-        contact->plane.load = load;
+        turn_planes(j->piece, contact);
+        rdli_plane plane;
+        if (closest_at(j->piece, contact, 1.0, &plane))
+            add_plane(contact, &plane);
     }
 }
 

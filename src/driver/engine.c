@@ -26,6 +26,7 @@ static rdl_status reserve_all(rdl_engine *engine)
         { &engine->piece_start, n, 3 * sizeof(double) },
         { &engine->target, n, 3 * sizeof(double) },
         { &engine->trial, n, 3 * sizeof(double) },
+        { &engine->certified, n, 3 * sizeof(double) },
         { &engine->velocity, n, 3 * sizeof(double) },
         { &engine->impulses, n, 3 * sizeof(double) },
         { &engine->last, n, 3 * sizeof(double) },
@@ -79,7 +80,7 @@ void rdli_engine_destroy(rdl_engine *engine)
     rdli_memory *memory = &engine->memory;
     rdli_room *rooms[] = { &engine->box_room[0], &engine->box_room[1], &engine->box_room[2], &engine->muted, &engine->mass,
         &engine->driven, &engine->fixed, &engine->awake, &engine->released, &engine->moved, &engine->squeeze,
-        &engine->start, &engine->proposed, &engine->piece_start, &engine->target, &engine->trial, &engine->velocity,
+        &engine->start, &engine->proposed, &engine->piece_start, &engine->target, &engine->trial, &engine->certified, &engine->velocity,
         &engine->impulses, &engine->last, &engine->flags, &engine->indices, &engine->hits, &engine->chunk_counts,
         &engine->contacts, &engine->merged, &engine->waypoint_times, &engine->waypoint_positions, &engine->out_contacts,
         &engine->out_zones, &engine->named, &engine->held, &engine->impulse, &engine->crossings };

@@ -21,15 +21,8 @@ void rdli_outcome_begin(rdl_engine *engine)
     memset(engine->angular_drift, 0, sizeof engine->angular_drift);
 }
 
-static double load_of(const rdli_contact *contact)
-{
-    double load = contact->plane.load + contact->path.load;
-    for (int d = 0; d < 4; d++)
-        load += contact->fence_load[d];
-    return load;
-}
-
-static void book_contact(rdl_engine *engine, const rdli_contact *contact, double impulse, double begun, double length)
+static void book_contact(rdl_engine *engine, const rdli_contact *contact, const rdli_plane *plane, double impulse,
+                         double begun, double length)
 {
     rdl_contact *row = (rdl_contact *)engine->out_contacts.data + engine->out_contact_count++;
     memset(row, 0, sizeof *row);
@@ -38,8 +31,8 @@ static void book_contact(rdl_engine *engine, const rdli_contact *contact, double
     row->second = contact->second;
     row->zone = (uint32_t)engine->out_zone_count; /* zones are booked one after the other: see book_zones */
     memcpy(row->vertices, contact->vertex, sizeof row->vertices);
-    memcpy(row->weights, contact->plane.weight, sizeof row->weights);
-    memcpy(row->normal, contact->plane.normal, sizeof row->normal);
+    memcpy(row->weights, plane->weight, sizeof row->weights);
+    memcpy(row->normal, plane->normal, sizeof row->normal);
     row->time = begun + length * contact->time;
     row->impulse = impulse;
 }
@@ -86,10 +79,11 @@ static void book_zones(rdl_engine *engine, const rdli_piece *piece, double begun
         uint32_t loaded = 0;
         for (uint32_t i = 0; i < zones[z].contact_count; i++) {
             uint32_t c = order[zones[z].contact_first + i];
-            if (load_of(&contacts[c]) > 0.0) {
-                book_contact(engine, &contacts[c], impulse[c], begun, length);
-                loaded++;
-            }
+            for (uint8_t k = 0; k < contacts[c].plane_count; k++)
+                if (impulse[RDLI_PLANES * c + k] >= 0.0) {
+                    book_contact(engine, &contacts[c], &contacts[c].plane[k], impulse[RDLI_PLANES * c + k], begun, length);
+                    loaded++;
+                }
         }
         if (loaded > 0)
             book_zone(engine, piece, &zones[z], loaded, length);
@@ -101,8 +95,8 @@ rdl_status rdli_outcome_piece(rdl_engine *engine, const rdli_piece *piece, doubl
     size_t count = engine->contact_count, zones = engine->response.zone_count;
     if (count == 0)
         return RDL_OK;
-    if (!rdli_room_reserve(&engine->memory, &engine->impulse, count, sizeof(double), false)
-        || !rdli_room_reserve(&engine->memory, &engine->out_contacts, engine->out_contact_count + count,
+    if (!rdli_room_reserve(&engine->memory, &engine->impulse, RDLI_PLANES * count, sizeof(double), false)
+        || !rdli_room_reserve(&engine->memory, &engine->out_contacts, engine->out_contact_count + RDLI_PLANES * count,
                               sizeof(rdl_contact), true)
         || !rdli_room_reserve(&engine->memory, &engine->out_zones, engine->out_zone_count + zones, sizeof(rdl_zone), true))
         return RDL_NO_MEMORY;

@@ -4,11 +4,16 @@
 
 #include <stdint.h>
 
-/* A half space that a pair is to end in: normal . sum_i weight[i] x_i >= aim. */
+/* A half space that a pair is to end in: normal . sum_i weight[i] x_i >= aim. For fixed weights the distance of the two
+ * points is convex in x, so its first-order expansion never promises too much; what it misses are other points of the
+ * same pair. A contact therefore collects planes at several places (exchange method for the minimum over the weights). */
 typedef struct rdli_plane {
     double normal[3], weight[4];
-    double load; /* multiplier, kg m: warm start of the next solve */
+    double load;   /* multiplier, kg m: warm start of the next solve */
+    uint8_t kept;  /* the normal is that of a blocked path and is not taken anew */
 } rdli_plane;
+
+enum { RDLI_PLANES = 4 }; /* two parallel edges touch along a line (2), two parallel faces' features at up to 3 places */
 
 typedef struct rdli_contact {
     uint32_t kind, first, second, zone;
@@ -16,16 +21,20 @@ typedef struct rdli_contact {
     double gap;               /* sum of the half-thicknesses, m */
     double start_distance[2]; /* enclosure of the distance at the start of the step, m */
     double floor;             /* end floor to be kept now: squeezed where there was no room, m */
+    double ahead;             /* aimed above the floor for now, by what curvature took in earlier passes, m */
     double time;              /* share of the piece at which the plane was taken */
-    rdli_plane plane;         /* first order expansion of the distance about the last iterate */
-    rdli_plane path;          /* kept expansion at the time at which the path was blocked, once it was so twice */
+    rdli_plane plane[RDLI_PLANES];
     double fence[3];          /* separating direction at the start of the piece, unit */
     double fence_load[4];
+    uint8_t plane_count;
+    uint8_t nearest;          /* which plane is at the closest points */
     uint8_t violated;         /* in the last detection */
-    uint8_t blocks;           /* how often the path was found blocked, saturating */
+    uint8_t blocks;           /* how often the path was found blocked, saturating; see kept */
     uint8_t fenced;           /* the zone fell back to the separating directions */
     uint8_t rigid;            /* the zone fell back to moving as one rigid body */
     uint8_t settled;          /* the zone's last solve changed nothing that matters */
+    uint8_t relapsed;         /* violated after a clean detection, or new */
+    uint8_t frozen;           /* refining the zone broke it once: the next certified answer stands */
     uint8_t clean;            /* detections in a row without a violation in the zone, saturating */
 } rdli_contact;
 

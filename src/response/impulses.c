@@ -13,37 +13,38 @@ typedef struct job {
     double *impulse;
 } job;
 
-static double approach(const rdli_contact *contact, const double (*velocity)[3])
+static double approach(const rdli_contact *contact, const rdli_plane *plane, const double (*velocity)[3])
 {
     double sum = 0.0;
     for (int k = 0; k < 4; k++)
-        sum += contact->plane.weight[k] * rdli_dot(contact->plane.normal, velocity[contact->vertex[k]]);
+        sum += plane->weight[k] * rdli_dot(plane->normal, velocity[contact->vertex[k]]);
     return sum;
 }
 
-static bool carries_load(const rdli_contact *contact)
+/* The planes of a contact that pushed; one that fell back to fixed directions counts with its closest points. */
+static bool carries_load(const rdli_contact *contact, uint8_t plane)
 {
-    double load = contact->plane.load + contact->path.load;
+    double fenced = 0.0;
     for (int d = 0; d < 4; d++)
-        load += contact->fence_load[d];
-    return load > 0.0;
+        fenced += contact->fence_load[d];
+    return contact->plane[plane].load > 0.0 || (fenced > 0.0 && plane == contact->nearest);
 }
 
-static void set_row(const job *j, const rdli_contact *contact, rdli_row *row)
+static void set_row(const job *j, const rdli_contact *contact, const rdli_plane *plane, rdli_row *row)
 {
     const uint32_t *local = j->response->local.data;
     const double (*velocity)[3] = (const double (*)[3])j->velocity;
     memset(row, 0, sizeof *row);
-    rdli_copy(contact->plane.normal, row->normal);
-    double before = approach(contact, velocity);
+    rdli_copy(plane->normal, row->normal);
+    double before = approach(contact, plane, velocity);
     row->bound = before < 0.0 ? -j->restitution * before : 0.0;
     row->tolerance = 1e-13 * fabs(before);
     for (int k = 0; k < 4; k++) {
         uint32_t v = contact->vertex[k];
         if (j->piece->fixed[v]) {
-            row->bound -= contact->plane.weight[k] * rdli_dot(row->normal, velocity[v]);
+            row->bound -= plane->weight[k] * rdli_dot(row->normal, velocity[v]);
         } else {
-            row->weight[k] = contact->plane.weight[k];
+            row->weight[k] = plane->weight[k];
             row->vertex[k] = local[v];
         }
     }
@@ -63,10 +64,11 @@ static void solve_zone(void *data, size_t index, unsigned worker)
     rdli_row *rows = (rdli_row *)r->rows.data + zone->row_first;
     uint32_t row = 0;
     for (uint32_t i = 0; i < zone->contact_count; i++)
-        if (carries_load(&j->contacts[order[i]])) {
-            load[row] = 0.0;
-            set_row(j, &j->contacts[order[i]], &rows[row++]);
-        }
+        for (uint8_t k = 0; k < j->contacts[order[i]].plane_count; k++)
+            if (carries_load(&j->contacts[order[i]], k)) {
+                load[row] = 0.0;
+                set_row(j, &j->contacts[order[i]], &j->contacts[order[i]].plane[k], &rows[row++]);
+            }
     if (row == 0)
         return;
     double fastest = 0.0;
@@ -83,8 +85,9 @@ static void solve_zone(void *data, size_t index, unsigned worker)
     rdli_solve(&problem);
     row = 0;
     for (uint32_t i = 0; i < zone->contact_count; i++)
-        if (carries_load(&j->contacts[order[i]]))
-            j->impulse[order[i]] = load[row++];
+        for (uint8_t k = 0; k < j->contacts[order[i]].plane_count; k++)
+            if (carries_load(&j->contacts[order[i]], k))
+                j->impulse[RDLI_PLANES * order[i] + k] = load[row++];
     for (uint32_t i = 0; i < zone->vertex_count; i++)
         rdli_copy(problem.solution[i], j->velocity[vertices[i]]);
 }
@@ -92,11 +95,20 @@ static void solve_zone(void *data, size_t index, unsigned worker)
 rdl_status rdli_zones_impulses(rdli_response *r, const rdli_piece *piece, const rdli_contact *contacts, size_t count,
                                double restitution, double (*velocity)[3], double *impulse)
 {
-    /* Rooms for rows and vertices were made by the last position solve, which had at least as many rows. */
-    for (size_t c = 0; c < count; c++)
-        impulse[c] = 0.0;
-    if (r->row_total == 0)
+    for (size_t i = 0; i < RDLI_PLANES * count; i++)
+        impulse[i] = -1.0;
+    if (r->zone_count == 0)
         return RDL_OK;
+    rdli_zone *zones = r->zones.data;
+    const uint32_t *order = r->zone_contacts.data;
+    r->row_total = 0;
+    for (uint32_t z = 0; z < r->zone_count; z++) {
+        zones[z].row_first = (uint32_t)r->row_total;
+        for (uint32_t i = 0; i < zones[z].contact_count; i++)
+            r->row_total += contacts[order[zones[z].contact_first + i]].plane_count;
+    }
+    if (rdli_response_reserve(r) != RDL_OK)
+        return RDL_NO_MEMORY;
     job j = { r, piece, contacts, restitution, velocity, impulse };
     rdli_parallel_for(r->workers, r->zone_count, solve_zone, &j);
     return RDL_OK;

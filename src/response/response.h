@@ -41,10 +41,13 @@ rdl_status rdli_zones_gather(rdli_response *response, const rdli_piece *piece, r
  * contacts. */
 rdl_status rdli_zones_solve(rdli_response *response, const rdli_piece *piece, rdli_contact *contacts, uint8_t *awake);
 
+/* Makes room for row_total rows and vertex_total vertices. */
+rdl_status rdli_response_reserve(rdli_response *response);
+
 /* Velocity impulses of the contacts that carry load: for each zone the smallest impulses along the contact normals with
  * which no contact approaches (restitution 0), or separates at `restitution` times its approach. `velocity` (in/out, m per
- * step) gets M^-1 J' impulse added; contact.plane must be up to date with the delivered positions; impulse[c] gets the
- * impulse of contact c (kg m per step). */
+ * step) gets M^-1 J' impulse added; the planes must be up to date with the delivered positions; impulse[RDLI_PLANES c + k]
+ * gets the impulse of plane k of contact c (kg m per step), or -1 where the plane carried no load. */
 rdl_status rdli_zones_impulses(rdli_response *response, const rdli_piece *piece, const rdli_contact *contacts, size_t count,
                                double restitution, double (*velocity)[3], double *impulse);
 

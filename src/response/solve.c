@@ -9,6 +9,8 @@ typedef struct state {
     double step_bar;                               /* fixed step length of the projection, 1 / |A| */
 } state;
 
+enum { RELAXATIONS = 16 }; /* sweeps before the conjugate gradients take over */
+
 static double row_value(const rdli_row *row, const double (*x)[3])
 {
     double sum = 0.0;
@@ -55,28 +57,51 @@ static void scale_rows(const rdli_problem *problem)
     }
 }
 
-/* Gershgorin bound of the scaled matrix, from absolute row sums gathered over the vertices. */
-static double norm_bound(const rdli_problem *problem)
+/* Largest eigenvalue of the scaled matrix by the power method, from a fixed start. It approaches from below; the projection
+ * step is safe up to twice the inverse, which leaves room for what is missing. */
+static double norm_estimate(state *s)
 {
-    double (*sum)[3] = problem->scratch;
-    memset(sum, 0, problem->vertex_count * sizeof *sum);
-    for (size_t r = 0; r < problem->row_count; r++) {
-        const rdli_row *row = &problem->rows[r];
-        for (int k = 0; k < 4; k++)
-            for (int c = 0; c < 3; c++)
-                sum[row->vertex[k]][c] += row->scale * fabs(row->weight[k] * row->normal[c]);
+    size_t n = s->problem->row_count;
+    double size = 0.0;
+    for (size_t r = 0; r < n; r++)
+        s->direction[r] = 1.0 + (double)(r % 7) / 8.0;
+    for (int step = 0; step < 8; step++) {
+        apply(s->problem, s->direction, s->image);
+        double square = 0.0, before = 0.0;
+        for (size_t r = 0; r < n; r++) {
+            before += s->direction[r] * s->direction[r];
+            square += s->image[r] * s->image[r];
+        }
+        if (!(square > 0.0))
+            return 0.0;
+        size = sqrt(square / before);
+        double scale = 1.0 / sqrt(square);
+        for (size_t r = 0; r < n; r++)
+            s->direction[r] = s->image[r] * scale;
     }
-    double bound = 0.0;
-    for (size_t r = 0; r < problem->row_count; r++) {
+    return size;
+}
+
+/* One projected Gauss-Seidel sweep over the rows, forwards or backwards: settles most of which rows carry load. */
+static void relax(state *s, bool backwards)
+{
+    rdli_problem *problem = s->problem;
+    size_t n = problem->row_count;
+    for (size_t i = 0; i < n; i++) {
+        size_t r = backwards ? n - 1 - i : i;
         const rdli_row *row = &problem->rows[r];
-        double total = 0.0;
+        if (row->scale == 0.0)
+            continue;
+        double residual = row_value(row, (const double (*)[3])problem->solution) - row->bound;
+        double moved = s->scaled[r] - row->scale * residual;
+        double change = (moved > 0.0 ? moved : 0.0) - s->scaled[r];
+        if (change == 0.0)
+            continue;
+        s->scaled[r] += change;
         for (int k = 0; k < 4; k++)
-            for (int c = 0; c < 3; c++)
-                total += fabs(row->weight[k] * row->normal[c]) * problem->inverse_mass[row->vertex[k]]
-                    * sum[row->vertex[k]][c];
-        bound = fmax(bound, row->scale * total);
+            rdli_add_scaled(problem->solution[row->vertex[k]],
+                            change * row->scale * row->weight[k] * problem->inverse_mass[row->vertex[k]], row->normal);
     }
-    return bound;
 }
 
 /* Solution and unscaled row residuals from the present multipliers; the gradient in scaled variables. */
@@ -217,13 +242,17 @@ rdli_solved rdli_solve(rdli_problem *problem)
     state s = { problem, problem->work, problem->work + n, problem->work + 2 * n, problem->work + 3 * n, 0.0 };
     rdli_solved solved = { 0, false, false, 0.0, 0.0 };
     scale_rows(problem);
-    double bound = norm_bound(problem);
-    s.step_bar = bound > 0.0 ? 1.0 / bound : 1.0;
+    double norm = norm_estimate(&s);
+    s.step_bar = norm > 0.0 ? 1.5 / norm : 1.0;
     memset(s.scaled, 0, n * sizeof(double));
     solved.worst_before = refresh(&s);
     for (size_t r = 0; r < n; r++)
         s.scaled[r] = problem->rows[r].scale > 0.0 ? problem->load[r] / problem->rows[r].scale : 0.0;
     refresh(&s);
+    for (; solved.sweeps < RELAXATIONS && solved.sweeps < problem->sweeps_max && !all_done(&s); solved.sweeps++) {
+        relax(&s, solved.sweeps % 2 != 0);
+        refresh(&s);
+    }
     free_gradient(&s, s.direction);
     while (solved.sweeps < problem->sweeps_max) {
         if (all_done(&s)) {

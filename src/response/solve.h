@@ -36,7 +36,7 @@ typedef struct rdli_solved {
  *   minimise 1/2 l' A l - l' r,  l >= 0,  A = J M^-1 J',  r = bound - J target,  x = target + M^-1 J' l,
  * by modified proportioning with reduced gradient projections (Dostal & Schoeberl 2005, algorithm 1), which is monotone,
  * keeps l feasible, needs no matrix and copes with dependent rows. Departures from the paper: rows are scaled to unit
- * diagonal; the stopping test is per row in metres; directions of zero curvature end the solve as infeasible, since then
+ * diagonal; a few projected Gauss-Seidel sweeps come first; the stopping test is per row in metres; directions of zero curvature end the solve as infeasible, since then
  * the dual is unbounded and the half spaces have no common point.
  * Serial; the order of all sums is that of rows and vertices. No allocation. */
 rdli_solved rdli_solve(rdli_problem *problem);

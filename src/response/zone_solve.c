@@ -26,7 +26,7 @@ static uint32_t rows_of(const rdli_contact *contact, bool fenced)
 {
     if (fenced)
         return difference_count(contact->kind);
-    return contact->blocks > 1 ? 2 : 1;
+    return contact->plane_count;
 }
 
 /* What rounding to the host's format may take from normal . sum weight x: every coordinate moves by at most half a unit
@@ -48,7 +48,7 @@ static double aim_of(const rdli_piece *piece, const rdli_contact *contact, const
 {
     /* The rounding of our own sums is a few units of the double format; it matters where the host's is double too. */
     double own = piece->format == RDL_FLOAT64 ? 4.0 : 1.0;
-    return contact->floor * (1.0 + piece->aim_margin) + own * rounding_allowance(piece, contact, normal);
+    return contact->floor * (1.0 + piece->aim_margin) + contact->ahead + own * rounding_allowance(piece, contact, normal);
 }
 
 static void set_row(rdli_row *row, const job *j, const rdli_contact *contact, const double normal[3],
@@ -76,11 +76,9 @@ static void set_row(rdli_row *row, const job *j, const rdli_contact *contact, co
 static void fill_rows(const job *j, const rdli_contact *contact, bool fenced, rdli_row *rows, double *loads)
 {
     if (!fenced) {
-        set_row(&rows[0], j, contact, contact->plane.normal, contact->plane.weight);
-        loads[0] = contact->plane.load;
-        if (contact->blocks > 1) {
-            set_row(&rows[1], j, contact, contact->path.normal, contact->path.weight);
-            loads[1] = contact->path.load;
+        for (uint8_t i = 0; i < contact->plane_count; i++) {
+            set_row(&rows[i], j, contact, contact->plane[i].normal, contact->plane[i].weight);
+            loads[i] = contact->plane[i].load;
         }
         return;
     }
@@ -96,32 +94,45 @@ static void fill_rows(const job *j, const rdli_contact *contact, bool fenced, rd
 static void keep_loads(rdli_contact *contact, bool fenced, const double *loads)
 {
     if (!fenced) {
-        contact->plane.load = loads[0];
-        contact->path.load = contact->blocks > 1 ? loads[1] : 0.0;
+        for (uint8_t i = 0; i < contact->plane_count; i++)
+            contact->plane[i].load = loads[i];
         return;
     }
     for (uint32_t d = 0; d < difference_count(contact->kind); d++)
         contact->fence_load[d] = loads[d];
 }
 
-/* A tolerance below what the positions can resolve would never be met; above a ten-millionth of the correction the
- * answer would not be the nearest one to the promised 1e-6. */
-static void set_tolerances(rdli_problem *problem)
+static double worst_violation(const rdli_problem *problem, const double (*x)[3])
 {
-    double worst = 0.0, largest = 0.0;
+    double worst = 0.0;
     for (size_t r = 0; r < problem->row_count; r++) {
         const rdli_row *row = &problem->rows[r];
         double value = -row->bound;
         for (int k = 0; k < 4; k++)
-            value += row->weight[k] * rdli_dot(row->normal, problem->target[row->vertex[k]]);
+            value += row->weight[k] * rdli_dot(row->normal, x[row->vertex[k]]);
         worst = fmax(worst, -value);
     }
-    for (size_t i = 0; i < problem->vertex_count; i++)
+    return worst;
+}
+
+/* How exactly the half spaces must be met. While the zone is violated, planes will be taken anew: a fiftieth of the present
+ * violation is enough, so that early passes are cheap and late ones exact. A clean zone is solved to a fraction of a
+ * millionth of its correction, so that the answer is the nearest one to the promised 1e-6. Never below what the positions
+ * can resolve. */
+static void set_tolerances(const job *j, const rdli_zone *zone, rdli_problem *problem)
+{
+    const uint32_t *vertices = (const uint32_t *)j->response->zone_vertices.data + zone->vertex_first;
+    double largest = 0.0, correction = worst_violation(problem, problem->target);
+    for (size_t i = 0; i < problem->vertex_count; i++) {
+        rdli_copy(j->piece->trial[vertices[i]], problem->solution[i]);
         for (int k = 0; k < 3; k++)
             largest = fmax(largest, fabs(problem->target[i][k]));
+    }
+    double fine = 2e-8 * correction;
+    double coarse = zone->violated ? 0.02 * worst_violation(problem, (const double (*)[3])problem->solution) : 0.0;
     for (size_t r = 0; r < problem->row_count; r++) {
         double *tolerance = &problem->rows[r].tolerance;
-        *tolerance = fmax(fmin(*tolerance, 1e-7 * worst), largest * 0x1p-48);
+        *tolerance = fmax(fmax(fmin(*tolerance, fine), coarse), largest * 0x1p-48);
     }
 }
 
@@ -151,7 +162,7 @@ static void account(const job *j, rdli_zone *zone, const double (*solution)[3])
     zone->energy_after = 0.5 * (after - rdli_dot(moved_sum, moved_sum) / all);
 }
 
-/* Writes the rounded answer. Without a violation before the solve, an answer that differs by less than a ten-millionth of
+/* Writes the rounded answer. Without a violation before the solve, an answer that differs by less than a third of a millionth of
  * the correction is not written: the certified bits stay, and the zone is settled. */
 static void write_back(const job *j, rdli_zone *zone, const double (*solution)[3])
 {
@@ -164,7 +175,7 @@ static void write_back(const job *j, rdli_zone *zone, const double (*solution)[3
             change = fmax(change, fabs(rdli_round_to(piece->format, solution[i][k]) - piece->trial[v][k]));
             correction = fmax(correction, fabs(solution[i][k] - piece->target[v][k]));
         }
-    if (!zone->violated && change <= 1e-7 * correction) {
+    if (!zone->violated && change <= 3e-7 * correction) {
         zone->settled = 1;
         return;
     }
@@ -244,7 +255,7 @@ static void solve_zone(void *data, size_t index, unsigned worker)
             fill_rows(j, &j->contacts[order[i]], fenced, &problem.rows[row], &problem.load[row]);
             row += rows_of(&j->contacts[order[i]], fenced);
         }
-        set_tolerances(&problem);
+        set_tolerances(j, zone, &problem);
         rdli_solved solved = rdli_solve(&problem);
         zone->sweeps = solved.sweeps;
         zone->infeasible = solved.infeasible;
@@ -261,7 +272,7 @@ static void solve_zone(void *data, size_t index, unsigned worker)
         j->contacts[order[i]].settled = zone->settled;
 }
 
-static rdl_status reserve_rows(rdli_response *r)
+rdl_status rdli_response_reserve(rdli_response *r)
 {
     size_t rows = r->row_total, vertices = r->vertex_total;
     bool fits = rdli_room_reserve(r->memory, &r->rows, rows, sizeof(rdli_row), false)
@@ -286,7 +297,7 @@ rdl_status rdli_zones_solve(rdli_response *r, const rdli_piece *piece, rdli_cont
             zones[z].row_count += rows_of(&contacts[order[zones[z].contact_first + i]], zones[z].level >= RDL_LEVEL_FENCE);
         r->row_total += zones[z].row_count;
     }
-    if (reserve_rows(r) != RDL_OK)
+    if (rdli_response_reserve(r) != RDL_OK)
         return RDL_NO_MEMORY;
     job j = { r, piece, contacts, awake };
     rdli_parallel_for(r->workers, r->zone_count, solve_zone, &j);
