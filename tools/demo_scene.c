@@ -2,6 +2,8 @@
  * so that every machine plays the same bits. */
 #include "demo_scene.h"
 
+#include "picture.h"
+
 #include <stdlib.h>
 #include <string.h>
 
@@ -165,6 +167,35 @@ static int add_hands(demo_scene *scene, const cut *c, const sheet *s)
     return 1;
 }
 
+/* ---- colours ---- */
+
+/* Two light bands run along the border. */
+static uint8_t band_colour(const cut *c, const uint32_t triangle[3], const sheet *s)
+{
+    double half = 0.5 * c->squares * c->spacing, nearest = half;
+    for (int side = 0; side < 2; side++) {
+        double mean = 0;
+        for (int k = 0; k < 3; k++)
+            mean += s->pattern[triangle[k]][side] / 3;
+        double inside = half - (mean < 0 ? -mean : mean);
+        nearest = inside < nearest ? inside : nearest;
+    }
+    return (nearest > 0.03 && nearest < 0.048) || (nearest > 0.06 && nearest < 0.066) ? PICTURE_BAND : PICTURE_CLOTH;
+}
+
+static int paint(demo_scene *scene, const cut *c, const sheet *s)
+{
+    const host *h = scene->h;
+    scene->triangle_colour = malloc(h->triangle_count + 1);
+    scene->segment_colour = malloc(h->segment_count + 1);
+    if (!scene->triangle_colour || !scene->segment_colour)
+        return 0;
+    for (size_t t = 0; t < h->triangle_count; t++)
+        scene->triangle_colour[t] = t < s->triangle_count ? band_colour(c, s->triangles[t], s) : PICTURE_BODY;
+    memset(scene->segment_colour, PICTURE_YARN, h->segment_count);
+    return 1;
+}
+
 static int build(demo_scene *scene, const demo_body *body, const cut *c)
 {
     sheet s;
@@ -174,7 +205,8 @@ static int build(demo_scene *scene, const demo_body *body, const cut *c)
                               (const uint32_t (*)[3])s.triangles, &scene->cloth_first) &&
                add_fringe(scene, c, &s) && add_hands(scene, c, &s) &&
                host_add_body(scene->h, "figure", 0.0, 0.3, body->vertex_count, (const double (*)[3])body->vertices,
-                             body->triangle_count, (const uint32_t (*)[3])body->triangles, &scene->body_first);
+                             body->triangle_count, (const uint32_t (*)[3])body->triangles, &scene->body_first) &&
+               paint(scene, c, &s);
     scene->cloth_triangle_count = s.triangle_count;
     sheet_free(&s);
     if (!done)
@@ -192,9 +224,11 @@ demo_scene *demo_scene_create(const demo_body *body, int small)
     demo_scene *scene = calloc(1, sizeof *scene);
     if (!scene)
         return NULL;
-    scene->steps_per_picture = 4;
+    scene->steps_per_picture = 3;
     scene->step = 1.0 / (DEMO_PICTURE_RATE * (double)scene->steps_per_picture);
     scene->h = host_create();
+    if (scene->h)
+        scene->h->solver_tolerance = 3e-3; /* leaves about 1e-3 m/s: far less than contact corrects */
     if (!scene->h || !build(scene, body, small ? &COARSE : &FINE)) {
         demo_scene_destroy(scene);
         return NULL;
@@ -209,6 +243,8 @@ void demo_scene_destroy(demo_scene *scene)
     host_destroy(scene->h);
     free(scene->body_rest);
     free(scene->hand_rest);
+    free(scene->triangle_colour);
+    free(scene->segment_colour);
     free(scene);
 }
 

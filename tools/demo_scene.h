@@ -19,6 +19,8 @@ typedef struct demo_scene {
     size_t strand_count, points_each;
     size_t cloth_first, strand_first, body_first, body_count, hand_count;
     size_t cloth_triangle_count; /* the first triangles of the host's list */
+    uint8_t *triangle_colour;    /* per triangle of the host's list, see picture.h */
+    uint8_t *segment_colour;
     double (*body_rest)[3];
     double (*hand_rest)[3];
 } demo_scene;
