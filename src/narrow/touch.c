@@ -2,7 +2,6 @@
 #include "narrow/exact_pair.h"
 #include "narrow/roots.h"
 #include "narrow/series.h"
-#include "narrow/interval.h"
 
 static bool exact_touch(mp_limb_t *limbs, size_t room, int kind, const rdl_motion *motion, double gap, rdl_touch *touch)
 {
@@ -41,8 +40,6 @@ void rdli_find_touch(int kind, const rdl_motion *motion, double gap, rdl_touch *
         *touch = (rdl_touch){.time_lo = 1, .time_hi = 1, .stage = stage};
         return;
     }
-    if (gap > 0 && rdli_interval_gap(kind, &scaled, shift ? ldexp(gap, shift) : gap, touch) == RDLI_SETTLED)
-        return;
     if (gap > 0 && isnormal(scaled_gap) && rdli_series_touch(kind, &scaled, scaled_gap, touch))
         return;
     if (gap == 0 && rdli_roots_touch(kind, &scaled, touch))
