@@ -18,7 +18,7 @@ static const rdl_setting_info table[] = {
     {"substeps_max", "count", "Most sub-steps into which one step is cut.",
      64, 1, 65536, 1, offsetof(rdl_settings, substeps_max)},
     {"solver_sweeps", "count", "Most iterations of one zone solve.",
-     2000, 1, 100000, 1, offsetof(rdl_settings, solver_sweeps)},
+     600, 1, 100000, 1, offsetof(rdl_settings, solver_sweeps)},
     {"restitution", "1", "Coefficient of restitution of contacts: 0 stops the approach, 1 reverses it.",
      0, 0, 1, 0, offsetof(rdl_settings, restitution)},
     {"recovery_speed", "m/s", "Greatest speed at which pairs below their gap are moved apart.",

@@ -2,11 +2,13 @@
 #include "driver/engine.h"
 
 /* Shares of the pass limit after which a zone that is still violated falls back to separating directions, and one
- * without driven vertices to a rigid body. The first levels settle ordinary zones in a few passes; the fence needs
- * passes only to find the pairs that come near, so it gets the larger part. */
-static const double fence_share = 0.3, rigid_share = 0.75;
+ * without driven vertices to a rigid body. The first level settles ordinary zones in a few passes; the fence needs passes
+ * only to find the pairs that come near. Directions from the start are of little use against vertices that are driven far:
+ * such zones end the piece after half of the passes, and a shorter piece is tried, as long as there is one. */
+static const double fence_share = 0.3, rigid_share = 0.75, shorten_share = 0.5;
 /* Certified zones are refined towards the nearest point this often at most. */
 enum { REFINEMENTS = 6 };
+enum { DIVERGES_AFTER = 3 };
 
 static bool all_settled(const rdl_engine *engine)
 {
@@ -98,9 +100,11 @@ static bool gains_energy(const rdli_zone *zone)
     return !zone->driven && zone->energy_after > zone->energy_before * (1.0 + 1e-12);
 }
 
-static uint8_t next_level(const rdli_zone *zone, double share)
+static uint8_t next_level(const rdli_piece *piece, const rdli_zone *zone, double share)
 {
     uint8_t level = zone->level;
+    if (zone->driven && !piece->shortest)
+        return level;
     if (share >= fence_share && level < RDL_LEVEL_FENCE)
         level = RDL_LEVEL_FENCE;
     if (share >= rigid_share && !zone->driven)
@@ -108,9 +112,11 @@ static uint8_t next_level(const rdli_zone *zone, double share)
     return level;
 }
 
-static void choose_levels(rdl_engine *engine, const rdli_piece *piece, double share)
+/* False when a zone asks for a shorter piece. */
+static bool choose_levels(rdl_engine *engine, const rdli_piece *piece, double share, bool diverges)
 {
     rdli_zone *zones = engine->response.zones.data;
+    bool hopeful = true;
     for (uint32_t z = 0; z < engine->response.zone_count; z++) {
         rdli_zone *zone = &zones[z];
         if (zone->settled)
@@ -125,24 +131,28 @@ static void choose_levels(rdl_engine *engine, const rdli_piece *piece, double sh
             zone->settled = 1; /* nothing to solve; the next detection judges */
             continue;
         }
-        uint8_t level = next_level(zone, share);
+        hopeful = hopeful && !(zone->driven && !piece->shortest && (share >= shorten_share || diverges));
+        uint8_t level = next_level(piece, zone, share);
         if (level > RDL_LEVEL_INEQUALITY)
             mark_zone(engine, zone, level);
         zone->level = level;
     }
+    return hopeful;
 }
 
 /* After the solve: half spaces without a common point send a zone to the next level at once. */
-static bool react(rdl_engine *engine)
+static bool react(rdl_engine *engine, const rdli_piece *piece)
 {
     rdli_zone *zones = engine->response.zones.data;
     bool hopeless = false;
     for (uint32_t z = 0; z < engine->response.zone_count; z++) {
         rdli_zone *zone = &zones[z];
         bool gain = zone->settled && gains_energy(zone);
-        if (!zone->infeasible && !gain)
+        if (!zone->infeasible && !zone->exhausted && !gain)
             continue;
-        if (zone->level == RDL_LEVEL_INEQUALITY)
+        if (zone->driven && !piece->shortest)
+            hopeless = hopeless || zone->infeasible || zone->exhausted;
+        else if (zone->level == RDL_LEVEL_INEQUALITY)
             mark_zone(engine, zone, RDL_LEVEL_FENCE);
         else if (!zone->driven && zone->level == RDL_LEVEL_FENCE)
             mark_zone(engine, zone, RDL_LEVEL_RIGID);
@@ -162,11 +172,16 @@ rdl_status rdli_advance(rdl_engine *engine, const rdli_piece *piece, bool first_
     engine->response.zone_count = 0; /* those of an earlier piece */
     *apart = false;
     bool hopeful = true;
+    size_t first_hits = 0;
     for (uint64_t pass = 0;; pass++) {
         rdl_status status = rdli_detect(engine, &look);
         if (status != RDL_OK)
             return status;
         engine->passes++;
+        first_hits = pass == 0 ? engine->hit_count : first_hits;
+        /* A motion that is too large for one piece shows early: planes contradict each other, and pushing makes as many
+         * new violations as it mends. */
+        bool diverges = pass >= DIVERGES_AFTER && engine->hit_count > first_hits / 2 + 16;
         double begun = rdli_now();
         status = rdli_contacts_merge(engine, piece);
         if (status == RDL_OK && all_settled(engine)) {
@@ -178,12 +193,13 @@ rdl_status rdli_advance(rdl_engine *engine, const rdli_piece *piece, bool first_
         if (status != RDL_OK || pass == passes_max || !hopeful)
             return status;
         memset(awake, 0, piece->vertex_count);
-        choose_levels(engine, piece, (double)pass / (double)passes_max);
+        if (!choose_levels(engine, piece, (double)pass / (double)passes_max, diverges))
+            return RDL_OK;
         rdli_contacts_expand(engine, piece, false);
         status = rdli_zones_solve(&engine->response, piece, engine->contacts.data, awake);
         if (status != RDL_OK)
             return status;
-        hopeful = react(engine);
+        hopeful = react(engine, piece);
         look.awake = awake;
         engine->seconds[RDL_TIME_RESPONSE] += rdli_now() - begun;
     }

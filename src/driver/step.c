@@ -141,6 +141,7 @@ static rdl_status run_pieces(rdl_engine *engine, const rdl_step *step)
         aim_piece(engine, &c);
         memcpy(engine->trial.data, engine->target.data, n * 3 * sizeof(double));
         uint64_t limit = passes_left(engine, step, begun);
+        piece.shortest = c.length <= piece_min || engine->attempts >= (uint64_t)engine->settings.substeps_max;
         bool apart;
         rdl_status status = rdli_advance(engine, &piece, c.first, limit, &apart);
         engine->attempts++;

@@ -48,6 +48,7 @@ typedef struct rdli_zone {
     uint8_t settled;       /* the last solve changed nothing that matters */
     uint8_t driven;        /* has a contact with a driven or held vertex */
     uint8_t infeasible;    /* the half spaces have no common point, as far as the solve can tell */
+    uint8_t exhausted;     /* the solve ran out of sweeps far from its goal */
     uint8_t level;         /* RDL_LEVEL_... */
     double residual;       /* worst violation of a half space after the solve over the worst before */
     double momentum_error; /* |sum m (x* - x1)| over sum m |x* - x1| */

@@ -26,6 +26,7 @@ typedef struct rdli_piece {
     double (*trial)[3];         /* in/out: the present answer, representable in the delivered format, m */
     int format;                 /* RDL_FLOAT32 or RDL_FLOAT64 */
     double aim_margin;
+    bool shortest;              /* no shorter piece will be tried */
     uint32_t sweeps_max;
 } rdli_piece;
 

@@ -259,6 +259,7 @@ static void solve_zone(void *data, size_t index, unsigned worker)
         rdli_solved solved = rdli_solve(&problem);
         zone->sweeps = solved.sweeps;
         zone->infeasible = solved.infeasible;
+        zone->exhausted = !solved.converged && solved.worst_after > 0x1p-7 * solved.worst_before;
         zone->residual = solved.worst_before > 0.0 ? fmax(solved.worst_after, 0.0) / solved.worst_before : 0.0;
         row = 0;
         for (uint32_t i = 0; i < zone->contact_count; i++) {
