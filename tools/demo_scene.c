@@ -169,15 +169,18 @@ static int add_hands(demo_scene *scene, const cut *c, const sheet *s)
 
 /* ---- colours ---- */
 
-/* Two light bands run along the border. */
+/* Two light bands run along the border. Both triangles of a square have one colour. */
 static uint8_t band_colour(const cut *c, const uint32_t triangle[3], const sheet *s)
 {
     double half = 0.5 * c->squares * c->spacing, nearest = half;
     for (int side = 0; side < 2; side++) {
-        double mean = 0;
-        for (int k = 0; k < 3; k++)
-            mean += s->pattern[triangle[k]][side] / 3;
-        double inside = half - (mean < 0 ? -mean : mean);
+        double low = half, high = -half;
+        for (int k = 0; k < 3; k++) {
+            double place = s->pattern[triangle[k]][side];
+            low = place < low ? place : low;
+            high = place > high ? place : high;
+        }
+        double middle = 0.5 * (low + high), inside = half - (middle < 0 ? -middle : middle);
         nearest = inside < nearest ? inside : nearest;
     }
     return (nearest > 0.03 && nearest < 0.048) || (nearest > 0.06 && nearest < 0.066) ? PICTURE_BAND : PICTURE_CLOTH;

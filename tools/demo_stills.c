@@ -1,5 +1,5 @@
-/* demo_stills.c: before and after. Before: where the integrator ends when it runs alone for a quarter of a second from a
- * clean state. After: the delivered state at the same moment. */
+/* demo_stills.c: before and after. Before: where the integrator ends when it runs alone for a fifth of a second from a clean
+ * state. After: the delivered state at the same moment. */
 #include "demo.h"
 
 #include <math.h>
@@ -11,18 +11,32 @@
 
 #include "picture.h"
 
-enum { ALONE = 6 /* at most */, WIDTH = 780, HEIGHT = 900 }; /* pictures that the host runs alone; size of a panel */
+enum { ALONE = 5 /* at most */, WIDTH = 780, HEIGHT = 900 }; /* pictures that the host runs alone; size of a panel */
 
 typedef struct moment {
     double share; /* of all pictures */
-    const char *name, *title;
     picture_camera camera;
 } moment;
 
-static const moment MOMENTS[DEMO_STILLS] = {
-    {0.28, "1-settles", "The poncho settles on the shoulders", {{-1.0, -2.2, 1.25}, {0, 0, 0.49}, 0.56}},
-    {0.52, "2-turns", "The figure turns under the cloth", {{-1.0, -2.2, 1.25}, {0, 0, 0.49}, 0.56}},
-    {0.78, "3-drags", "Two hands drag the cloth over the shoulders", {{-0.5, -1.35, 1.15}, {0, 0, 0.64}, 0.30}}};
+static const moment MOMENTS[DEMO_STILLS] = {{0.28, {{-1.0, -2.2, 1.25}, {0, 0, 0.47}, 0.51}},
+                                            {0.52, {{-1.0, -2.2, 1.25}, {0, 0, 0.47}, 0.51}},
+                                            {0.78, {{-0.5, -1.35, 1.15}, {0, 0, 0.64}, 0.30}}};
+
+/* What happens at a time (s) of the story that demo_scene_direct tells. */
+static const char *title_at(double time)
+{
+    static const struct {
+        double until;
+        const char *title;
+    } story[] = {{0.9, "Hands lower the poncho over the head"},
+                 {1.6, "The poncho settles on the shoulders"},
+                 {2.55, "The figure turns under the cloth"},
+                 {4.45, "Two hands drag the cloth over the turning shoulders"}};
+    for (size_t k = 0; k < sizeof story / sizeof story[0]; k++)
+        if (time < story[k].until)
+            return story[k].title;
+    return "The hands have let go";
+}
 
 static const float CUT_COLOUR[3] = {0.92f, 0.08f, 0.08f}, CORRECTED_COLOUR[3] = {1.0f, 0.66f, 0.05f};
 
@@ -36,7 +50,7 @@ struct demo_stills {
 
 size_t demo_still_path(const demo_options *options, int k, char path[], size_t path_size)
 {
-    return (size_t)snprintf(path, path_size, "%s/demo-%s.png", options->folder, MOMENTS[k].name);
+    return (size_t)snprintf(path, path_size, "%s/demo-still-%d.png", options->folder, k + 1);
 }
 
 demo_stills *demo_stills_begin(demo_scene *scene, const rdl_scene *described, const demo_options *options)
@@ -211,13 +225,13 @@ static rdl_status write_page(const demo_stills *s, const moment *m, size_t pictu
 {
     static const picture_key keys[2] = {{{0.92f, 0.08f, 0.08f}, "an edge pierces a triangle"},
                                         {{1.0f, 0.66f, 0.05f}, "a vertex that raddle corrected in this picture"}};
+    double time = s->scene->step * (double)(s->scene->steps_per_picture * (picture + 1));
     char subtitle[160], part[DEMO_PATH + 8], *path = result->stills[result->still_count];
     snprintf(subtitle, sizeof subtitle, "Picture %zu of %zu, t = %.2f s. %zu cloth triangles, %zu strands.", picture + 1,
-             s->options->pictures, s->scene->step * (double)(s->scene->steps_per_picture * (picture + 1)),
-             s->scene->cloth_triangle_count, s->scene->strand_count);
+             s->options->pictures, time, s->scene->cloth_triangle_count, s->scene->strand_count);
     demo_still_path(s->options, (int)(m - MOMENTS), path, DEMO_PATH);
     snprintf(part, sizeof part, "%s.part", path);
-    if (!picture_page(part, m->title, subtitle, panels, count, keys, s->options->respond ? 2 : 1) ||
+    if (!picture_page(part, title_at(time), subtitle, panels, count, keys, s->options->respond ? 2 : 1) ||
         rename(part, path) != 0) {
         remove(part);
         return RDL_WRITE_FAILED;

@@ -84,21 +84,24 @@ static int light_maps(light lights[LIGHTS], const picture_model *model, const do
     return 1;
 }
 
-/* Share of a light that reaches a place: four neighbouring map entries, weighed by nearness. */
-static double open_share(const light *l, const double place[3])
+static int open_at(const picture_buffer *map, int x, int y, double near)
+{
+    return x < 0 || y < 0 || x >= MAP_SIDE || y >= MAP_SIDE || near >= (double)map->near[y * MAP_SIDE + x];
+}
+
+/* Share of a light that reaches a place. The key light's shadows have edges, so four neighbouring entries of its map are
+ * weighed; among the many others one entry each will do. */
+static double open_share(const light *l, const double place[3], int is_key)
 {
     double pixel[2], near, sum = 0;
     picture_project(&l->map.lens, place, pixel, &near);
-    double x = pixel[0] - 0.5, y = pixel[1] - 0.5;
-    double fx = floor(x), fy = floor(y);
+    if (!is_key)
+        return open_at(&l->map, (int)pixel[0], (int)pixel[1], near);
+    double x = pixel[0] - 0.5, y = pixel[1] - 0.5, fx = floor(x), fy = floor(y);
     for (int j = 0; j < 2; j++)
-        for (int i = 0; i < 2; i++) {
-            int px = (int)fx + i, py = (int)fy + j;
-            double weight = (i ? x - fx : 1 - x + fx) * (j ? y - fy : 1 - y + fy);
-            if (px < 0 || py < 0 || px >= MAP_SIDE || py >= MAP_SIDE ||
-                near >= (double)l->map.near[py * MAP_SIDE + px])
-                sum += weight;
-        }
+        for (int i = 0; i < 2; i++)
+            if (open_at(&l->map, (int)fx + i, (int)fy + j, near))
+                sum += (i ? x - fx : 1 - x + fx) * (j ? y - fy : 1 - y + fy);
     return sum;
 }
 
@@ -128,12 +131,13 @@ static void shade(const light lights[LIGHTS], const picture_buffer *buffer, int 
         double slope = normal[0] * lights[i].to[0] + normal[1] * lights[i].to[1] + normal[2] * lights[i].to[2];
         if (slope <= 0)
             continue;
-        float share = (float)(slope * open_share(&lights[i], place));
+        float share = (float)(slope * open_share(&lights[i], place, i == 0));
         for (int k = 0; k < 3; k++)
             sum[k] += share * lights[i].colour[k];
     }
+    float bounce = (float)(0.10 - 0.06 * normal[2]); /* from the floor and everything around */
     for (int k = 0; k < 3; k++)
-        out[k] = PALETTE[sample->colour][k] * (sum[k] + 0.06f);
+        out[k] = PALETTE[sample->colour][k] * (sum[k] + bounce);
     if (sample->colour == PICTURE_FLOOR) { /* the floor fades into the background */
         double far = sqrt(place[0] * place[0] + place[1] * place[1]) / floor_radius;
         float fade = (float)(far >= 1 ? 1 : far * far * (3 - 2 * far));
