@@ -97,7 +97,7 @@ static group_view view_group(const rdli_query *query, uint32_t group)
 static unsigned worth_opening(const rdli_query *query, const group_view *g, unsigned level, uint32_t pack)
 {
     const rdli_side *b = &query->b;
-    unsigned mask = lanes_overlap(g->box, g->place, lanes_load(&b->tree->packs[level][pack]));
+    unsigned mask = lanes_overlap(lanes_spread(g->box, g->place), &b->tree->packs[level][pack]);
     if (b->marks[0] != NULL) {
         mask &= g->driven ? ~(unsigned)b->marks[level][pack].driven : 0xFF;
         mask &= g->awake ? 0xFF : b->marks[level][pack].awake;
@@ -110,6 +110,15 @@ static unsigned worth_opening(const rdli_query *query, const group_view *g, unsi
             mask &= ~(1u << i);
     }
     return mask;
+}
+
+static void end_list(rdli_list *list, size_t count)
+{
+    for (size_t i = count; i % RDLI_WIDE != 0; i++)
+        for (unsigned k = 0; k < 3; k++) {
+            list->lo[k][i] = NOWHERE[0][k];
+            list->hi[k][i] = NOWHERE[1][k];
+        }
 }
 
 /* Lists the level-0 packs of b that the group overlaps; how many, even if they have no room. */
@@ -127,7 +136,8 @@ static size_t list_packs(const rdli_query *query, uint32_t group, rdli_scratch *
         unsigned mask = worth_opening(query, &g, level, pack);
         if (level == 1) {
             if (mask != 0 && count + RDLI_WIDE <= query->list_room)
-                lanes_append(scratch, count, &tree->packs[1][pack], pack * RDLI_WIDE, tree->highest[0], mask);
+                lanes_append_children(&scratch->group, count, &tree->packs[1][pack], pack * RDLI_WIDE,
+                                      tree->highest[0] + (size_t)pack * RDLI_WIDE, mask);
             count += (size_t)__builtin_popcount(mask);
             continue;
         }
@@ -136,11 +146,8 @@ static size_t list_packs(const rdli_query *query, uint32_t group, rdli_scratch *
             stack[waiting++].level = level - 1;
         }
     }
-    for (size_t i = count; i % RDLI_WIDE != 0 && i < query->list_room; i++)
-        for (unsigned k = 0; k < 3; k++) {
-            scratch->list_lo[k][i] = NOWHERE[0][k];
-            scratch->list_hi[k][i] = NOWHERE[1][k];
-        }
+    if (count <= query->list_room)
+        end_list(&scratch->group, count);
     return count;
 }
 
@@ -163,6 +170,8 @@ static unsigned kept(const rdli_query *query, uint32_t a, unsigned i, uint32_t b
 /* The rules beyond boxes, order and shared vertices. */
 static unsigned ruled(const rdli_query *query, uint32_t a, unsigned i, uint32_t b, unsigned mask)
 {
+    if (query->a.parts[0] != NULL && parts_muted(query, query->a.parts[0][a], query->b.parts[0][b]))
+        return 0;
     const rdli_marks *marks_a = &query->a.marks[0][a], *marks_b = &query->b.marks[0][b];
     mask &= welcome(marks_a, i, marks_b);
     bool ask = (marks_a->attached >> i & 1) && marks_b->attached != 0;
@@ -202,13 +211,9 @@ static void sort_row(uint32_t *ids, size_t count, uint32_t *to, uint64_t *bits, 
     }
 }
 
-static void store_row(rdli_query *query, rdli_scratch *scratch, unsigned worker, uint32_t first, const uint64_t *hits,
-                      size_t hit_count)
+/* Takes `count` seconds from scratch->row. */
+static void store_row(rdli_query *query, rdli_scratch *scratch, unsigned worker, uint32_t first, size_t count)
 {
-    uint32_t *to = scratch->row;
-    for (size_t h = 0; h < hit_count; h++)
-        to = lanes_compress(to, query->b.tree->order + (size_t)(hits[h] >> 8) * RDLI_WIDE, (unsigned)hits[h] & 0xFF);
-    const size_t count = (size_t)(to - scratch->row);
     if (query->emit == NULL) {
         uint32_t *place = rdli_rows_take(&query->rows, &query->portions[worker], count);
         if (place == NULL)
@@ -221,59 +226,85 @@ static void store_row(rdli_query *query, rdli_scratch *scratch, unsigned worker,
     for (size_t i = 0; i < count; i++) {
         if (scratch->block_count == RDLI_EMIT_BLOCK)
             rdli_query_flush(query, worker);
-        uint32_t second = scratch->row[i];
-        bool ordered = !query->self || first < second;
-        scratch->block[scratch->block_count++] = ordered ? (rdli_pair){first, second} : (rdli_pair){second, first};
+        scratch->block[scratch->block_count++] = (rdli_pair){first, scratch->row[i]};
     }
 }
 
-/* All pairs of the elements of pack a, child `place` of the group, with those of the listed packs. ca and cb are
- * constants in every call, so that the loops over corners vanish. */
+/* From what overlaps the group, what overlaps its pack a; how many. */
+static size_t narrow_to_pack(const rdli_query *query, rdli_scratch *scratch, uint32_t a, size_t listed, const bool self)
+{
+    const uint32_t *ids = query->a.tree->order + (size_t)a * RDLI_WIDE;
+    const lanes_box box = lanes_spread(&query->a.tree->packs[1][a / RDLI_WIDE], a % RDLI_WIDE);
+    uint32_t lowest = ids[0];
+    size_t count = 0;
+    for (unsigned i = 1; i < RDLI_WIDE; i++)
+        lowest = ids[i] < lowest ? ids[i] : lowest;
+    for (size_t at = 0; at < listed; at += RDLI_WIDE) {
+        unsigned mask = lanes_overlap_listed(box, &scratch->group, at);
+        if (self)
+            mask &= lanes_above(scratch->group.highest + at, lowest);
+        lanes_append_listed(&scratch->pack, count, &scratch->group, at, mask);
+        count += (unsigned)__builtin_popcount(mask);
+    }
+    end_list(&scratch->pack, count);
+    return count;
+}
+
+/* From what overlaps pack a, what overlaps its element i: first packs, then their children. Returns the number of hits. */
+static inline size_t narrow_to_element(const rdli_query *query, rdli_scratch *scratch, uint32_t a, unsigned i, size_t listed,
+                                       const bool self)
+{
+    const rdli_tree *tree_b = query->b.tree;
+    const uint32_t id = query->a.tree->order[(size_t)a * RDLI_WIDE + i];
+    const lanes_box box = lanes_spread(&query->a.tree->packs[0][a], i);
+    uint32_t *near = scratch->near;
+    for (size_t at = 0; at < listed; at += RDLI_WIDE) {
+        unsigned mask = lanes_overlap_listed(box, &scratch->pack, at);
+        if (self)
+            mask &= lanes_above(scratch->pack.highest + at, id);
+        near = lanes_compress(near, scratch->pack.packs + at, mask);
+    }
+    size_t hits = 0;
+    for (const uint32_t *b = scratch->near; b < near; b++) {
+        unsigned mask = lanes_overlap(box, &tree_b->packs[0][*b]);
+        if (self)
+            mask &= lanes_above(tree_b->order + (size_t)*b * RDLI_WIDE, id);
+        scratch->hits[hits] = (uint64_t)*b << 8 | mask;
+        hits += mask != 0;
+    }
+    return hits;
+}
+
+/* All pairs of the elements of pack a with those of the listed packs. self, ca and cb are constants in every call, so that
+ * the branches and the loops over corners vanish. */
 static inline __attribute__((always_inline)) void match_pack(rdli_query *query, uint32_t a, size_t listed, unsigned worker,
                                                              const bool self, const unsigned ca, const unsigned cb)
 {
     rdli_scratch *scratch = &query->scratch[worker];
-    const rdli_tree *tree_b = query->b.tree;
-    const rdli_pack *pack_a = &query->a.tree->packs[0][a], *group = &query->a.tree->packs[1][a / RDLI_WIDE];
     const uint32_t *ids_a = query->a.tree->order + (size_t)a * RDLI_WIDE;
     const uint32_t *corners_a = query->a.corners + (size_t)a * RDLI_WIDE * ca;
-    const unsigned alive = lanes_within(ids_a, query->range_lo, query->range_hi);
-    const lanes_pack eight_a = lanes_load(pack_a);
-    size_t hit_count[RDLI_WIDE] = {0};
-    uint32_t lowest = UINT32_MAX;
-    for (unsigned i = 0; i < RDLI_WIDE; i++)
-        lowest = ids_a[i] < lowest ? ids_a[i] : lowest;
-    for (size_t at = 0; at < listed && alive != 0; at += RDLI_WIDE) {
-        unsigned packs = lanes_overlap(group, a % RDLI_WIDE, lanes_listed(scratch, at));
-        if (self)
-            packs &= lanes_above(scratch->list_highest + at, lowest);
-        for (; packs != 0; packs &= packs - 1) {
-            const size_t entry = at + (unsigned)__builtin_ctz(packs);
-            const uint32_t b = scratch->list_packs[entry];
-            const uint32_t *ids_b = tree_b->order + (size_t)b * RDLI_WIDE;
+    const bool ruled_too = query->a.marks[0] != NULL;
+    const size_t places = query->a.tree->count - a * RDLI_WIDE;
+    listed = narrow_to_pack(query, scratch, a, listed, self);
+    for (unsigned i = 0; i < RDLI_WIDE && i < places; i++) {
+        if (ids_a[i] < query->range_lo || ids_a[i] >= query->range_hi)
+            continue;
+        const size_t hits = narrow_to_element(query, scratch, a, i, listed, self);
+        uint32_t *row = scratch->row;
+        for (size_t h = 0; h < hits; h++) {
+            const uint32_t b = (uint32_t)(scratch->hits[h] >> 8);
             const uint32_t *corners_b = query->b.corners + (size_t)b * RDLI_WIDE * cb;
-            unsigned rows = lanes_overlap_entry(scratch, entry, eight_a) & alive;
-            if (query->a.parts[0] != NULL && parts_muted(query, query->a.parts[0][a], query->b.parts[0][b]))
-                continue;
-            const lanes_pack eight_b = lanes_load(&tree_b->packs[0][b]);
-            for (; rows != 0; rows &= rows - 1) {
-                const unsigned i = (unsigned)__builtin_ctz(rows);
-                unsigned mask = lanes_overlap(pack_a, i, eight_b);
-                if (self)
-                    mask &= lanes_above(ids_b, ids_a[i]);
-                for (unsigned x = 0; x < ca; x++)
-                    for (unsigned y = 0; y < cb; y++)
-                        mask &= ~lanes_equal(corners_a[x * RDLI_WIDE + i], corners_b + y * RDLI_WIDE);
-                if (mask != 0 && query->a.marks[0] != NULL)
-                    mask = ruled(query, a, i, b, mask);
-                scratch->hits[i][hit_count[i]] = (uint64_t)b << 8 | mask;
-                hit_count[i] += mask != 0;
-            }
+            unsigned mask = (unsigned)scratch->hits[h] & 0xFF;
+            for (unsigned x = 0; x < ca; x++)
+                for (unsigned y = 0; y < cb; y++)
+                    mask &= ~lanes_equal(corners_a[x * RDLI_WIDE + i], corners_b + y * RDLI_WIDE);
+            if (ruled_too)
+                mask = ruled(query, a, i, b, mask);
+            row = lanes_compress(row, query->b.tree->order + (size_t)b * RDLI_WIDE, mask);
         }
+        if (row != scratch->row)
+            store_row(query, scratch, worker, ids_a[i], (size_t)(row - scratch->row));
     }
-    for (unsigned i = 0; i < RDLI_WIDE; i++)
-        if (hit_count[i] > 0)
-            store_row(query, scratch, worker, ids_a[i], scratch->hits[i], hit_count[i]);
 }
 
 static void match_group(rdli_query *query, uint32_t group, unsigned worker)

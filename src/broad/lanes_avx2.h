@@ -8,54 +8,40 @@
 
 #define LANES_KERNELS rdli_kernels_avx2
 
-typedef struct lanes_pack {
+typedef struct lanes_box {
     __m256 lo[3], hi[3];
-} lanes_pack;
+} lanes_box;
 
-static inline lanes_pack lanes_load(const rdli_pack *pack)
+static inline lanes_box lanes_spread(const rdli_pack *pack, unsigned i)
 {
-    lanes_pack eight;
+    lanes_box box;
     for (unsigned k = 0; k < 3; k++) {
-        eight.lo[k] = _mm256_load_ps(pack->lo[k]);
-        eight.hi[k] = _mm256_load_ps(pack->hi[k]);
+        box.lo[k] = _mm256_broadcast_ss(&pack->lo[k][i]);
+        box.hi[k] = _mm256_broadcast_ss(&pack->hi[k][i]);
     }
-    return eight;
+    return box;
 }
 
-/* Bounds of one box as broadcast sources. */
-static inline unsigned lanes_overlap_bounds(const float *const lo[3], const float *const hi[3], lanes_pack eight)
+static inline __m256 lanes_overlap_axis(__m256 lo, __m256 hi, const float *other_lo, const float *other_hi)
 {
-    __m256 x = _mm256_and_ps(_mm256_cmp_ps(_mm256_broadcast_ss(lo[0]), eight.hi[0], _CMP_LE_OQ),
-                             _mm256_cmp_ps(eight.lo[0], _mm256_broadcast_ss(hi[0]), _CMP_LE_OQ));
-    __m256 y = _mm256_and_ps(_mm256_cmp_ps(_mm256_broadcast_ss(lo[1]), eight.hi[1], _CMP_LE_OQ),
-                             _mm256_cmp_ps(eight.lo[1], _mm256_broadcast_ss(hi[1]), _CMP_LE_OQ));
-    __m256 z = _mm256_and_ps(_mm256_cmp_ps(_mm256_broadcast_ss(lo[2]), eight.hi[2], _CMP_LE_OQ),
-                             _mm256_cmp_ps(eight.lo[2], _mm256_broadcast_ss(hi[2]), _CMP_LE_OQ));
+    return _mm256_and_ps(_mm256_cmp_ps(lo, _mm256_loadu_ps(other_hi), _CMP_LE_OQ),
+                         _mm256_cmp_ps(hi, _mm256_loadu_ps(other_lo), _CMP_GE_OQ));
+}
+
+static inline unsigned lanes_overlap(lanes_box box, const rdli_pack *pack)
+{
+    __m256 x = lanes_overlap_axis(box.lo[0], box.hi[0], pack->lo[0], pack->hi[0]);
+    __m256 y = lanes_overlap_axis(box.lo[1], box.hi[1], pack->lo[1], pack->hi[1]);
+    __m256 z = lanes_overlap_axis(box.lo[2], box.hi[2], pack->lo[2], pack->hi[2]);
     return (unsigned)_mm256_movemask_ps(_mm256_and_ps(x, _mm256_and_ps(y, z)));
 }
 
-static inline unsigned lanes_overlap(const rdli_pack *pack, unsigned i, lanes_pack eight)
+static inline unsigned lanes_overlap_listed(lanes_box box, const rdli_list *list, size_t at)
 {
-    const float *const lo[3] = {&pack->lo[0][i], &pack->lo[1][i], &pack->lo[2][i]};
-    const float *const hi[3] = {&pack->hi[0][i], &pack->hi[1][i], &pack->hi[2][i]};
-    return lanes_overlap_bounds(lo, hi, eight);
-}
-
-static inline unsigned lanes_overlap_entry(const rdli_scratch *scratch, size_t entry, lanes_pack eight)
-{
-    const float *const lo[3] = {&scratch->list_lo[0][entry], &scratch->list_lo[1][entry], &scratch->list_lo[2][entry]};
-    const float *const hi[3] = {&scratch->list_hi[0][entry], &scratch->list_hi[1][entry], &scratch->list_hi[2][entry]};
-    return lanes_overlap_bounds(lo, hi, eight);
-}
-
-static inline lanes_pack lanes_listed(const rdli_scratch *scratch, size_t at)
-{
-    lanes_pack eight;
-    for (unsigned k = 0; k < 3; k++) {
-        eight.lo[k] = _mm256_loadu_ps(scratch->list_lo[k] + at);
-        eight.hi[k] = _mm256_loadu_ps(scratch->list_hi[k] + at);
-    }
-    return eight;
+    __m256 x = lanes_overlap_axis(box.lo[0], box.hi[0], list->lo[0] + at, list->hi[0] + at);
+    __m256 y = lanes_overlap_axis(box.lo[1], box.hi[1], list->lo[1] + at, list->hi[1] + at);
+    __m256 z = lanes_overlap_axis(box.lo[2], box.hi[2], list->lo[2] + at, list->hi[2] + at);
+    return (unsigned)_mm256_movemask_ps(_mm256_and_ps(x, _mm256_and_ps(y, z)));
 }
 
 static inline __m256i lanes_ids(const uint32_t *eight)
@@ -76,14 +62,6 @@ static inline unsigned lanes_above(const uint32_t *eight, uint32_t value)
     return (unsigned)_mm256_movemask_ps(_mm256_castsi256_ps(above));
 }
 
-static inline unsigned lanes_within(const uint32_t *eight, uint32_t lo, uint32_t hi)
-{
-    __m256i ids = lanes_ids(eight);
-    __m256i below = _mm256_cmpgt_epi32(_mm256_set1_epi32((int)lo), ids);
-    __m256i inside = _mm256_andnot_si256(below, _mm256_cmpgt_epi32(_mm256_set1_epi32((int)hi), ids));
-    return (unsigned)_mm256_movemask_ps(_mm256_castsi256_ps(inside));
-}
-
 /* The places of the set bits of mask, lowest first: an extract of the bytes 0..7. */
 static inline __m256i lanes_places(unsigned mask)
 {
@@ -97,18 +75,37 @@ static inline uint32_t *lanes_compress(uint32_t *to, const uint32_t *ids, unsign
     return to + _mm_popcnt_u32(mask);
 }
 
-static inline void lanes_append(rdli_scratch *scratch, size_t count, const rdli_pack *pack, uint32_t first_child,
-                                const uint32_t *highest, unsigned mask)
+static inline void lanes_pick(float *to, const float *from, __m256i places)
+{
+    _mm256_storeu_ps(to, _mm256_permutevar8x32_ps(_mm256_loadu_ps(from), places));
+}
+
+static inline void lanes_pick_ids(uint32_t *to, const uint32_t *from, __m256i places)
+{
+    _mm256_storeu_si256((__m256i *)(void *)to, _mm256_permutevar8x32_epi32(lanes_ids(from), places));
+}
+
+static inline void lanes_append_children(rdli_list *list, size_t count, const rdli_pack *pack, uint32_t first,
+                                         const uint32_t *highest, unsigned mask)
 {
     const __m256i places = lanes_places(mask);
     for (unsigned k = 0; k < 3; k++) {
-        _mm256_storeu_ps(scratch->list_lo[k] + count, _mm256_permutevar8x32_ps(_mm256_load_ps(pack->lo[k]), places));
-        _mm256_storeu_ps(scratch->list_hi[k] + count, _mm256_permutevar8x32_ps(_mm256_load_ps(pack->hi[k]), places));
+        lanes_pick(list->lo[k] + count, pack->lo[k], places);
+        lanes_pick(list->hi[k] + count, pack->hi[k], places);
     }
-    __m256i packs = _mm256_add_epi32(_mm256_set1_epi32((int)first_child), places);
-    _mm256_storeu_si256((__m256i *)(void *)(scratch->list_packs + count), packs);
-    _mm256_storeu_si256((__m256i *)(void *)(scratch->list_highest + count),
-                        _mm256_permutevar8x32_epi32(lanes_ids(highest + first_child), places));
+    lanes_pick_ids(list->highest + count, highest, places);
+    _mm256_storeu_si256((__m256i *)(void *)(list->packs + count), _mm256_add_epi32(_mm256_set1_epi32((int)first), places));
+}
+
+static inline void lanes_append_listed(rdli_list *list, size_t count, const rdli_list *from, size_t at, unsigned mask)
+{
+    const __m256i places = lanes_places(mask);
+    for (unsigned k = 0; k < 3; k++) {
+        lanes_pick(list->lo[k] + count, from->lo[k] + at, places);
+        lanes_pick(list->hi[k] + count, from->hi[k] + at, places);
+    }
+    lanes_pick_ids(list->packs + count, from->packs + at, places);
+    lanes_pick_ids(list->highest + count, from->highest + at, places);
 }
 
 /* Four rows (a b c d) per 128-bit half become four columns. */
@@ -188,14 +185,21 @@ static inline void lanes_bound(const rdli_pack *pack, rdli_pack *above, unsigned
 }
 
 enum { LANES_RANKED = 64 };
+
+/* Sixteen at a time, so that every broadcast serves twice. A comparison that holds gives -1. */
 static inline void lanes_rank(uint32_t *ids, size_t count, uint32_t *to)
 {
     uint32_t rank[LANES_RANKED];
-    for (size_t b = 0; b < count; b += RDLI_WIDE) {
-        __m256i own = lanes_ids(ids + b), sum = _mm256_setzero_si256();
-        for (size_t j = 0; j < count; j++) /* a comparison that holds gives -1 */
-            sum = _mm256_sub_epi32(sum, _mm256_cmpgt_epi32(own, _mm256_set1_epi32((int)ids[j])));
-        _mm256_storeu_si256((__m256i *)(void *)(rank + b), sum);
+    for (size_t b = 0; b < count; b += 2 * RDLI_WIDE) {
+        const __m256i low = lanes_ids(ids + b), high = lanes_ids(ids + b + RDLI_WIDE);
+        __m256i below_low = _mm256_setzero_si256(), below_high = _mm256_setzero_si256();
+        for (size_t j = 0; j < count; j++) {
+            __m256i other = _mm256_set1_epi32((int)ids[j]);
+            below_low = _mm256_sub_epi32(below_low, _mm256_cmpgt_epi32(low, other));
+            below_high = _mm256_sub_epi32(below_high, _mm256_cmpgt_epi32(high, other));
+        }
+        _mm256_storeu_si256((__m256i *)(void *)(rank + b), below_low);
+        _mm256_storeu_si256((__m256i *)(void *)(rank + b + RDLI_WIDE), below_high);
     }
     for (size_t i = 0; i < count; i++)
         to[rank[i]] = ids[i];

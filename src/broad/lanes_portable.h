@@ -6,24 +6,42 @@
 
 #define LANES_KERNELS rdli_kernels_portable
 
-typedef rdli_pack lanes_pack;
+/* One box, to be tried against eight. */
+typedef struct lanes_box {
+    float lo[3], hi[3];
+} lanes_box;
 
-static inline lanes_pack lanes_load(const rdli_pack *pack)
+static inline lanes_box lanes_spread(const rdli_pack *pack, unsigned i)
 {
-    return *pack;
+    return (lanes_box){{pack->lo[0][i], pack->lo[1][i], pack->lo[2][i]}, {pack->hi[0][i], pack->hi[1][i], pack->hi[2][i]}};
 }
 
-/* Bit j: box j of `eight` overlaps box i of pack. Boxes are closed. */
-static inline unsigned lanes_overlap(const rdli_pack *pack, unsigned i, lanes_pack eight)
+static inline unsigned lanes_overlap_bounds(lanes_box box, const float *const lo[3], const float *const hi[3])
 {
     unsigned mask = 0;
     for (unsigned j = 0; j < RDLI_WIDE; j++) {
         bool hit = true;
         for (unsigned k = 0; k < 3; k++)
-            hit &= (pack->lo[k][i] <= eight.hi[k][j]) & (eight.lo[k][j] <= pack->hi[k][i]);
+            hit &= (box.lo[k] <= hi[k][j]) & (lo[k][j] <= box.hi[k]);
         mask |= (unsigned)hit << j;
     }
     return mask;
+}
+
+/* Bit j: the box overlaps box j of the pack. Boxes are closed. */
+static inline unsigned lanes_overlap(lanes_box box, const rdli_pack *pack)
+{
+    const float *const lo[3] = {pack->lo[0], pack->lo[1], pack->lo[2]};
+    const float *const hi[3] = {pack->hi[0], pack->hi[1], pack->hi[2]};
+    return lanes_overlap_bounds(box, lo, hi);
+}
+
+/* The same for the entries at .. at + 7 of a list. */
+static inline unsigned lanes_overlap_listed(lanes_box box, const rdli_list *list, size_t at)
+{
+    const float *const lo[3] = {list->lo[0] + at, list->lo[1] + at, list->lo[2] + at};
+    const float *const hi[3] = {list->hi[0] + at, list->hi[1] + at, list->hi[2] + at};
+    return lanes_overlap_bounds(box, lo, hi);
 }
 
 /* Bit j: eight[j] == value. */
@@ -44,51 +62,34 @@ static inline unsigned lanes_above(const uint32_t *eight, uint32_t value)
     return mask;
 }
 
-/* Bit j: eight[j] lies in [lo, hi). */
-static inline unsigned lanes_within(const uint32_t *eight, uint32_t lo, uint32_t hi)
-{
-    unsigned mask = 0;
-    for (unsigned j = 0; j < RDLI_WIDE; j++)
-        mask |= (unsigned)(eight[j] >= lo && eight[j] < hi) << j;
-    return mask;
-}
-
-/* Appends the children in mask of a level-1 pack to the list, as entries from `count` on; first_child: number of child
- * 0; highest: of the level-0 packs. Writes eight places. */
-static inline void lanes_append(rdli_scratch *scratch, size_t count, const rdli_pack *pack, uint32_t first_child,
-                                const uint32_t *highest, unsigned mask)
+/* Appends the children in mask of a level-1 pack to a list of `count` entries; first: number of child 0; highest: of the
+ * eight children. Like the next function it may write eight places. */
+static inline void lanes_append_children(rdli_list *list, size_t count, const rdli_pack *pack, uint32_t first,
+                                         const uint32_t *highest, unsigned mask)
 {
     for (; mask != 0; mask &= mask - 1, count++) {
         unsigned i = (unsigned)__builtin_ctz(mask);
         for (unsigned k = 0; k < 3; k++) {
-            scratch->list_lo[k][count] = pack->lo[k][i];
-            scratch->list_hi[k][count] = pack->hi[k][i];
+            list->lo[k][count] = pack->lo[k][i];
+            list->hi[k][count] = pack->hi[k][i];
         }
-        scratch->list_packs[count] = first_child + i;
-        scratch->list_highest[count] = highest[first_child + i];
+        list->packs[count] = first + i;
+        list->highest[count] = highest[i];
     }
 }
 
-/* Eight entries of the list. */
-static inline rdli_pack lanes_listed(const rdli_scratch *scratch, size_t at)
+/* Appends the entries in mask of from[at .. at + 7]. */
+static inline void lanes_append_listed(rdli_list *list, size_t count, const rdli_list *from, size_t at, unsigned mask)
 {
-    rdli_pack eight;
-    for (unsigned k = 0; k < 3; k++) {
-        memcpy(eight.lo[k], scratch->list_lo[k] + at, sizeof eight.lo[k]);
-        memcpy(eight.hi[k], scratch->list_hi[k] + at, sizeof eight.hi[k]);
+    for (; mask != 0; mask &= mask - 1, count++) {
+        size_t i = at + (unsigned)__builtin_ctz(mask);
+        for (unsigned k = 0; k < 3; k++) {
+            list->lo[k][count] = from->lo[k][i];
+            list->hi[k][count] = from->hi[k][i];
+        }
+        list->packs[count] = from->packs[i];
+        list->highest[count] = from->highest[i];
     }
-    return eight;
-}
-
-/* Bit j: box j of `eight` overlaps entry `entry` of the list. */
-static inline unsigned lanes_overlap_entry(const rdli_scratch *scratch, size_t entry, lanes_pack eight)
-{
-    rdli_pack one;
-    for (unsigned k = 0; k < 3; k++) {
-        one.lo[k][0] = scratch->list_lo[k][entry];
-        one.hi[k][0] = scratch->list_hi[k][entry];
-    }
-    return lanes_overlap(&one, 0, eight);
 }
 
 /* Writes ids[j] for the bits j of mask, lowest first; returns the place behind. Room for 8 is needed. */
@@ -145,7 +146,7 @@ static inline void lanes_bound(const rdli_pack *pack, rdli_pack *above, unsigned
     }
 }
 
-/* Sorts `count` <= LANES_RANKED distinct ids below 2^31; up to seven ids behind them may be overwritten. */
+/* Sorts `count` <= LANES_RANKED distinct ids below 2^31; fifteen more places behind them are read. */
 enum { LANES_RANKED = 64 };
 static inline void lanes_rank(uint32_t *ids, size_t count, uint32_t *to)
 {

@@ -1,7 +1,7 @@
 /* broad/query.c: tasks and room of a query; the work itself is in kernels_body.h. */
 #include "broad/kernels.h"
 
-enum { FIRST_LIST = 2048 }; /* list entries to start with: far more than cloth and strands need, 288 KiB a worker */
+enum { FIRST_LIST = 2048 }; /* list entries to start with: far more than cloth and strands need; 224 KiB a worker */
 
 typedef struct query_job {
     rdli_query *query;
@@ -19,24 +19,24 @@ static size_t bit_room(const rdli_query *query)
 /* Cuts one worker's share out of the common block at base; its size. Every piece is a multiple of 32 bytes long. */
 static size_t lay_out(const rdli_query *query, rdli_scratch *scratch, char *base)
 {
-    const size_t list = query->list_room + RDLI_WIDE; /* a compressed append writes eight places */
+    const size_t list = query->list_room + RDLI_WIDE; /* an append writes eight places */
     size_t at = 0;
-    for (unsigned k = 0; k < 3; k++) {
-        scratch->list_lo[k] = (float *)(void *)(base + at);
-        at += list * sizeof(float);
-        scratch->list_hi[k] = (float *)(void *)(base + at);
-        at += list * sizeof(float);
+    for (rdli_list *part = &scratch->group; part != NULL; part = part == &scratch->group ? &scratch->pack : NULL) {
+        for (unsigned k = 0; k < 3; k++) {
+            part->lo[k] = (float *)(void *)(base + at);
+            part->hi[k] = part->lo[k] + list;
+            at += 2 * list * sizeof(float);
+        }
+        part->packs = (uint32_t *)(void *)(base + at);
+        part->highest = part->packs + list;
+        at += 2 * list * sizeof(uint32_t);
     }
-    scratch->list_packs = (uint32_t *)(void *)(base + at);
+    scratch->near = (uint32_t *)(void *)(base + at);
     at += list * sizeof(uint32_t);
-    scratch->list_highest = (uint32_t *)(void *)(base + at);
-    at += list * sizeof(uint32_t);
-    for (unsigned i = 0; i < RDLI_WIDE; i++) {
-        scratch->hits[i] = (uint64_t *)(void *)(base + at);
-        at += list * sizeof(uint64_t);
-    }
+    scratch->hits = (uint64_t *)(void *)(base + at);
+    at += list * sizeof(uint64_t);
     scratch->row = (uint32_t *)(void *)(base + at);
-    at += list * RDLI_WIDE * sizeof(uint32_t);
+    at += (list + RDLI_WIDE) * RDLI_WIDE * sizeof(uint32_t);
     scratch->bits = (uint64_t *)(void *)(base + at);
     at += (bit_room(query) * sizeof(uint64_t) + 63) / 64 * 64;
     scratch->block = (rdli_pair *)(void *)(base + at);

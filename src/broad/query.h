@@ -39,15 +39,20 @@ typedef struct rdli_side {
  * parts or have attachments. */
 typedef bool rdli_keep(const void *rules, const uint32_t *corners_a, const uint32_t *corners_b);
 
-/* One worker's room. The list holds the level-0 packs that overlap the group; its end is filled up to eight with places
- * that overlap nothing. */
+/* Level-0 packs that overlap something; the end is filled up to eight with places that overlap nothing. */
+typedef struct rdli_list {
+    float *lo[3], *hi[3];
+    uint32_t *packs, *highest; /* number, and highest element number below */
+} rdli_list;
+
+/* One worker's room. Each stage filters what the stage before has left, in loops without inner branches. */
 typedef struct rdli_scratch {
-    float *list_lo[3], *list_hi[3];
-    uint32_t *list_packs, *list_highest; /* number, and highest element number below */
-    uint64_t *hits[RDLI_WIDE];   /* per element of a pack: 256 * pack + mask of its overlapping children */
-    uint32_t *row;               /* one row as it is found */
-    uint64_t *bits;              /* zero between rows; see kernels.h */
-    rdli_pair *block;            /* pairs that wait to be emitted */
+    rdli_list group, pack;    /* what overlaps the group, and one of its packs */
+    uint32_t *near;           /* packs that overlap one element */
+    uint64_t *hits;           /* 256 * pack + mask of its children that overlap the element */
+    uint32_t *row;            /* those children that pass the rules */
+    uint64_t *bits;           /* zero between rows; see kernels_body.h, sort_row */
+    rdli_pair *block;         /* pairs that wait to be emitted */
     size_t list_need, block_count;
 } rdli_scratch;
 

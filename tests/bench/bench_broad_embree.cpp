@@ -31,11 +31,21 @@ void give_bounds(const RTCBoundsFunctionArguments *arguments)
     out->upper_z = box.hi[2];
 }
 
+bool overlap(const rdl_box &a, const rdl_box &b)
+{
+    return a.lo[0] <= b.hi[0] && b.lo[0] <= a.hi[0] && a.lo[1] <= b.hi[1] && b.lo[1] <= a.hi[1] && a.lo[2] <= b.hi[2] &&
+           b.lo[2] <= a.hi[2];
+}
+
+// Refitted trees have leaves of several boxes, whose pairs come untested.
 void count_collisions(void *user, RTCCollision *collisions, unsigned count)
 {
+    const embree_tree *tree = static_cast<const embree_tree *>(user);
     size_t ordered = 0;
-    for (unsigned i = 0; i < count; i++)
-        ordered += collisions[i].primID0 < collisions[i].primID1;
+    for (unsigned i = 0; i < count; i++) {
+        const unsigned a = collisions[i].primID0, b = collisions[i].primID1;
+        ordered += a < b && (tree->mode != 3 || overlap(tree->boxes[a], tree->boxes[b]));
+    }
     static_cast<embree_tree *>(user)->ordered += ordered;
 }
 
@@ -55,7 +65,8 @@ extern "C" void *embree_open(const rdl_box *boxes, size_t count, unsigned thread
     tree->scene = rtcNewScene(tree->device);
     const RTCBuildQuality quality = mode == 0 ? RTC_BUILD_QUALITY_LOW : mode == 2 ? RTC_BUILD_QUALITY_HIGH
                                                                                : RTC_BUILD_QUALITY_MEDIUM;
-    rtcSetSceneBuildQuality(tree->scene, quality);
+    // Only low-quality scenes keep one tree per geometry, and only such a tree can be refitted.
+    rtcSetSceneBuildQuality(tree->scene, mode == 3 ? RTC_BUILD_QUALITY_LOW : quality);
     rtcSetSceneFlags(tree->scene, mode == 2 ? RTC_SCENE_FLAG_NONE : RTC_SCENE_FLAG_DYNAMIC);
     tree->geometry = rtcNewGeometry(tree->device, RTC_GEOMETRY_TYPE_USER);
     rtcSetGeometryBuildQuality(tree->geometry, mode == 3 ? RTC_BUILD_QUALITY_REFIT : quality);
