@@ -57,6 +57,8 @@ RDL_API rdl_status rdl_shot_create(const char *path, const rdl_scene *scene, con
 RDL_API rdl_status rdl_shot_append(rdl_shot_writer *writer, const rdl_shot_frame *frame, rdl_fault *fault);
 /* Closes and renames PATH.part to PATH. The writer is gone afterwards, also on error. */
 RDL_API rdl_status rdl_shot_finish(rdl_shot_writer *writer, rdl_fault *fault);
+/* Closes and leaves PATH.part, readable up to its last frame: for a recording that was interrupted. NULL is fine. */
+RDL_API void rdl_shot_keep(rdl_shot_writer *writer);
 /* Closes and deletes PATH.part. NULL is fine. */
 RDL_API void rdl_shot_discard(rdl_shot_writer *writer);
 

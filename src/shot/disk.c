@@ -11,7 +11,7 @@ typedef struct disk_file {
     H5FD_t head; /* HDF5's part, first */
     int file;
     haddr_t end_of_space, end_of_file;
-    const bool *given_up;
+    bool *refused;
 } disk_file;
 
 #define ADDRESS_MAX ((haddr_t)INT64_MAX)
@@ -25,7 +25,7 @@ static H5FD_t *disk_open(const char *name, unsigned flags, hid_t access, haddr_t
     disk_file *disk = calloc(1, sizeof *disk); /* freed by HDF5's close call below; its layer has no hook for memory */
     if (disk == NULL)
         return NULL;
-    memcpy(&disk->given_up, info, sizeof disk->given_up);
+    memcpy(&disk->refused, info, sizeof disk->refused);
     disk->file = open(name, O_RDWR | O_CLOEXEC | ((flags & H5F_ACC_TRUNC) != 0 ? O_TRUNC : 0));
     off_t end = disk->file >= 0 ? lseek(disk->file, 0, SEEK_END) : -1;
     if (end < 0) {
@@ -41,9 +41,10 @@ static H5FD_t *disk_open(const char *name, unsigned flags, hid_t access, haddr_t
 static herr_t disk_close(H5FD_t *head)
 {
     disk_file *disk = (disk_file *)head;
-    bool closed = close(disk->file) == 0 || *disk->given_up;
+    if (close(disk->file) != 0)
+        *disk->refused = true;
     free(disk);
-    return closed ? 0 : -1;
+    return 0;
 }
 
 static herr_t disk_query(const H5FD_t *head, unsigned long *flags)
@@ -109,12 +110,14 @@ static herr_t disk_write(H5FD_t *head, H5FD_mem_t type, hid_t transfer, haddr_t 
     if (address > ADDRESS_MAX || size > ADDRESS_MAX - address)
         return -1;
     haddr_t end = address + size;
-    while (size > 0 && !*disk->given_up) {
+    while (size > 0 && !*disk->refused) {
         ssize_t done = pwrite(disk->file, next, size, (off_t)address);
         if (done < 0 && errno == EINTR)
             continue;
-        if (done <= 0)
-            return -1;
+        if (done <= 0) {
+            *disk->refused = true;
+            break;
+        }
         next += done;
         address += (haddr_t)done;
         size -= (size_t)done;
@@ -131,8 +134,8 @@ static herr_t disk_truncate(H5FD_t *head, hid_t transfer, hbool_t closing)
     (void)closing;
     if (disk->end_of_space == disk->end_of_file)
         return 0;
-    if (!*disk->given_up && ftruncate(disk->file, (off_t)disk->end_of_space) != 0)
-        return -1;
+    if (!*disk->refused && ftruncate(disk->file, (off_t)disk->end_of_space) != 0)
+        *disk->refused = true;
     disk->end_of_file = disk->end_of_space;
     return 0;
 }
@@ -155,7 +158,7 @@ static const H5FD_class_t disk_class = {
     .name = "raddle_disk",
     .maxaddr = ADDRESS_MAX,
     .fc_degree = H5F_CLOSE_STRONG,
-    .fapl_size = sizeof(const bool *),
+    .fapl_size = sizeof(bool *),
     .open = disk_open,
     .close = disk_close,
     .query = disk_query,
@@ -170,8 +173,8 @@ static const H5FD_class_t disk_class = {
     .fl_map = H5FD_FLMAP_DICHOTOMY,
 };
 
-bool rdli_disk_use(hid_t access, const bool *given_up, hid_t *driver)
+bool rdli_disk_use(hid_t access, bool *refused, hid_t *driver)
 {
     *driver = H5FDregister(&disk_class);
-    return *driver >= 0 && H5Pset_driver(access, *driver, &given_up) >= 0;
+    return *driver >= 0 && H5Pset_driver(access, *driver, &refused) >= 0;
 }

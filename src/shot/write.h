@@ -18,7 +18,8 @@ struct rdl_shot_writer {
     unsigned contents;
     int host_bits, deflate;
     bool overwrite;
-    bool broken;                /* a write failed: the file on disk ends with the frame before it */
+    bool broken;                /* a write failed, as noted here by the driver too: the file on disk ends with the
+                                   frame before it, and nothing reaches it any more */
 };
 
 /* Everything but the frames' rows: root attributes, parts, mesh, rules, settings. False: HDF5 refused. */

@@ -191,7 +191,7 @@ rdl_status rdl_shot_create(const char *path, const rdl_scene *scene, const rdl_s
     }
     rdli_quiet quiet;
     rdli_quiet_begin(&quiet);
-    bool begun = begin_file(made, scene, options);
+    bool begun = begin_file(made, scene, options) && !made->broken;
     rdli_quiet_end(&quiet);
     if (!begun) {
         rdl_shot_discard(made);
@@ -292,7 +292,7 @@ rdl_status rdl_shot_append(rdl_shot_writer *writer, const rdl_shot_frame *frame,
     rdli_quiet quiet;
     rdli_quiet_begin(&quiet);
     uint64_t index = writer->rows[RDLI_SET_TIME];
-    if (!write_frame(writer, frame)) {
+    if (!write_frame(writer, frame) || writer->broken) {
         writer->broken = true;
         status = rdli_fault_set(fault, RDL_WRITE_FAILED, "file.part", index);
     }
@@ -313,6 +313,17 @@ rdl_status rdl_shot_finish(rdl_shot_writer *writer, rdl_fault *fault)
         rdli_fault_set(fault, status, status == RDL_FILE_EXISTS ? "file" : "file.part", 0);
     release(writer);
     return status;
+}
+
+void rdl_shot_keep(rdl_shot_writer *writer)
+{
+    if (writer == NULL)
+        return;
+    rdli_quiet quiet;
+    rdli_quiet_begin(&quiet);
+    (void)close_file(writer);
+    rdli_quiet_end(&quiet);
+    release(writer);
 }
 
 void rdl_shot_discard(rdl_shot_writer *writer)

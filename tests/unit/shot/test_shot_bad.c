@@ -102,6 +102,7 @@ START_TEST(indices_and_shapes_of_the_mesh_are_checked)
     const hsize_t two_three[3] = {2, 3, 0}, two_two[3] = {2, 2, 0}, n[3] = {VERTICES, 0, 0}, fewer[3] = {8, 0, 0};
     const int64_t beyond[6] = {3, 4, 5, 6, 7, 9}, below[6] = {3, 4, -1, 6, 7, 8}, twice[6] = {3, 4, 5, 6, 7, 7};
     const int64_t mixed[6] = {3, 4, 5, 5, 6, 7}, huge[6] = {3, 4, INT64_C(1) << 40, 6, 7, 8}, kind[6] = {0, 1, 2, 6, 7, 8};
+    const int64_t far[4] = {0, 1, 1, 9};
     const int64_t part[VERTICES] = {0, 0, 0, 1, 1, 1, 2, 2, 3};
     const double mass[VERTICES] = {1, 1, 1, 1, 1, 1, NAN, 1, 1}, zero[VERTICES] = {1, 1, 0, 1, 1, 1, 1, 1, 1};
     const double thin[VERTICES] = {0, 0, 0, 0, 0, -1e-9, 0, 0, 0};
@@ -113,7 +114,7 @@ START_TEST(indices_and_shapes_of_the_mesh_are_checked)
     CHANGED(path, put_whole(file, "mesh/triangles", 2, two_three, kind), RDL_OUT_OF_RANGE, "mesh/triangles", 0);
     CHANGED(path, put_whole(file, "mesh/triangles", 2, two_two, beyond), RDL_BAD_FILE, "mesh/triangles", 2);
     CHANGED(path, put_whole(file, "mesh/triangles", 1, two_three, beyond), RDL_BAD_FILE, "mesh/triangles", 0);
-    CHANGED(path, put_whole(file, "mesh/segments", 2, two_two, beyond + 2), RDL_OUT_OF_RANGE, "mesh/segments", 0);
+    CHANGED(path, put_whole(file, "mesh/segments", 2, two_two, far), RDL_OUT_OF_RANGE, "mesh/segments", 1);
     CHANGED(path, put_reals(file, "mesh/segments", 2, two_two, mass), RDL_BAD_FILE, "mesh/segments", 0);
     CHANGED(path, put_whole(file, "mesh/part", 1, n, part), RDL_OUT_OF_RANGE, "mesh/part", 8);
     CHANGED(path, put_whole(file, "mesh/part", 1, fewer, part), RDL_BAD_FILE, "mesh/mass", 9);
