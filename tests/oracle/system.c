@@ -76,20 +76,25 @@ static void insert(arrangement *a, root *r, int k)
     a->count++;
 }
 
-void arrangement_build(arrangement *a, const condition_system *s)
+static void start(arrangement *a)
 {
-    poly_chain chain;
-    root found[POLY_DEGREE_MAX];
-    poly_chain_init(&chain);
-    for (int i = 0; i < POLY_DEGREE_MAX; i++)
-        root_init(&found[i]);
     for (unsigned long end = 0; end < 2; end++) {
         root_set_exact(&a->at[end], end);
         a->owner[end] = -1;
         a->vanishing[end] = 0;
     }
     a->count = 2;
-    for (int k = 0; k < s->count; k++) {
+}
+
+/* Adds the roots of polynomials k in [from, to). */
+static void add_roots(arrangement *a, const condition_system *s, int from, int to)
+{
+    poly_chain chain;
+    root found[POLY_DEGREE_MAX];
+    poly_chain_init(&chain);
+    for (int i = 0; i < POLY_DEGREE_MAX; i++)
+        root_init(&found[i]);
+    for (int k = from; k < to; k++) {
         if (s->p[k].degree < 1)
             continue;
         poly_squarefree(&a->squarefree[k], &chain, &s->p[k]);
@@ -100,6 +105,12 @@ void arrangement_build(arrangement *a, const condition_system *s)
     poly_chain_clear(&chain);
     for (int i = 0; i < POLY_DEGREE_MAX; i++)
         root_clear(&found[i]);
+}
+
+void arrangement_build(arrangement *a, const condition_system *s)
+{
+    start(a);
+    add_roots(a, s, 0, s->count);
 }
 
 int arrangement_sign(const arrangement *a, const condition_system *s, int k, int cell)
@@ -133,11 +144,12 @@ static bool accepts(relation wanted, int sign)
     }
 }
 
-static bool first_cell(const arrangement *a, const condition_system *s, int *cell)
+/* The first cell in which conditions 0 .. count - 1 hold. */
+static bool first_cell(const arrangement *a, const condition_system *s, int count, int *cell)
 {
     for (*cell = 0; *cell <= 2 * a->count - 2; ++*cell) {
         bool holds = true;
-        for (int k = 0; k < s->count && holds; k++)
+        for (int k = 0; k < count && holds; k++)
             holds = accepts(s->wanted[k], arrangement_sign(a, s, k, *cell));
         if (holds)
             return true;
@@ -145,47 +157,19 @@ static bool first_cell(const arrangement *a, const condition_system *s, int *cel
     return false;
 }
 
-/* Condition 0 alone: can it hold anywhere in [0, 1]? Most pairs end here, before the other sequences are built. */
-static bool main_condition_possible(const condition_system *s)
-{
-    static const unsigned long ends[2] = {0, 1};
-    mpz_t t;
-    mpz_init(t);
-    for (int i = 0; i < 2; i++) {
-        mpz_set_ui(t, ends[i]);
-        if (accepts(s->wanted[0], poly_sign_at(&s->p[0], t, 0))) {
-            mpz_clear(t);
-            return true;
-        }
-    }
-    mpz_clear(t);
-    if (s->p[0].degree < 1)
-        return false;
-    poly_chain chain;
-    poly plain;
-    poly_chain_init(&chain);
-    poly_init(&plain);
-    root found[POLY_DEGREE_MAX];
-    for (int i = 0; i < POLY_DEGREE_MAX; i++)
-        root_init(&found[i]);
-    poly_squarefree(&plain, &chain, &s->p[0]);
-    bool possible = roots_isolate(&chain, found) > 0;
-    for (int i = 0; i < POLY_DEGREE_MAX; i++)
-        root_clear(&found[i]);
-    poly_chain_clear(&chain);
-    poly_clear(&plain);
-    return possible;
-}
-
 bool system_first(const condition_system *s, root *first, poly *owner)
 {
-    if (!main_condition_possible(s))
-        return false;
     arrangement a;
     int cell;
     arrangement_init(&a);
-    arrangement_build(&a, s);
-    bool found = first_cell(&a, s, &cell);
+    start(&a);
+    add_roots(&a, s, 0, 1);
+    /* Most pairs end here: condition 0 alone holds nowhere, and the other sequences are not needed. */
+    bool found = first_cell(&a, s, 1, &cell);
+    if (found) {
+        add_roots(&a, s, 1, s->count);
+        found = first_cell(&a, s, s->count, &cell);
+    }
     if (found) {
         root_set(first, &a.at[cell / 2]);
         const poly *p = owner_of(&a, cell / 2);
