@@ -1,10 +1,6 @@
 /* api/tree.c: rdl_tree_...: argument checks, then the driver's box tree. */
 #include "driver/boxtree.h"
 
-/* A pair is handed out as two ids in a row; that is how the list already lies in memory. */
-static_assert(sizeof(rdli_pair) == sizeof(uint32_t[2]), "pairs are two plain ids");
-
-enum { BLOCK = 4096 };               /* pairs per call of emit: 32 KiB, which stays in the first cache */
 static const size_t COUNT_MAX = 0x7FFFFFFF;
 
 /* Names the first box that is not finite or has lo > hi. */
@@ -57,12 +53,8 @@ rdl_status rdl_tree_self_pairs(const rdl_tree *tree, const uint32_t *corners, rd
 {
     if (tree == NULL || emit == NULL)
         return RDL_BAD_ARGUMENT;
-    const rdli_pair *pairs;
-    size_t count;
-    rdl_status status = rdli_boxtree_self_pairs((rdl_tree *)tree, corners, &pairs, &count);
-    for (size_t first = 0; status == RDL_OK && first < count; first += BLOCK)
-        emit(user, 0, (const uint32_t(*)[2])(const void *)(pairs + first), count - first < BLOCK ? count - first : BLOCK);
-    return status;
+    /* What the caller sees of the tree does not change; its room may grow. */
+    return rdli_boxtree_self_pairs((rdl_tree *)tree, corners, emit, user);
 }
 
 size_t rdl_tree_bytes(const rdl_tree *tree)

@@ -74,6 +74,7 @@ static rdl_status collect(rdli_broad *broad, unsigned which, const rdli_mesh *me
     query->self = which == 1;
     query->range_lo = 0;
     query->range_hi = INT32_MAX;
+    query->pairs_max = SIZE_MAX;
     query->muted = mesh->muted;
     query->part_count = mesh->part_count;
     query->keep = which == 0 ? keep_point_triangle : keep_edge_edge;

@@ -307,10 +307,19 @@ static inline __attribute__((always_inline)) void match_pack(rdli_query *query, 
     }
 }
 
+static bool group_in_range(const rdli_query *query, uint32_t group)
+{
+    const rdli_tree *tree = query->a.tree;
+    bool inside = query->range_lo == 0 && query->range_hi >= tree->count;
+    for (size_t i = (size_t)group * 64; !inside && i < tree->count && i < (size_t)group * 64 + 64; i++)
+        inside = tree->order[i] >= query->range_lo && tree->order[i] < query->range_hi;
+    return inside;
+}
+
 static void match_group(rdli_query *query, uint32_t group, unsigned worker)
 {
     rdli_scratch *scratch = &query->scratch[worker];
-    if (query->done[group])
+    if (query->done[group] || !group_in_range(query, group))
         return;
     const size_t listed = list_packs(query, group, scratch);
     if (listed > scratch->list_need)

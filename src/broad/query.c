@@ -92,7 +92,8 @@ static void query_task(void *data, size_t group, unsigned worker)
 void rdli_query_flush(const rdli_query *query, unsigned worker)
 {
     rdli_scratch *scratch = &query->scratch[worker];
-    if (scratch->block_count > 0) /* a pair is two plain ids in a row: see api/tree.c */
+    static_assert(sizeof(rdli_pair) == sizeof(uint32_t[2]), "a pair is two plain ids in a row");
+    if (scratch->block_count > 0)
         query->emit(query->emit_user, worker, (const uint32_t(*)[2])(const void *)scratch->block, scratch->block_count);
     scratch->block_count = 0;
 }
@@ -130,6 +131,8 @@ rdl_status rdli_query_run(rdli_memory *memory, rdli_workers *workers, const rdli
         if (need > query->list_room - RDLI_WIDE) {
             query->list_room = (need + need / 4 + 3 * RDLI_WIDE) / RDLI_WIDE * RDLI_WIDE;
             status = open_scratch(memory, query, threads);
+        } else if (query->rows.full && found > query->pairs_max) {
+            status = RDL_TOO_LARGE;
         } else if (query->rows.full) {
             status = open_rows(memory, query, threads, found + found / 8);
         } else {

@@ -66,6 +66,7 @@ typedef struct rdli_query {
     uint32_t part_count;
     rdli_keep *keep;
     const void *rules;
+    size_t pairs_max;             /* more are not kept: RDL_TOO_LARGE */
     rdl_emit_pairs *emit;         /* NULL: rows are kept; else pairs go out unsorted as they are found */
     void *emit_user;
     rdli_rows rows;
@@ -80,7 +81,7 @@ typedef struct rdli_query {
 struct rdli_kernels;
 
 /* Finds all pairs; *count of them are then in query->rows, or were emitted. Room grows until everything fits.
- * Errors: RDL_NO_MEMORY, RDL_CANCELLED. After an error pairs may have been emitted already. */
+ * Errors: RDL_NO_MEMORY, RDL_CANCELLED, RDL_TOO_LARGE (pairs_max). After an error pairs may have been emitted already. */
 rdl_status rdli_query_run(rdli_memory *memory, rdli_workers *workers, const struct rdli_kernels *kernels, rdli_query *query,
                           size_t *count);
 void rdli_query_release(rdli_memory *memory, rdli_query *query);

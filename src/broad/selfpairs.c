@@ -5,6 +5,9 @@
 
 enum { CORNERS = 4 };
 
+/* Pairs that are kept at once while they are sorted: 512 MiB. A step of a million elements has some twenty million. */
+static const size_t PAIRS_MAX = (size_t)1 << 27;
+
 struct rdli_selfpairs {
     rdli_memory *memory;
     rdli_workers *workers;
@@ -12,6 +15,8 @@ struct rdli_selfpairs {
     rdli_tree tree;
     rdli_query query;
     rdli_room corner_room;
+    size_t pairs_max;
+    uint32_t stretch; /* elements whose pairs fitted at once last time; 0: not known */
 };
 
 rdl_status rdli_selfpairs_create(rdli_memory *memory, rdli_workers *workers, const rdl_box *boxes, uint32_t count,
@@ -24,6 +29,7 @@ rdl_status rdli_selfpairs_create(rdli_memory *memory, rdli_workers *workers, con
     made->memory = memory;
     made->workers = workers;
     made->kernels = rdli_kernels_choose(true);
+    made->pairs_max = PAIRS_MAX;
     rdl_status status = rdli_tree_build(memory, workers, made->kernels, &made->tree, boxes, count);
     if (status != RDL_OK) {
         rdli_selfpairs_destroy(made);
@@ -76,18 +82,78 @@ static rdl_status set_corners(rdli_selfpairs *pairs, const uint32_t *corners)
     return RDL_OK;
 }
 
+/* Finds the pairs whose first lies in [lo, hi). */
+static rdl_status run(rdli_selfpairs *pairs, uint32_t lo, uint32_t hi, size_t pairs_max, size_t *count)
+{
+    pairs->query.self = true;
+    pairs->query.range_lo = lo;
+    pairs->query.range_hi = hi;
+    pairs->query.pairs_max = pairs_max;
+    return rdli_query_run(pairs->memory, pairs->workers, pairs->kernels, &pairs->query, count);
+}
+
 rdl_status rdli_selfpairs_find(rdli_selfpairs *pairs, const uint32_t *corners, const rdli_pair **list, size_t *count)
 {
     rdl_status status = set_corners(pairs, corners);
-    if (status != RDL_OK)
-        return status;
-    pairs->query.self = true;
-    pairs->query.range_lo = 0;
-    pairs->query.range_hi = INT32_MAX;
-    status = rdli_query_run(pairs->memory, pairs->workers, pairs->kernels, &pairs->query, count);
-    if (status != RDL_OK)
-        return status;
-    return rdli_rows_list(pairs->memory, pairs->workers, &pairs->query.rows, list);
+    pairs->query.emit = NULL;
+    if (status == RDL_OK)
+        status = run(pairs, 0, pairs->tree.count, SIZE_MAX, count);
+    if (status == RDL_OK)
+        status = rdli_rows_list(pairs->memory, pairs->workers, &pairs->query.rows, list);
+    return status;
+}
+
+static void emit_rows(const rdli_selfpairs *pairs, uint32_t lo, uint32_t hi, rdl_emit_pairs *emit, void *user)
+{
+    const rdli_rows *rows = &pairs->query.rows;
+    uint32_t block[RDLI_EMIT_BLOCK][2];
+    size_t count = 0;
+    for (uint32_t first = lo; first < hi; first++) {
+        const uint32_t *seconds = rows->seconds + rows->rows[first].start;
+        for (uint32_t i = 0; i < rows->rows[first].count; i++) {
+            if (count == RDLI_EMIT_BLOCK) {
+                emit(user, 0, (const uint32_t(*)[2])block, count);
+                count = 0;
+            }
+            block[count][0] = first;
+            block[count++][1] = seconds[i];
+        }
+    }
+    if (count > 0)
+        emit(user, 0, (const uint32_t(*)[2])block, count);
+}
+
+rdl_status rdli_selfpairs_emit(rdli_selfpairs *pairs, const uint32_t *corners, rdl_emit_pairs *emit, void *user)
+{
+    const uint32_t count = pairs->tree.count;
+    const bool sorted = rdli_workers_count(pairs->workers) == 1;
+    size_t found;
+    rdl_status status = set_corners(pairs, corners);
+    pairs->query.emit = sorted ? NULL : emit;
+    pairs->query.emit_user = user;
+    if (status == RDL_OK && !sorted)
+        return run(pairs, 0, count, SIZE_MAX, &found);
+    /* Stretches of firsts whose pairs fit, one after the other; what fitted is remembered. */
+    uint32_t stretch = pairs->stretch > 0 ? pairs->stretch : count;
+    for (uint32_t lo = 0; status == RDL_OK && lo < count;) {
+        uint32_t hi = count - lo < stretch ? count : lo + stretch;
+        status = run(pairs, lo, hi, hi - lo > 1 ? pairs->pairs_max : SIZE_MAX, &found);
+        if (status == RDL_TOO_LARGE) {
+            status = RDL_OK;
+            stretch = (hi - lo) / 2;
+        } else if (status == RDL_OK) {
+            emit_rows(pairs, lo, hi, emit, user);
+            lo = hi;
+        }
+    }
+    pairs->stretch = stretch;
+    return status;
+}
+
+void rdli_selfpairs_limit(rdli_selfpairs *pairs, size_t pairs_max)
+{
+    pairs->pairs_max = pairs_max;
+    pairs->stretch = 0;
 }
 
 void rdli_selfpairs_destroy(rdli_selfpairs *pairs)

@@ -44,9 +44,19 @@ void rdli_boxtree_update(rdl_tree *tree, const rdl_box *boxes)
     rdli_selfpairs_update(tree->pairs, boxes);
 }
 
-rdl_status rdli_boxtree_self_pairs(rdl_tree *tree, const uint32_t *corners, const rdli_pair **pairs, size_t *count)
+rdl_status rdli_boxtree_self_pairs(rdl_tree *tree, const uint32_t *corners, rdl_emit_pairs *emit, void *user)
 {
-    return rdli_selfpairs_find(tree->pairs, corners, pairs, count);
+    return rdli_selfpairs_emit(tree->pairs, corners, emit, user);
+}
+
+void rdli_boxtree_use_vector(rdl_tree *tree, bool vector)
+{
+    rdli_selfpairs_use_vector(tree->pairs, vector);
+}
+
+void rdli_boxtree_limit(rdl_tree *tree, size_t pairs_max)
+{
+    rdli_selfpairs_limit(tree->pairs, pairs_max);
 }
 
 size_t rdli_boxtree_bytes(const rdl_tree *tree)

@@ -3,15 +3,16 @@
 #define RDLI_BOXTREE_H
 
 #include "base/memory.h"
-#include "flow/pairs.h"
 #include "raddle/tree.h"
 
 /* boxes are valid. Errors: RDL_BAD_ARGUMENT (host), RDL_NO_MEMORY. */
 rdl_status rdli_boxtree_create(const rdl_host *host, const rdl_box *boxes, uint32_t count, rdl_tree **tree);
 uint32_t rdli_boxtree_count(const rdl_tree *tree);
 void rdli_boxtree_update(rdl_tree *tree, const rdl_box *boxes);
-/* Sorted pairs, owned by the tree until its next call. */
-rdl_status rdli_boxtree_self_pairs(rdl_tree *tree, const uint32_t *corners, const rdli_pair **pairs, size_t *count);
+rdl_status rdli_boxtree_self_pairs(rdl_tree *tree, const uint32_t *corners, rdl_emit_pairs *emit, void *user);
+/* For tests: portable code only, and how many pairs may be kept at once. The pairs stay the same. */
+void rdli_boxtree_use_vector(rdl_tree *tree, bool vector);
+void rdli_boxtree_limit(rdl_tree *tree, size_t pairs_max);
 size_t rdli_boxtree_bytes(const rdl_tree *tree);
 void rdli_boxtree_destroy(rdl_tree *tree);
 
