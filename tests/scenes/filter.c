@@ -27,6 +27,12 @@ static void cross(const double a[3], const double b[3], double out[3])
     out[2] = a[0] * b[1] - a[1] * b[0];
 }
 
+static void keep_shorter(const double d[3], double best[3])
+{
+    if (dot(d, d) < dot(best, best))
+        memcpy(best, d, 3 * sizeof *d);
+}
+
 /* Keeps the shorter of best and p - (a + s (b - a)), s clamped. */
 static void try_segment(const double p[3], const double a[3], const double b[3], double sign, double best[3])
 {
@@ -37,8 +43,7 @@ static void try_segment(const double p[3], const double a[3], const double b[3],
     s = s < 0.0 ? 0.0 : s > 1.0 ? 1.0 : s;
     for (int k = 0; k < 3; k++)
         w[k] = sign * (p[k] - (a[k] * (1.0 - s) + b[k] * s));
-    if (dot(w, w) < dot(best, best))
-        memcpy(best, w, sizeof w);
+    keep_shorter(w, best);
 }
 
 static void closest_point_triangle(const double x[4][3], double best[3])
@@ -60,7 +65,8 @@ static void closest_point_triangle(const double x[4][3], double best[3])
     if (b < 0.0 || c < 0.0 || b + c > 1.0)
         return;
     for (int k = 0; k < 3; k++)
-        best[k] = w[k] - b * u[k] - c * v[k]; /* of two real points: never below the distance */
+        t[k] = w[k] - b * u[k] - c * v[k]; /* of two real points: never below the distance */
+    keep_shorter(t, best);
 }
 
 static void closest_edge_edge(const double x[4][3], double best[3])
@@ -84,7 +90,8 @@ static void closest_edge_edge(const double x[4][3], double best[3])
     if (s < 0.0 || s > 1.0 || r < 0.0 || r > 1.0)
         return;
     for (int k = 0; k < 3; k++)
-        best[k] = w[k] + s * u[k] - r * v[k];
+        t[k] = w[k] + s * u[k] - r * v[k];
+    keep_shorter(t, best);
 }
 
 double filter_distance(int kind, const double x[4][3], double direction[3])

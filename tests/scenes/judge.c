@@ -172,17 +172,27 @@ static void judge_bits(judge *j, const judge_step *step)
 {
     const rdl_report *r = step->report;
     size_t lost = 0, sent = 0, untold = 0;
+    uint32_t example = 0;
+    double far = 0.0;
     for (uint32_t v = 0; v < j->w->vertex_count; v++) {
         bool moved = memcmp(step->delivered[v], step->proposed[v], sizeof step->delivered[v]) != 0;
         bool driven = world_is_driven(j->w, v);
         sent += moved && driven;
-        lost += moved && !driven && !j->near[v];
+        if (moved && !driven && !j->near[v]) {
+            lost++;
+            for (int k = 0; k < 3; k++)
+                if (fabs(step->delivered[v][k] - step->proposed[v][k]) > far) {
+                    far = fabs(step->delivered[v][k] - step->proposed[v][k]);
+                    example = v;
+                }
+        }
         untold += r->moved != NULL && r->moved[v] != (moved ? 1 : 0);
     }
     if (sent > 0)
         judge_fault(j, step->number, "%zu driven vertices not where the host sent them", sent);
     if (lost > 0)
-        judge_fault(j, step->number, "%zu vertices that nothing comes near do not have their proposed bits", lost);
+        judge_fault(j, step->number, "%zu vertices that nothing comes near were moved, vertex %u by %.3g m", lost, example,
+                    far);
     if (untold > 0)
         judge_fault(j, step->number, "the report's list of moved vertices is wrong for %zu", untold);
 }

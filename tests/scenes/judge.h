@@ -29,7 +29,7 @@ typedef struct judge {
     size_t pierce_count, pierce_room;
     judge_pair *found;          /* candidates of the step */
     size_t found_count, found_room;
-    uint8_t *near;              /* per vertex: something else comes near enough to matter */
+    uint8_t *near;              /* per vertex: something else comes near enough to matter: 1, something driven: 2 */
     uint32_t *group;            /* per vertex: union-find over the report's contacts */
     long linking[WORLD_LOOPS * WORLD_LOOPS];
     size_t faults;

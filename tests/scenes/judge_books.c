@@ -19,30 +19,37 @@ static uint32_t root_of(uint32_t *group, uint32_t v)
     return v;
 }
 
+/* Joins the movable vertices of each zone: its loaded contacts need not hang together, and the promise is for the zone. */
 static void join_contacts(judge *j, const rdl_report *r)
 {
+    static uint32_t first_of_zone[WORLD_ELEMENTS * 64];
+    size_t zones = r->zone_count < WORLD_ELEMENTS * 64 ? r->zone_count : WORLD_ELEMENTS * 64;
     for (uint32_t v = 0; v < j->w->vertex_count; v++)
         j->group[v] = v;
-    for (size_t c = 0; c < r->contact_count; c++) {
+    for (size_t z = 0; z < zones; z++)
+        first_of_zone[z] = UINT32_MAX;
+    for (size_t c = 0; c < r->contact_count && r->contacts[c].zone < zones; c++) {
         const uint32_t *vertex = r->contacts[c].vertices;
-        uint32_t first = UINT32_MAX;
+        uint32_t *first = &first_of_zone[r->contacts[c].zone];
         for (int k = 0; k < 4; k++) {
             if (world_is_driven(j->w, vertex[k]))
                 continue;
-            if (first == UINT32_MAX)
-                first = vertex[k];
-            j->group[root_of(j->group, vertex[k])] = root_of(j->group, first);
+            if (*first == UINT32_MAX)
+                *first = vertex[k];
+            j->group[root_of(j->group, vertex[k])] = root_of(j->group, *first);
         }
     }
 }
 
+/* A zone may say that it touches something driven, with a contact that bears no load, only where something driven is. */
 static void mark_fed(judge *j, const rdl_report *r, books *all)
 {
     for (size_t c = 0; c < r->contact_count; c++) {
         const uint32_t *vertex = r->contacts[c].vertices;
+        bool said = r->contacts[c].zone < r->zone_count && r->zones[r->contacts[c].zone].touches_driven;
         bool driven = false;
         for (int k = 0; k < 4; k++)
-            driven = driven || world_is_driven(j->w, vertex[k]);
+            driven = driven || world_is_driven(j->w, vertex[k]) || (said && (j->near[vertex[k]] & 2) != 0);
         for (int k = 0; k < 4; k++)
             if (driven && !world_is_driven(j->w, vertex[k]))
                 all[root_of(j->group, vertex[k])].fed = true;

@@ -232,8 +232,11 @@ static void judge_kind(judge *j, const judge_step *step, uint32_t kind)
         judge_vertices(j, kind, pair.first, pair.second, vertex);
         if (!judge_is_active(j, vertex, firsts, vertex + firsts, 4 - firsts))
             continue;
+        uint8_t who = 1;
         for (int k = 0; k < 4; k++)
-            j->near[vertex[k]] = 1;
+            who = world_is_driven(j->w, vertex[k]) ? 2 : who;
+        for (int k = 0; k < 4; k++)
+            j->near[vertex[k]] |= who;
         if (judge_names(step->report, kind, pair.first, pair.second))
             continue;
         size_t count = load_pieces(j, step, vertex, pieces);
