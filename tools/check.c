@@ -116,7 +116,7 @@ static rdl_status look(checker *c, stretch where, const double *from, const doub
     c->contacts += counts.contacts;
     c->pairs += counts.pairs;
     uint64_t bad = counts.tangles + counts.crossings, driven = counts.driven_tangles + counts.driven_crossings;
-    c->named += (size_t)(bad + driven);
+    c->named += (size_t)(bad + (c->bodies ? driven : 0));
     c->frame_is_bad = c->frame_is_bad || bad + (c->bodies ? driven : 0) > 0;
     return RDL_OK;
 }
@@ -176,7 +176,7 @@ static int check_all(checker *c, unsigned threads)
     c->end = malloc(state_bytes(c));
     c->last = malloc(state_bytes(c));
     rdl_status status = c->start != NULL && c->end != NULL && c->last != NULL
-                            ? judge_create(c->scene, threads, &c->judge)
+                            ? judge_create(c->scene, threads, c->bodies, &c->judge)
                             : RDL_NO_MEMORY;
     if (status != RDL_OK)
         return cli_fail("check", c->path, -1, status, NULL);
@@ -228,7 +228,7 @@ static void print_text(const checker *c)
     printf("%" PRIu64 " tangles at rest, %" PRIu64 " crossings in steps, %" PRIu64 " crossings where the host moved it\n",
            c->tangles, c->crossings[STRETCH_STEP] + c->crossings[STRETCH_POSES], c->crossings[STRETCH_HOST]);
     printf("bodies: %" PRIu64 " tangles, %" PRIu64 " crossings among driven vertices%s\n", c->driven_tangles,
-           c->driven_crossings, c->bodies ? "" : " (not counted as findings)");
+           c->driven_crossings, c->bodies ? "" : " (--bodies lists them and counts them as findings)");
     if (c->contacts > 0)
         printf("%" PRIu64 " pairs at distance 0 where a piece of path starts (not counted as findings)\n", c->contacts);
     if (c->bad_frames > 0)

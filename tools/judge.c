@@ -31,6 +31,7 @@ struct judge {
     uint32_t *attached_first, *attached;
     worker *workers;
     size_t worker_count;
+    bool list_driven;
     judge_finding *findings;
     size_t finding_room;
     /* of the call in progress */
@@ -125,12 +126,13 @@ static rdl_status make_rules(judge *j)
     return RDL_OK;
 }
 
-rdl_status judge_create(const rdl_scene *scene, unsigned threads, judge **made)
+rdl_status judge_create(const rdl_scene *scene, unsigned threads, bool list_driven, judge **made)
 {
     judge *j = calloc(1, sizeof *j);
     if (j == NULL)
         return RDL_NO_MEMORY;
     j->scene = scene;
+    j->list_driven = list_driven;
     j->host = (rdl_host){.size = sizeof j->host, .threads = threads};
     j->vertices = scene->vertex_count;
     j->triangles = scene->triangle_count;
@@ -210,6 +212,8 @@ static void fill_boxes(judge *j)
 static int compare_findings(const void *a, const void *b)
 {
     const judge_finding *x = a, *y = b;
+    if (x->driven != y->driven)
+        return x->driven < y->driven ? -1 : 1;
     if (x->kind != y->kind)
         return x->kind < y->kind ? -1 : 1;
     if (x->first != y->first)
@@ -220,7 +224,7 @@ static int compare_findings(const void *a, const void *b)
 /* Keeps the first `most` findings in order, in room for a few more. */
 static void keep(judge *j, worker *w, const judge_finding *finding)
 {
-    if (j->most == 0 || w->status != RDL_OK)
+    if (j->most == 0 || w->status != RDL_OK || (finding->driven && !j->list_driven))
         return;
     if (w->kept_count == w->kept_room) {
         size_t cap = 2 * j->most + 64;

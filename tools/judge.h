@@ -29,12 +29,13 @@ typedef struct judge_counts {
     uint64_t pairs;                            /* candidate pairs looked at */
 } judge_counts;
 
-/* scene must outlive the judge. threads 0: all processors. */
-rdl_status judge_create(const rdl_scene *scene, unsigned threads, judge **made);
+/* scene must outlive the judge. threads 0: all processors. list_driven: whether findings among driven vertices alone are
+ * listed; they are counted either way. */
+rdl_status judge_create(const rdl_scene *scene, unsigned threads, bool list_driven, judge **made);
 void judge_destroy(judge *j);
 
 /* Looks at the straight motion from -> to (N x 3 each). path: crossings on the way; end: tangles at rest in `to`.
- * Counts are full; *findings holds the first `most` in order of (kind, first, second), owned by the judge until its next
+ * Counts are full; *findings holds the first `most` in order of (driven, kind, first, second), owned by the judge until its next
  * call. The result does not depend on the threads. */
 rdl_status judge_piece(judge *j, const double *from, const double *to, bool path, bool end, size_t most,
                        judge_counts *counts, const judge_finding **findings, size_t *finding_count, rdl_fault *fault);
