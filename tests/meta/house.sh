@@ -75,11 +75,12 @@ rule_exported_calls_live_in_api() {
         grep -vE '^src/(api|shot|audit)/|^[^:]*:[0-9]+:(static|typedef|extern) |;[[:space:]]*$' || true
 }
 
-# compile_alone COMPILER STANDARD LANGUAGE FOLDER OPTIONS: headers that do not compile alone, or not twice. NAME_body.h is
+# compile_alone COMPILER STANDARD LANGUAGE FOLDER OPTIONS: headers that do not compile alone, or not twice. A NAME_body.h or
+# NAME_kernel.h is
 # not a header but a text that is compiled once for each instruction set.
 compile_alone() {
     hdf5_flags=$(pkg-config --cflags hdf5)
-    find "$4" -name '*.h' ! -name '*_body.h' | sort | while read -r header; do
+    find "$4" -name '*.h' ! -name '*_body.h' ! -name '*_kernel.h' | sort | while read -r header; do
         # shellcheck disable=SC2086
         printf '#include "%s"\n#include "%s"\n' "$PWD/$header" "$PWD/$header" |
             "$1" "-std=$2" -x "$3" -Wall -Wextra -Wpedantic -Werror -D_POSIX_C_SOURCE=200809L \
