@@ -92,9 +92,8 @@ static void query_task(void *data, size_t group, unsigned worker)
 void rdli_query_flush(const rdli_query *query, unsigned worker)
 {
     rdli_scratch *scratch = &query->scratch[worker];
-    static_assert(sizeof(rdli_pair) == sizeof(uint32_t[2]), "a pair is two plain ids in a row");
     if (scratch->block_count > 0)
-        query->emit(query->emit_user, worker, (const uint32_t(*)[2])(const void *)scratch->block, scratch->block_count);
+        query->emit(query->emit_user, worker, rdli_plain_pairs(scratch->block), scratch->block_count);
     scratch->block_count = 0;
 }
 

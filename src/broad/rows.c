@@ -75,18 +75,16 @@ static void count_block(void *data, size_t block, unsigned worker)
 static void write_block(void *data, size_t block, unsigned worker)
 {
     (void)worker;
-    enum { AHEAD = 8 }; /* rows: where a row lies is known early, so its first line can be fetched early */
     const list_job *job = data;
-    const rdli_row *rows = job->rows->rows;
+    const rdli_rows *rows = job->rows;
     uint32_t first, last;
     block_range(job, block, &first, &last);
     rdli_pair *to = job->pairs + job->sums[block];
     for (uint32_t r = first; r < last; r++) {
-        const uint32_t *seconds = job->rows->seconds + rows[r].start;
-        if (last - r > AHEAD)
-            __builtin_prefetch(job->rows->seconds + rows[r + AHEAD].start);
-        for (uint32_t i = 0, count = rows[r].count; i < count; i++)
-            *to++ = (rdli_pair){r, seconds[i]};
+        const rdli_row row = rows->rows[r];
+        rdli_rows_fetch(rows, r, last);
+        rdli_rows_copy(to, r, rows->seconds + row.start, row.count);
+        to += row.count;
     }
 }
 

@@ -37,6 +37,33 @@ rdl_status rdli_rows_open(rdli_memory *memory, rdli_rows *rows, uint32_t row_cou
 uint32_t *rdli_rows_take(rdli_rows *rows, rdli_portion *portion, size_t count);
 /* All rows as one list sorted by (first, second), valid until the next call. Errors: RDL_NO_MEMORY. */
 rdl_status rdli_rows_list(rdli_memory *memory, rdli_workers *workers, rdli_rows *rows, const rdli_pair **pairs);
+/* Where a row lies is known long before it is read, so its first lines can be on their way. */
+static inline void rdli_rows_fetch(const rdli_rows *rows, uint32_t first, uint32_t end)
+{
+    enum { AHEAD = 8 };
+    if (end - first > AHEAD) {
+        const uint32_t *seconds = rows->seconds + rows->rows[first + AHEAD].start;
+        __builtin_prefetch(seconds);
+        __builtin_prefetch(seconds + 16);
+    }
+}
+
+/* Pairs of first with `count` seconds. */
+static inline void rdli_rows_copy(rdli_pair *restrict to, uint32_t first, const uint32_t *restrict seconds, uint32_t count)
+{
+    for (uint32_t i = 0; i < count; i++) {
+        to[i].first = first;
+        to[i].second = seconds[i];
+    }
+}
+
+/* The list as the public callback takes it. */
+static inline const uint32_t (*rdli_plain_pairs(const rdli_pair *pairs))[2]
+{
+    static_assert(sizeof(rdli_pair) == sizeof(uint32_t[2]), "a pair is two plain ids in a row");
+    return (const uint32_t(*)[2])(const void *)pairs;
+}
+
 void rdli_rows_release(rdli_memory *memory, rdli_rows *rows);
 
 #endif

@@ -106,21 +106,24 @@ rdl_status rdli_selfpairs_find(rdli_selfpairs *pairs, const uint32_t *corners, c
 static void emit_rows(const rdli_selfpairs *pairs, uint32_t lo, uint32_t hi, rdl_emit_pairs *emit, void *user)
 {
     const rdli_rows *rows = &pairs->query.rows;
-    uint32_t block[RDLI_EMIT_BLOCK][2];
+    rdli_pair block[RDLI_EMIT_BLOCK];
     size_t count = 0;
     for (uint32_t first = lo; first < hi; first++) {
-        const uint32_t *seconds = rows->seconds + rows->rows[first].start;
-        for (uint32_t i = 0; i < rows->rows[first].count; i++) {
+        const rdli_row row = rows->rows[first];
+        rdli_rows_fetch(rows, first, hi);
+        for (uint32_t done = 0; done < row.count;) {
+            uint32_t left = row.count - done, room = (uint32_t)(RDLI_EMIT_BLOCK - count), some = left < room ? left : room;
+            rdli_rows_copy(block + count, first, rows->seconds + row.start + done, some);
+            done += some;
+            count += some;
             if (count == RDLI_EMIT_BLOCK) {
-                emit(user, 0, (const uint32_t(*)[2])block, count);
+                emit(user, 0, rdli_plain_pairs(block), count);
                 count = 0;
             }
-            block[count][0] = first;
-            block[count++][1] = seconds[i];
         }
     }
     if (count > 0)
-        emit(user, 0, (const uint32_t(*)[2])block, count);
+        emit(user, 0, rdli_plain_pairs(block), count);
 }
 
 rdl_status rdli_selfpairs_emit(rdli_selfpairs *pairs, const uint32_t *corners, rdl_emit_pairs *emit, void *user)
