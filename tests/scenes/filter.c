@@ -198,6 +198,29 @@ static int side(const double a[3], const double b[3], const double c[3], const d
     return value > 0.0 ? 1 : -1;
 }
 
+/* A direction along which the edge and the triangle do not overlap: from one feature of each to its nearest. */
+static bool lies_apart(const double edge[2][3], const double triangle[3][3])
+{
+    double x[4][3], direction[3], best[3] = {INFINITY, 0.0, 0.0}, largest = 0.0, least = INFINITY;
+    for (int i = 0; i < 5; i++) {
+        memcpy(x[0], edge[i < 3 ? 0 : i - 3], sizeof x[0]);
+        memcpy(x[1], i < 3 ? edge[1] : triangle[0], sizeof x[1]);
+        memcpy(x[2], triangle[i < 3 ? i : 1], sizeof x[2]);
+        memcpy(x[3], triangle[i < 3 ? (i + 1) % 3 : 2], sizeof x[3]);
+        filter_distance(i < 3 ? RDL_EDGE_EDGE : RDL_POINT_TRIANGLE, (const double(*)[3])x, direction);
+        keep_shorter(direction, best);
+    }
+    for (int i = 0; i < 2; i++)
+        for (int k = 0; k < 3; k++) {
+            double d[3];
+            minus(edge[i], triangle[k], d);
+            least = fmin(least, dot(best, d));
+            for (int c = 0; c < 3; c++)
+                largest = fmax(largest, fmax(fabs(edge[i][c]), fabs(triangle[k][c])));
+        }
+    return least > 0x1p-46 * largest * sqrt(dot(best, best));
+}
+
 bool filter_misses(const double edge[2][3], const double triangle[3][3])
 {
     int above = side(triangle[0], triangle[1], triangle[2], edge[0]);
@@ -210,5 +233,5 @@ bool filter_misses(const double edge[2][3], const double triangle[3][3])
     for (int i = 0; i < 3; i++)
         if (turns[i] * turns[(i + 1) % 3] < 0)
             return true;
-    return false;
+    return lies_apart(edge, triangle);
 }

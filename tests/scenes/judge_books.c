@@ -10,6 +10,7 @@ typedef struct books {
     double proposed[3], delivered[3];           /* sums of m dx */
     double before, after, work;                 /* sums of m dx^2; of m |x| |dx| */
     bool fed;                                   /* by a driven or held vertex */
+    bool touched;                               /* a contact of the report has a vertex of it */
 } books;
 
 static uint32_t root_of(uint32_t *group, uint32_t v)
@@ -50,9 +51,11 @@ static void mark_fed(judge *j, const rdl_report *r, books *all)
         bool driven = false;
         for (int k = 0; k < 4; k++)
             driven = driven || world_is_driven(j->w, vertex[k]) || (said && (j->near[vertex[k]] & 2) != 0);
-        for (int k = 0; k < 4; k++)
-            if (driven && !world_is_driven(j->w, vertex[k]))
-                all[root_of(j->group, vertex[k])].fed = true;
+        for (int k = 0; k < 4; k++) {
+            books *b = &all[root_of(j->group, vertex[k])];
+            b->touched = true;
+            b->fed = b->fed || (driven && !world_is_driven(j->w, vertex[k]));
+        }
     }
     for (size_t h = 0; h < r->held_count; h++)
         all[root_of(j->group, r->held[h])].fed = true;
@@ -102,6 +105,20 @@ static void close_books(judge *j, const judge_step *step, const books *b)
         judge_fault(j, step->number, "a free group gains energy: %.17g -> %.17g kg m^2", before, after);
 }
 
+/* Nothing moves without a contact that the report names, rigid zones and held vertices excepted. */
+static void judge_untouched(judge *j, const judge_step *step, const books *all)
+{
+    size_t count = 0;
+    double most = 0.0;
+    for (uint32_t v = 0; v < j->w->vertex_count; v++)
+        if (j->group[v] == v && !all[v].touched && !all[v].fed && all[v].correction > 0.0) {
+            count++;
+            most = fmax(most, all[v].correction / all[v].mass);
+        }
+    if (count > 0 && step->report->level_zones[RDL_LEVEL_RIGID] == 0)
+        judge_fault(j, step->number, "%zu vertices were moved without a contact in the report, up to %.3g m", count, most);
+}
+
 void judge_books(judge *j, const judge_step *step)
 {
     static books all[WORLD_VERTICES];
@@ -116,8 +133,9 @@ void judge_books(judge *j, const judge_step *step)
             enter(&all[root_of(j->group, v)], j->w->mass[v], step->start[v], step->proposed[v], step->delivered[v]);
         }
     for (uint32_t v = 0; v < j->w->vertex_count; v++)
-        if (j->group[v] == v && all[v].mass > 0.0 && !all[v].fed && all[v].correction > 0.0)
+        if (j->group[v] == v && all[v].touched && !all[v].fed && all[v].correction > 0.0)
             close_books(j, step, &all[v]);
+    judge_untouched(j, step, all);
     j->vertex_steps += movable;
     j->held += r->held_count;
     for (size_t z = 0; z < r->zone_count && r->zones != NULL; z++)

@@ -104,7 +104,8 @@ static void grow(box *b, const double x[3])
 }
 
 /* Everything that the corners pass through, in the proposal too, grown by the half-thickness. */
-static box box_of(const judge *j, const judge_step *step, const uint32_t *corner, int count, uint32_t id, bool second)
+static box box_of(const judge *j, const judge_step *step, const uint32_t *corner, int count, uint32_t id, bool second,
+                  bool grown)
 {
     const rdl_report *r = step->report;
     box b = {{INFINITY, INFINITY, INFINITY}, {-INFINITY, -INFINITY, -INFINITY}, id, second};
@@ -115,7 +116,7 @@ static box box_of(const judge *j, const judge_step *step, const uint32_t *corner
         for (size_t p = 0; p < r->waypoint_count; p++)
             grow(&b, r->waypoint_positions + 3 * (p * j->w->vertex_count + corner[c]));
     }
-    double reach = half_of(j->w, corner[0]) * (1.0 + 1e-5);
+    double reach = grown ? half_of(j->w, corner[0]) * (1.0 + 1e-5) : 0.0;
     for (int k = 0; k < 3; k++) {
         b.lo[k] -= reach;
         b.hi[k] += reach;
@@ -163,12 +164,12 @@ static void candidates(judge *j, const judge_step *step, uint32_t kind)
     size_t count = 0;
     if (kind == RDL_EDGE_EDGE)
         for (uint32_t e = 0; e < j->edge_count; e++)
-            boxes[count++] = box_of(j, step, j->edges[e], 2, e, false);
+            boxes[count++] = box_of(j, step, j->edges[e], 2, e, false, true);
     else {
         for (uint32_t v = 0; v < j->w->vertex_count; v++)
-            boxes[count++] = box_of(j, step, &v, 1, v, false);
+            boxes[count++] = box_of(j, step, &v, 1, v, false, true);
         for (uint32_t t = 0; t < j->w->triangle_count; t++)
-            boxes[count++] = box_of(j, step, j->w->triangles[t], 3, t, true);
+            boxes[count++] = box_of(j, step, j->w->triangles[t], 3, t, true, true);
     }
     overlap(j, boxes, count, kind == RDL_POINT_TRIANGLE);
 }
@@ -288,9 +289,9 @@ void judge_find_pierces(judge *j, rows x, judge_pair **pierces, size_t *count, s
     judge_step still = {.start = x, .proposed = x, .delivered = x, .report = &none};
     size_t boxed = 0;
     for (uint32_t e = 0; e < j->edge_count; e++)
-        boxes[boxed++] = box_of(j, &still, j->edges[e], 2, e, false);
+        boxes[boxed++] = box_of(j, &still, j->edges[e], 2, e, false, false);
     for (uint32_t t = 0; t < j->w->triangle_count; t++)
-        boxes[boxed++] = box_of(j, &still, j->w->triangles[t], 3, t, true);
+        boxes[boxed++] = box_of(j, &still, j->w->triangles[t], 3, t, true, false);
     overlap(j, boxes, boxed, true);
     *count = 0;
     for (size_t i = 0; i < j->found_count; i++) {

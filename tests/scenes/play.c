@@ -123,6 +123,12 @@ static void print_step(const player *p, unsigned number, const rdl_report *r, do
            r->named_count, (unsigned long long)r->pairs, mean_correction(p), r->worst_correction, seconds,
            r->seconds[RDL_TIME_BOXES], r->seconds[RDL_TIME_PAIRS], r->seconds[RDL_TIME_TOUCHES],
            r->seconds[RDL_TIME_RESPONSE], r->seconds[RDL_TIME_VERIFY]);
+    for (size_t z = 0; z < r->zone_count; z++)
+        printf("      zone %zu: %u vertices, %u contacts, level %u%s, energy %+.3g J, momentum error %.3g, residual %.3g, "
+               "worst %.3g m\n",
+               z, r->zones[z].vertex_count, r->zones[z].contact_count, r->zones[z].level,
+               r->zones[z].touches_driven ? ", touches driven" : "", r->zones[z].energy_change,
+               r->zones[z].momentum_error, r->zones[z].residual, r->zones[z].worst_correction);
     fflush(stdout);
 }
 
