@@ -169,7 +169,7 @@ static int may_write(const demo_options *options)
 
 static int play(const demo_options *options)
 {
-    demo_body body;
+    mesh body;
     demo_result result;
     char why[1200];
     if (!demo_body_load(options->body, DEMO_HEIGHT, &body, why, sizeof why)) {
@@ -177,7 +177,7 @@ static int play(const demo_options *options)
         return CLI_BAD_INPUT;
     }
     demo_scene *scene = demo_scene_create(&body, options->small);
-    demo_body_free(&body);
+    mesh_free(&body);
     if (!scene) {
         cli_error("demo", "%s", rdl_status_text(RDL_NO_MEMORY));
         return CLI_NOT_FINISHED;

@@ -199,7 +199,7 @@ static int paint(demo_scene *scene, const cut *c, const sheet *s)
     return 1;
 }
 
-static int build(demo_scene *scene, const demo_body *body, const cut *c)
+static int build(demo_scene *scene, const mesh *body, const cut *c)
 {
     sheet s;
     int done = sheet_make(c, &s) &&
@@ -207,22 +207,22 @@ static int build(demo_scene *scene, const demo_body *body, const cut *c)
                               (const double (*)[3])s.position, s.triangle_count,
                               (const uint32_t (*)[3])s.triangles, &scene->cloth_first) &&
                add_fringe(scene, c, &s) && add_hands(scene, c, &s) &&
-               host_add_body(scene->h, "figure", 0.0, 0.3, body->vertex_count, (const double (*)[3])body->vertices,
-                             body->triangle_count, (const uint32_t (*)[3])body->triangles, &scene->body_first) &&
+               host_add_body(scene->h, "figure", 0.0, 0.3, body->point_count, (const double (*)[3])body->points,
+                             body->face_count, (const uint32_t (*)[3])body->faces, &scene->body_first) &&
                paint(scene, c, &s);
     scene->cloth_triangle_count = s.triangle_count;
     sheet_free(&s);
     if (!done)
         return 0;
-    scene->body_count = body->vertex_count;
-    scene->body_rest = malloc(body->vertex_count * sizeof *scene->body_rest);
+    scene->body_count = body->point_count;
+    scene->body_rest = malloc(body->point_count * sizeof *scene->body_rest);
     if (!scene->body_rest)
         return 0;
-    memcpy(scene->body_rest, body->vertices, body->vertex_count * sizeof *scene->body_rest);
+    memcpy(scene->body_rest, body->points, body->point_count * sizeof *scene->body_rest);
     return host_finish(scene->h);
 }
 
-demo_scene *demo_scene_create(const demo_body *body, int small)
+demo_scene *demo_scene_create(const mesh *body, int small)
 {
     demo_scene *scene = calloc(1, sizeof *scene);
     if (!scene)

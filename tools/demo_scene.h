@@ -26,7 +26,7 @@ typedef struct demo_scene {
 } demo_scene;
 
 /* small = 1: the same story with a coarse cloth and few strands, for tests. NULL: no memory. */
-demo_scene *demo_scene_create(const demo_body *body, int small);
+demo_scene *demo_scene_create(const mesh *body, int small);
 void demo_scene_destroy(demo_scene *scene);
 /* Tells the host's driven vertices and hands where to be at `time` (s), the end of the coming step. */
 void demo_scene_direct(demo_scene *scene, double time);
