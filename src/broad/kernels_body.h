@@ -121,6 +121,17 @@ static void end_list(rdli_list *list, size_t count)
         }
 }
 
+/* Level-0 packs are read eight times for every time that they are listed: have them come. */
+static void fetch_children(const rdli_tree *tree, uint32_t pack, unsigned mask)
+{
+    for (; mask != 0; mask &= mask - 1) {
+        const size_t child = (size_t)pack * RDLI_WIDE + (unsigned)__builtin_ctz(mask);
+        for (unsigned k = 0; k < sizeof(rdli_pack); k += 64)
+            __builtin_prefetch((const char *)&tree->packs[0][child] + k);
+        __builtin_prefetch(&tree->order[child * RDLI_WIDE]);
+    }
+}
+
 /* Lists the level-0 packs of b that the group overlaps; how many, even if they have no room. */
 static size_t list_packs(const rdli_query *query, uint32_t group, rdli_scratch *scratch)
 {
@@ -139,6 +150,7 @@ static size_t list_packs(const rdli_query *query, uint32_t group, rdli_scratch *
                 lanes_append_children(&scratch->group, count, &tree->packs[1][pack], pack * RDLI_WIDE,
                                       tree->highest[0] + (size_t)pack * RDLI_WIDE, mask);
             count += (size_t)__builtin_popcount(mask);
+            fetch_children(tree, pack, mask);
             continue;
         }
         for (; mask != 0; mask &= mask - 1) {
