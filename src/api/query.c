@@ -38,7 +38,6 @@ rdl_status rdl_find_touches(int kind, size_t count, const rdl_motion motions[], 
     rdl_status status = check(count, motions, gaps, fault);
     if (status != RDL_OK)
         return status;
-    for (size_t i = 0; i < count; i++)
-        rdli_find_touch(kind, &motions[i], gaps ? gaps[i] : 0, &touches[i]);
+    rdli_find_touch_list(kind, count, motions, gaps, touches);
     return RDL_OK;
 }

@@ -1,6 +1,7 @@
 /* narrow/distance.c: closest points at rest with a certified enclosure of the distance; exact end tests. */
 #include "narrow/exact_pair.h"
 #include "narrow/filter.h"
+#include "narrow/stages.h"
 
 /* An enclosure narrower than this, relative to the distance, needs no exact arithmetic: two orders finer than any margin
  * that the response works with. */
@@ -157,21 +158,12 @@ bool rdli_end_keeps_floor(int kind, const rdl_motion *motion, double gap)
     return end_keeps(kind, motion, gap, &start, &end);
 }
 
-static bool is_quiet(int kind, const rdl_motion *motion, double gap)
+void rdli_examine_open(int kind, const rdl_motion *motion, double gap, double share, const double floor_distance[2],
+                       rdli_examined *examined)
 {
-    rdl_motion scaled;
-    int shift = rdli_scale_points((const double *)motion, 24, (double *)&scaled);
-    uint8_t stage;
-    return rdli_filter_quiet(kind, &scaled, shift ? ldexp(gap, shift) : gap, &stage);
-}
-
-void rdli_examine(int kind, const rdl_motion *motion, double gap, double share, const double floor_distance[2],
-                  rdli_examined *examined)
-{
-    *examined = (rdli_examined){.quiet = is_quiet(kind, motion, gap)};
-    if (examined->quiet)
-        return;
     rdli_closest start, end;
+    rdli_sized sized;
+    *examined = (rdli_examined){0};
     rdli_closest_points(kind, motion->start, &start);
     rdli_closest_points(kind, motion->end, &end);
     examined->start_lo = start.distance_lo;
@@ -184,6 +176,20 @@ void rdli_examine(int kind, const rdl_motion *motion, double gap, double share, 
         examined->below_end = !end_reaches(kind, motion, &end, examined->end_floor);
     else
         examined->below_end = !nothing_moves(motion) && !end_keeps(kind, motion, gap, &start, &end);
-    rdli_find_touch(kind, motion, examined->path_floor, &examined->touch);
+    rdli_sized_of(motion, &sized);
+    if (!rdli_screen_one(rdli_screen_choose(), kind, &sized, examined->path_floor, &examined->touch))
+        rdli_find_open_touch(kind, motion, &sized, examined->path_floor, &examined->touch);
     examined->reaches_path = examined->touch.touches;
+}
+
+void rdli_examine(int kind, const rdl_motion *motion, double gap, double share, const double floor_distance[2],
+                  rdli_examined *examined)
+{
+    rdl_touch touch;
+    rdli_sized sized;
+    rdli_sized_of(motion, &sized);
+    if (rdli_screen_one(rdli_screen_choose(), kind, &sized, gap, &touch))
+        *examined = (rdli_examined){.quiet = 1};
+    else
+        rdli_examine_open(kind, motion, gap, share, floor_distance, examined);
 }

@@ -114,14 +114,14 @@ static rdli_int four_steps(rdli_arena *arena, const levels *level, int i)
 /* Both ends of the segment stay at least the level away from the point. */
 static bool ends_keep(rdli_arena *arena, const rdli_point_segment *couple, rdli_int level)
 {
-    rdli_poly one = unity(arena), near = rdli_dot(arena, couple->w, couple->w);
+    rdli_poly one = unity(arena), near = rdli_dot_poly(arena, couple->w, couple->w);
     if (!at_least(arena, &near, level, &one))
         return false;
     rdli_int rest[2][3];
     for (int end = 0; end < 2; end++)
         for (int k = 0; k < 3; k++)
             rest[end][k] = rdli_int_sub(arena, couple->w[end][k], couple->u[end][k]);
-    rdli_poly far = rdli_dot(arena, (const rdli_int (*)[3])rest, (const rdli_int (*)[3])rest);
+    rdli_poly far = rdli_dot_poly(arena, (const rdli_int (*)[3])rest, (const rdli_int (*)[3])rest);
     return at_least(arena, &far, level, &one);
 }
 
@@ -130,7 +130,7 @@ static bool segment_keeps(rdli_arena *arena, const rdli_point_segment *couple, c
 {
     if (!ends_keep(arena, couple, level->free[i]))
         return false;
-    rdli_poly along = rdli_dot(arena, couple->w, couple->u), square = rdli_dot(arena, couple->u, couple->u);
+    rdli_poly along = rdli_dot_poly(arena, couple->w, couple->u), square = rdli_dot_poly(arena, couple->u, couple->u);
     rdli_poly beyond = rdli_poly_sub(arena, &square, &along);
     if (never_positive(&along) || never_positive(&beyond))
         return true;
@@ -207,7 +207,7 @@ static bool interval_keeps(rdli_arena *arena, const rdli_exact_pair *local, cons
     if (inside_keeps(arena, local, n, &square, level->free[0]))
         return true;
     rdli_int bound = four_steps(arena, level, 0);
-    rdli_poly one = unity(arena), u = rdli_dot(arena, local->u, local->u), v = rdli_dot(arena, local->v, local->v);
+    rdli_poly one = unity(arena), u = rdli_dot_poly(arena, local->u, local->u), v = rdli_dot_poly(arena, local->v, local->v);
     u = rdli_poly_mul(arena, &u, &one);
     v = rdli_poly_mul(arena, &v, &one);
     return (at_most(arena, &square, bound, &u) || at_most(arena, &square, bound, &v)) &&

@@ -92,7 +92,7 @@ rdli_poly rdli_cross_component(rdli_arena *arena, const rdli_int a[2][3], const 
     return q;
 }
 
-rdli_poly rdli_dot(rdli_arena *arena, const rdli_int a[2][3], const rdli_int b[2][3])
+rdli_poly rdli_dot_poly(rdli_arena *arena, const rdli_int a[2][3], const rdli_int b[2][3])
 {
     rdli_poly q = {.degree = 2};
     q.c[0] = sum_of_products(arena, a[0], b[0], 3);

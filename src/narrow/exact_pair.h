@@ -27,7 +27,7 @@ int rdli_point_segments(rdli_arena *arena, const rdli_exact_pair *pair, rdli_poi
 
 /* Quadratic component k of a x b, and a . b, for vectors linear in time. */
 rdli_poly rdli_cross_component(rdli_arena *arena, const rdli_int a[2][3], const rdli_int b[2][3], int k);
-rdli_poly rdli_dot(rdli_arena *arena, const rdli_int a[2][3], const rdli_int b[2][3]);
+rdli_poly rdli_dot_poly(rdli_arena *arena, const rdli_int a[2][3], const rdli_int b[2][3]);
 
 /* Squared distance at t = 0 or 1 as num / den in units of 2^(2 unit); den > 0. */
 typedef struct rdli_ratio {

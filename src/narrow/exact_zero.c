@@ -226,7 +226,7 @@ static bool on_segment(rdli_arena *arena, const instant *at, const rdli_point_se
     }
     if (vector_vanishes(arena, at, couple->u))
         return vector_vanishes(arena, at, couple->w);
-    rdli_poly along = rdli_dot(arena, couple->w, couple->u), square = rdli_dot(arena, couple->u, couple->u);
+    rdli_poly along = rdli_dot_poly(arena, couple->w, couple->u), square = rdli_dot_poly(arena, couple->u, couple->u);
     rdli_poly rest = rdli_poly_sub(arena, &square, &along);
     bool on = sign_at(arena, at, &along) >= 0 && sign_at(arena, at, &rest) >= 0;
     arena->used = mark;

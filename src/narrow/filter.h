@@ -3,6 +3,7 @@
 #ifndef RDLI_FILTER_H
 #define RDLI_FILTER_H
 
+#include "base/vector.h"
 #include "narrow/narrow.h"
 
 /* Difference vectors of a pair at rest (see exact_pair.h), each component rounded once. */
@@ -26,14 +27,12 @@ void rdli_nearest_points(int kind, const rdli_frame *frame, rdli_nearest *neares
 /* Not above the least value of d . e over the differences e of a vertex of the first feature less one of the second. */
 double rdli_least_along(int kind, const double x[4][3], const double d[3]);
 
-/* Certified: distance > gap over the whole motion, by the given direction. Ordinary sizes (rdli_scale_points). */
-bool rdli_direction_keeps(int kind, const rdl_motion *motion, const double d[3], double gap);
-/* Certified: f has no zero, by the signs of its Bernstein coefficients. Ordinary sizes. */
-bool rdli_cubic_keeps(int kind, const rdl_motion *motion);
-
-/* Certified: distance > gap over the whole motion, by a few promising directions; for gap 0 the cubic's signs too.
- * *stage tells which. */
-bool rdli_filter_quiet(int kind, const rdl_motion *motion, double gap, uint8_t *stage);
+/* Linear interpolation, every component rounded three times at most. */
+void rdli_frame_mix(const rdli_frame *a, const rdli_frame *b, double t, rdli_frame *mixed);
+/* Largest component. */
+double rdli_frame_size(const rdli_frame *frame);
+/* Least d . e over the control points of the frame; its rounding is at most 2^-47 size |d|. */
+double rdli_frame_least(int kind, const rdli_frame *frame, const double d[3]);
 
 /* A bound of the effect of underflow on any expression here, for ordinary sizes: far above 2^-1074 times the number of
  * operations times the largest factor, far below the rounding of anything of relevant size. */

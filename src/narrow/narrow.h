@@ -18,6 +18,9 @@ void rdli_closest_points(int kind, const double x[4][3], rdli_closest *closest);
 /* The stateless question of query.h for one pair; inputs are finite, gap >= 0. */
 void rdli_find_touch(int kind, const rdl_motion *motion, double gap, rdl_touch *touch);
 
+/* The same for many pairs, four lanes at a time; gaps may be NULL: all 0. Same bits as one by one. */
+void rdli_find_touch_list(int kind, size_t count, const rdl_motion motions[], const double gaps[], rdl_touch touches[]);
+
 /* Exact: is the distance at the end >= min(gap, distance at the start)? Decided by exact arithmetic where doubles
  * cannot. */
 bool rdli_end_keeps_floor(int kind, const rdl_motion *motion, double gap);
@@ -38,6 +41,12 @@ typedef struct rdli_examined {
  * is not the first of its step; below_end is then decided against min(gap, hi) with certified doubles. */
 void rdli_examine(int kind, const rdl_motion *motion, double gap, double share, const double floor_distance[2],
                   rdli_examined *examined);
+
+/* The cheap first look of rdli_examine at many pairs, four lanes at a time: quiet[i] = 1 is certified. A pair that it
+ * leaves open goes to rdli_examine_open, which is rdli_examine without that first look. */
+void rdli_screen_list(int kind, size_t count, const rdl_motion motions[], const double gaps[], uint8_t quiet[]);
+void rdli_examine_open(int kind, const rdl_motion *motion, double gap, double share, const double floor_distance[2],
+                       rdli_examined *examined);
 
 /* Exact predicate at rest: see rdl_edge_against_triangle. */
 int rdli_edge_against_triangle(const double edge[2][3], const double triangle[3][3]);

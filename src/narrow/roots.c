@@ -18,7 +18,6 @@ typedef struct quadratic {
 
 typedef struct scene {
     int kind, spans;
-    const rdl_motion *motion;
     rdli_frame at[2];
     quadratic n[3];
     double f[4], bound; /* the cubic, certain to the bound also after restriction */
@@ -102,17 +101,6 @@ static void make_cubic(scene *s)
     s->bound = 64 * unit * size + RDLI_UNDERFLOW;
 }
 
-static rdli_frame frame_at(const scene *s, double t)
-{
-    rdli_frame f;
-    for (int k = 0; k < 3; k++) {
-        f.w[k] = mix(s->at[0].w[k], s->at[1].w[k], t);
-        f.u[k] = mix(s->at[0].u[k], s->at[1].u[k], t);
-        f.v[k] = mix(s->at[0].v[k], s->at[1].v[k], t);
-    }
-    return f;
-}
-
 enum inside { INSIDE_NO, INSIDE_MAYBE, INSIDE_YES };
 
 /* Where the meeting point of the coplanar pair lies during [a, b], from one projection in which the normal keeps its
@@ -161,28 +149,16 @@ static enum inside parameters(const scene *s, double a, double b)
     return certain ? INSIDE_YES : INSIDE_MAYBE;
 }
 
-static double least_projection(int kind, const rdli_frame *f, const double d[3])
-{
-    double w = 0, u = 0, v = 0;
-    for (int k = 0; k < 3; k++) {
-        w += f->w[k] * d[k];
-        u += f->u[k] * d[k];
-        v += f->v[k] * d[k];
-    }
-    if (kind == RDL_POINT_TRIANGLE) {
-        double a = w - (u > v ? u : v);
-        return a < w ? a : w;
-    }
-    return -w - (v > 0 ? v : 0) + (u < 0 ? u : 0);
-}
-
 static bool separated(const scene *s, double a, double b)
 {
-    rdli_frame left = frame_at(s, a), right = frame_at(s, b), middle = frame_at(s, 0.5 * (a + b));
+    rdli_frame left, right, middle;
     rdli_nearest nearest;
+    rdli_frame_mix(&s->at[0], &s->at[1], a, &left);
+    rdli_frame_mix(&s->at[0], &s->at[1], b, &right);
+    rdli_frame_mix(&left, &right, 0.5, &middle);
     rdli_nearest_points(s->kind, &middle, &nearest);
     const double *d = nearest.d;
-    double least = least_projection(s->kind, &left, d), other = least_projection(s->kind, &right, d);
+    double least = rdli_frame_least(s->kind, &left, d), other = rdli_frame_least(s->kind, &right, d);
     least = other < least ? other : least;
     return least > s->pad * (fabs(d[0]) + fabs(d[1]) + fabs(d[2])) + RDLI_UNDERFLOW;
 }
@@ -281,17 +257,10 @@ static int settle(scene *s, double root, double free, double *lo, double *hi)
     return separated(s, *lo, *hi) ? 0 : -1;
 }
 
-static scene scene_of(int kind, const rdl_motion *motion)
+static scene scene_of(int kind, const rdli_frame *start, const rdli_frame *end)
 {
-    scene s = {.kind = kind, .motion = motion,
-        .at = {rdli_frame_of(kind, motion->start), rdli_frame_of(kind, motion->end)}};
-    double largest = 0;
-    for (int end = 0; end < 2; end++)
-        for (int k = 0; k < 3; k++) {
-            const double parts[3] = {fabs(s.at[end].w[k]), fabs(s.at[end].u[k]), fabs(s.at[end].v[k])};
-            for (int i = 0; i < 3; i++)
-                largest = parts[i] > largest ? parts[i] : largest;
-        }
+    scene s = {.kind = kind, .at = {*start, *end}};
+    double a = rdli_frame_size(start), b = rdli_frame_size(end), largest = a > b ? a : b;
     for (int k = 0; k < 3; k++)
         quadratic_of(s.at[0].u, s.at[1].u, s.at[0].v, s.at[1].v, k, &s.n[k]);
     make_cubic(&s);
@@ -299,12 +268,17 @@ static scene scene_of(int kind, const rdl_motion *motion)
     return s;
 }
 
-bool rdli_roots_touch(int kind, const rdl_motion *motion, rdl_touch *touch)
+bool rdli_roots_touch(int kind, const rdli_frame *start, const rdli_frame *end, rdl_touch *touch)
 {
-    scene s = scene_of(kind, motion);
+    scene s = scene_of(kind, start, end);
     double roots[MOST_ROOTS], free = 0;
     int count = guess_roots(s.f, roots), depth = 0;
     *touch = (rdl_touch){.time_lo = 1, .time_hi = 1, .stage = RDL_STAGE_ROOTS, .order = 3};
+    if (separated(&s, 0, 1)) {
+        touch->stage = RDL_STAGE_DIRECTION;
+        touch->order = 1;
+        return true;
+    }
     for (int i = 0; i < count; i++) {
         double lo, hi;
         int meets = settle(&s, roots[i], free, &lo, &hi);

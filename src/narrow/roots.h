@@ -5,7 +5,7 @@
 
 #include "narrow/filter.h"
 
-/* For ordinary sizes (rdli_scale_points). False where doubles cannot decide: touch is then untouched. */
-bool rdli_roots_touch(int kind, const rdl_motion *motion, rdl_touch *touch);
+/* For frames of ordinary size (rdli_scale_points). False where doubles cannot decide: touch is then untouched. */
+bool rdli_roots_touch(int kind, const rdli_frame *start, const rdli_frame *end, rdl_touch *touch);
 
 #endif

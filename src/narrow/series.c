@@ -20,12 +20,6 @@ typedef struct scene {
     int order, spans;
 } scene;
 
-static double dot(const double a[3], const double b[3])
-{
-    return a[0] * b[0] + a[1] * b[1] + a[2] * b[2];
-}
-
-
 static void combine(const rdli_frame *a, double s, const rdli_frame *b, rdli_frame *c)
 {
     for (int k = 0; k < 3; k++) {
@@ -44,22 +38,11 @@ static rdli_frame frame_at(const scene *s, double t)
     return f;
 }
 
-static double size_of(const rdli_frame *f)
+static scene scene_of(int kind, const rdli_frame *start, const rdli_frame *end, double gap)
 {
-    double largest = 0;
-    for (int k = 0; k < 3; k++) {
-        largest = fabs(f->w[k]) > largest ? fabs(f->w[k]) : largest;
-        largest = fabs(f->u[k]) > largest ? fabs(f->u[k]) : largest;
-        largest = fabs(f->v[k]) > largest ? fabs(f->v[k]) : largest;
-    }
-    return largest;
-}
-
-static scene scene_of(int kind, const rdl_motion *motion, double gap)
-{
-    scene s = {.kind = kind, .start = rdli_frame_of(kind, motion->start), .end = rdli_frame_of(kind, motion->end), .gap = gap};
+    scene s = {.kind = kind, .start = *start, .end = *end, .gap = gap, .order = 1};
     combine(&s.end, -1, &s.start, &s.change);
-    double a = size_of(&s.start), b = size_of(&s.end);
+    double a = rdli_frame_size(start), b = rdli_frame_size(end);
     s.pad = 6 * 0x1p-48 * (a > b ? a : b) + RDLI_UNDERFLOW;
     s.margin = rdli_margin_of((gap + s.pad) * (1 + unit));
     return s;
@@ -70,7 +53,7 @@ static double distance_at(const scene *s, double t, rdli_nearest *nearest)
 {
     rdli_frame f = frame_at(s, t);
     rdli_nearest_points(s->kind, &f, nearest);
-    return sqrt(dot(nearest->d, nearest->d));
+    return rdli_length(nearest->d);
 }
 
 /* Certified: the distance at t is at most the gap. */
@@ -79,23 +62,10 @@ static bool is_touch(const scene *s, double distance)
     return (distance + s->pad) * (1 + 8 * unit) <= s->gap;
 }
 
-/* Least projection of the difference vectors of a frame on d, and the largest size of a term. */
-static double least_projection(int kind, const rdli_frame *f, const double d[3])
-{
-    double w = dot(f->w, d), u = dot(f->u, d), v = dot(f->v, d), a, b;
-    if (kind == RDL_POINT_TRIANGLE) {
-        a = w - (u > v ? u : v);
-        return a < w ? a : w;
-    }
-    a = -w - (v > 0 ? v : 0);
-    b = u < 0 ? u : 0;
-    return a + b;
-}
-
 /* The length that the hull of the span certifies along d (unit to rounding), rounding not yet taken off. */
 static double hull_length(const scene *s, const rdli_span *span, const double d[3], double length)
 {
-    double a = least_projection(s->kind, &span->at[0], d), b = least_projection(s->kind, &span->at[1], d);
+    double a = rdli_frame_least(s->kind, &span->at[0], d), b = rdli_frame_least(s->kind, &span->at[1], d);
     return (a < b ? a : b) / length;
 }
 
@@ -165,33 +135,39 @@ static double aim(const scene *s, double free, double t, double distance, double
     return target > free ? target : free;
 }
 
-bool rdli_series_touch(int kind, const rdl_motion *motion, double gap, rdl_touch *touch)
+bool rdli_series_touch(int kind, const rdli_frame *start, const rdli_frame *end, double gap, rdl_touch *touch)
 {
-    scene s = scene_of(kind, motion, gap);
-    rdli_nearest nearest;
-    double distance = distance_at(&s, 0, &nearest), ends[DEEPEST], free = 0, hi = 2;
-    if (is_touch(&s, distance)) {
-        *touch = (rdl_touch){.touches = 1, .stage = RDL_STAGE_ENDS};
-        return true;
+    scene s = scene_of(kind, start, end, gap);
+    double middle, ends[DEEPEST], free = 0, hi = 2;
+    enum outcome outcome = look(&s, 0, 1, &middle);
+    if (outcome != KEPT) {
+        rdli_nearest nearest;
+        double distance = distance_at(&s, 0, &nearest);
+        if (is_touch(&s, distance)) {
+            *touch = (rdl_touch){.touches = 1, .stage = RDL_STAGE_ENDS, .order = 1};
+            return true;
+        }
+        if (distance <= s.gap + 4 * s.pad) /* near enough to the gap for exact arithmetic to tell */
+            return false;
     }
-    if (distance <= s.gap + 4 * s.pad) /* near enough to the gap for exact arithmetic to tell */
-        return false;
     int top = 0, depth = 0;
     ends[0] = 1;
-    while (top >= 0) {
-        double middle, end = ends[top];
-        enum outcome outcome = look(&s, free, end, &middle);
+    for (;; outcome = look(&s, free, ends[top], &middle)) {
+        double right = ends[top];
         if (outcome == KEPT) {
-            free = end;
-            top--;
+            free = right;
+            if (--top < 0)
+                break;
             continue;
         }
         if (s.spans > MOST_SPANS || top + 1 >= DEEPEST)
             return false;
-        double half = 0.5 * (free + end);
+        double half = 0.5 * (free + right);
         if (outcome == TOUCHED) {
             ends[0] = aim(&s, free, half, middle, &hi);
-            top = ends[0] > free ? 0 : -1;
+            top = 0;
+            if (ends[0] <= free)
+                break;
             continue;
         }
         ends[++top] = half;
@@ -200,7 +176,8 @@ bool rdli_series_touch(int kind, const rdl_motion *motion, double gap, rdl_touch
     bool touches = hi <= 1;
     if (touches && hi - free > 1e-6)
         return false;
+    bool hull = !touches && s.spans == 1 && s.order == 1;
     *touch = (rdl_touch){.time_lo = touches ? free : 1, .time_hi = touches ? hi : 1, .touches = touches,
-        .stage = RDL_STAGE_SERIES, .order = (uint8_t)s.order, .depth = (uint8_t)depth};
+        .stage = hull ? RDL_STAGE_DIRECTION : RDL_STAGE_SERIES, .order = (uint8_t)s.order, .depth = (uint8_t)depth};
     return true;
 }

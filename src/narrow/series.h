@@ -19,7 +19,8 @@ rdli_margin rdli_margin_of(double length);
  * rdli_margin_of(length). *order: the highest degree that was needed. */
 bool rdli_span_keeps(int kind, const rdli_span *span, const rdli_margin *margin, int *order);
 
-/* Gap > 0, for ordinary sizes (rdli_scale_points). False where doubles cannot decide: touch is then untouched. */
-bool rdli_series_touch(int kind, const rdl_motion *motion, double gap, rdl_touch *touch);
+/* Gap > 0, for frames of ordinary size (rdli_scale_points). False where doubles cannot decide: touch is then untouched. */
+bool rdli_series_touch(int kind, const rdli_frame *start, const rdli_frame *end, double gap,
+                       rdl_touch *touch);
 
 #endif

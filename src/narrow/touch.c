@@ -2,6 +2,7 @@
 #include "narrow/exact_pair.h"
 #include "narrow/roots.h"
 #include "narrow/series.h"
+#include "narrow/stages.h"
 
 static bool exact_touch(mp_limb_t *limbs, size_t room, int kind, const rdl_motion *motion, double gap, rdl_touch *touch)
 {
@@ -30,19 +31,93 @@ static __attribute__((noinline)) void certain_touch(int kind, const rdl_motion *
         wide_touch(kind, motion, gap, touch);
 }
 
-void rdli_find_touch(int kind, const rdl_motion *motion, double gap, rdl_touch *touch)
+void rdli_sized_of(const rdl_motion *motion, rdli_sized *sized)
 {
-    rdl_motion scaled;
-    int shift = rdli_scale_points((const double *)motion, 24, (double *)&scaled);
-    double scaled_gap = shift ? ldexp(gap, shift) : gap;
-    uint8_t stage;
-    if (rdli_filter_quiet(kind, &scaled, scaled_gap, &stage)) {
-        *touch = (rdl_touch){.time_lo = 1, .time_hi = 1, .stage = stage};
+    sized->shift = rdli_scale_points((const double *)motion, 24, (double *)&sized->motion);
+}
+
+static double sized_gap(const rdli_sized *sized, double gap)
+{
+    return sized->shift ? ldexp(gap, sized->shift) : gap;
+}
+
+void rdli_find_open_touch(int kind, const rdl_motion *motion, const rdli_sized *sized, double gap, rdl_touch *touch)
+{
+    double own_gap = sized_gap(sized, gap);
+    rdli_frame start = rdli_frame_of(kind, sized->motion.start), end = rdli_frame_of(kind, sized->motion.end);
+    if (gap > 0 && isnormal(own_gap) && rdli_series_touch(kind, &start, &end, own_gap, touch))
         return;
-    }
-    if (gap > 0 && isnormal(scaled_gap) && rdli_series_touch(kind, &scaled, scaled_gap, touch))
-        return;
-    if (gap == 0 && rdli_roots_touch(kind, &scaled, touch))
+    if (gap == 0 && rdli_roots_touch(kind, &start, &end, touch))
         return;
     certain_touch(kind, motion, gap, touch);
+}
+
+/* The answer of a screen's verdict; false where the pair is open. */
+static bool settled(uint8_t verdict, rdl_touch *touch)
+{
+    if (verdict == RDLI_SCREEN_OPEN)
+        return false;
+    bool cubic = verdict == RDLI_SCREEN_CUBIC;
+    *touch = (rdl_touch){.time_lo = 1, .time_hi = 1, .order = cubic ? 3 : 1,
+        .stage = cubic ? RDL_STAGE_CUBIC : RDL_STAGE_DIRECTION};
+    return true;
+}
+
+bool rdli_screen_one(rdli_screen *screen, int kind, const rdli_sized *sized, double gap, rdl_touch *touch)
+{
+    rdli_lanes lanes;
+    uint8_t verdict[RDLI_LANES];
+    rdli_lanes_load(&lanes, 0, &sized->motion, sized_gap(sized, gap));
+    rdli_lanes_repeat(&lanes, 1);
+    screen(kind, &lanes, verdict);
+    return settled(verdict[0], touch);
+}
+
+void rdli_find_touch(int kind, const rdl_motion *motion, double gap, rdl_touch *touch)
+{
+    rdli_sized sized;
+    rdli_sized_of(motion, &sized);
+    if (!rdli_screen_one(rdli_screen_choose(), kind, &sized, gap, touch))
+        rdli_find_open_touch(kind, motion, &sized, gap, touch);
+}
+
+void rdli_find_touch_list(int kind, size_t count, const rdl_motion motions[], const double gaps[], rdl_touch touches[])
+{
+    rdli_screen *screen = rdli_screen_choose();
+    for (size_t first = 0; first < count; first += RDLI_LANES) {
+        int here = count - first < RDLI_LANES ? (int)(count - first) : RDLI_LANES;
+        rdli_sized sized[RDLI_LANES];
+        rdli_lanes lanes;
+        uint8_t verdict[RDLI_LANES];
+        for (int i = 0; i < here; i++) {
+            rdli_sized_of(&motions[first + (size_t)i], &sized[i]);
+            rdli_lanes_load(&lanes, i, &sized[i].motion, sized_gap(&sized[i], gaps ? gaps[first + (size_t)i] : 0));
+        }
+        rdli_lanes_repeat(&lanes, here);
+        screen(kind, &lanes, verdict);
+        for (int i = 0; i < here; i++) {
+            size_t at = first + (size_t)i;
+            if (!settled(verdict[i], &touches[at]))
+                rdli_find_open_touch(kind, &motions[at], &sized[i], gaps ? gaps[at] : 0, &touches[at]);
+        }
+    }
+}
+
+void rdli_screen_list(int kind, size_t count, const rdl_motion motions[], const double gaps[], uint8_t quiet[])
+{
+    rdli_screen *screen = rdli_screen_choose();
+    for (size_t first = 0; first < count; first += RDLI_LANES) {
+        int here = count - first < RDLI_LANES ? (int)(count - first) : RDLI_LANES;
+        rdli_lanes lanes;
+        uint8_t verdict[RDLI_LANES];
+        for (int i = 0; i < here; i++) {
+            rdli_sized sized;
+            rdli_sized_of(&motions[first + (size_t)i], &sized);
+            rdli_lanes_load(&lanes, i, &sized.motion, sized_gap(&sized, gaps[first + (size_t)i]));
+        }
+        rdli_lanes_repeat(&lanes, here);
+        screen(kind, &lanes, verdict);
+        for (int i = 0; i < here; i++)
+            quiet[first + (size_t)i] = verdict[i] != RDLI_SCREEN_OPEN;
+    }
 }

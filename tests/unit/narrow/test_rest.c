@@ -11,7 +11,7 @@
 typedef struct closest_case {
     int kind;
     double x[4][3], square, weight[4];
-    bool parallel;
+    bool parallel; /* the closest points are not unique */
 } closest_case;
 
 static const closest_case closest_cases[] = {
@@ -23,7 +23,7 @@ static const closest_case closest_cases[] = {
     {0, {{0.25, 0.25, 0.5}, {0, 0, 0}, {1, 0, 0}, {0, 1, 0}}, 0.25, {1, -0.5, -0.25, -0.25}, false},
     {0, {{1, 1, 0}, {0, 0, 0}, {1, 0, 0}, {0, 1, 0}}, 0.5, {1, 0, -0.5, -0.5}, false},
     {0, {{3, -1, 2}, {0, 0, 0}, {1, 0, 0}, {0, 1, 0}}, 9, {1, 0, -1, 0}, false},
-    {0, {{1, 2, 0}, {0, 0, 0}, {1, 0, 0}, {3, 0, 0}}, 4, {1, 0, -1, 0}, false},
+    {0, {{1, 2, 0}, {0, 0, 0}, {1, 0, 0}, {3, 0, 0}}, 4, {1, 0, -1, 0}, true},
     {0, {{1e-200, 0, 1}, {0, 0, 0}, {0, 0, 0}, {0, 0, 0}}, 1, {1, -1, 0, 0}, false},
 };
 
