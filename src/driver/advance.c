@@ -40,6 +40,13 @@ static void settle_zone(rdl_engine *engine, rdli_zone *zone)
         contacts[order[i]].settled = 1;
 }
 
+/* More energy than the host proposed, beyond rounding: never delivered by a zone that no driven vertex feeds. */
+static bool gains_energy(rdl_engine *engine, const rdli_piece *piece, rdli_zone *zone)
+{
+    rdli_zone_energies(&engine->response, piece, zone);
+    return !zone->driven && zone->energy_after > zone->energy_before * (1.0 + 1e-12);
+}
+
 /* What a clean pass leaves of the lead over the floor (contacts.c). Planes taken at a certified answer err by the square of
  * the next move over the floor, so that the lead may shrink as fast. */
 static double shorter_lead(double lead, double floor)
@@ -48,7 +55,7 @@ static double shorter_lead(double lead, double floor)
 }
 
 /* The zone is certified as it stands: keep it, and look whether a closer answer is worth another pass. */
-static bool wants_refinement(rdl_engine *engine, const rdli_piece *piece, const rdli_zone *zone)
+static bool wants_refinement(rdl_engine *engine, const rdli_piece *piece, rdli_zone *zone, double share)
 {
     const uint32_t *order = (const uint32_t *)engine->response.zone_contacts.data + zone->contact_first;
     const uint32_t *vertices = (const uint32_t *)engine->response.zone_vertices.data + zone->vertex_first;
@@ -65,7 +72,13 @@ static bool wants_refinement(rdl_engine *engine, const rdli_piece *piece, const 
         least = contact->clean < least ? contact->clean : least;
         frozen = frozen || contact->frozen;
     }
-    return !frozen && least <= REFINEMENTS;
+    if (gains_energy(engine, piece, zone) && zone->level < RDL_LEVEL_RIGID) {
+        zone->level++;
+        mark_zone(engine, zone, zone->level);
+        return true;
+    }
+    /* A zone that took long to certify is not put at risk again for a closer answer. */
+    return !frozen && least <= REFINEMENTS && share < fence_share;
 }
 
 /* A zone that was certified and broke in refinement goes back to what was certified, once. */
@@ -94,12 +107,6 @@ static bool restore_zone(rdl_engine *engine, const rdli_piece *piece, const rdli
     return true;
 }
 
-/* More energy than the host proposed, beyond rounding: never delivered by a zone that no driven vertex feeds. */
-static bool gains_energy(const rdli_zone *zone)
-{
-    return !zone->driven && zone->energy_after > zone->energy_before * (1.0 + 1e-12);
-}
-
 static uint8_t next_level(const rdli_piece *piece, const rdli_zone *zone, double share)
 {
     uint8_t level = zone->level;
@@ -122,8 +129,7 @@ static bool choose_levels(rdl_engine *engine, const rdli_piece *piece, double sh
         if (zone->settled)
             continue;
         if (!zone->violated) {
-            /* A zone that took long to certify is not put at risk again for a closer answer. */
-            if (!wants_refinement(engine, piece, zone) || share >= fence_share)
+            if (!wants_refinement(engine, piece, zone, share))
                 settle_zone(engine, zone);
             continue;
         }
@@ -147,8 +153,7 @@ static bool react(rdl_engine *engine, const rdli_piece *piece)
     bool hopeless = false;
     for (uint32_t z = 0; z < engine->response.zone_count; z++) {
         rdli_zone *zone = &zones[z];
-        bool gain = zone->settled && gains_energy(zone);
-        if (!zone->infeasible && !zone->exhausted && !gain)
+        if (!zone->infeasible && !zone->exhausted)
             continue;
         if (zone->driven && !piece->shortest)
             hopeless = hopeless || zone->infeasible || zone->exhausted;

@@ -24,6 +24,29 @@ static void positions_at(const rdli_piece *piece, const uint32_t vertex[4], doub
         }
 }
 
+/* A vertex that holds less than 2^-12 of a contact point could only be moved absurdly far by the contact: its share goes to
+ * the heaviest vertex of the same feature. Any other point of a feature is as good a place for a plane. */
+static void drop_small_shares(uint32_t kind, double weight[4])
+{
+    int split = kind == RDL_POINT_TRIANGLE ? 1 : 2;
+    for (int k = 0; k < 4; k++) {
+        int first = k < split ? 0 : split, end = k < split ? split : 4, heaviest = first;
+        for (int i = first; i < end; i++)
+            heaviest = fabs(weight[i]) > fabs(weight[heaviest]) ? i : heaviest;
+        if (weight[k] != 0.0 && fabs(weight[k]) < 0x1p-12 && heaviest != k) {
+            weight[heaviest] += weight[k];
+            weight[k] = 0.0;
+        }
+    }
+}
+
+static void direction_of(const rdli_plane *plane, const double x[4][3], double d[3])
+{
+    memset(d, 0, 3 * sizeof(double));
+    for (int k = 0; k < 4; k++)
+        rdli_add_scaled(d, plane->weight[k], x[k]);
+}
+
 static bool closest_at(const rdli_piece *piece, const rdli_contact *contact, double time, rdli_plane *plane)
 {
     double x[4][3];
@@ -35,6 +58,14 @@ static bool closest_at(const rdli_piece *piece, const rdli_contact *contact, dou
     memset(plane, 0, sizeof *plane);
     memcpy(plane->normal, closest.normal, sizeof plane->normal);
     memcpy(plane->weight, closest.weight, sizeof plane->weight);
+    drop_small_shares(contact->kind, plane->weight);
+    if (memcmp(plane->weight, closest.weight, sizeof plane->weight) != 0) {
+        double d[3];
+        direction_of(plane, (const double (*)[3])x, d);
+        double length = rdli_length(d);
+        for (int k = 0; length > 0.0 && k < 3; k++)
+            plane->normal[k] = d[k] / length;
+    }
     return true;
 }
 
@@ -107,17 +138,21 @@ static void start_contact(const rdli_piece *piece, const rdli_hit *hit, rdli_con
 
 /* A contact that was solved and is violated again lost to curvature. Aiming ahead by some multiple of the loss, and of the
  * last lead where that was not enough, certifies the zone in the next pass or two; clean passes then take the lead back
- * (advance.c). A lead below a thousandth of the floor would be lost among the curvature of the neighbours. */
-static const double lead_least = 0x1p-10, lead_most = 0.5;
+ * (advance.c). A lead far below the depth at which the contact began would be lost among the curvature of the neighbours. */
+static const double lead_least = 0x1p-8, lead_most = 0.5;
 
-static void aim_ahead(const rdli_piece *piece, const rdli_plane *plane, rdli_contact *contact)
+static void aim_ahead(const rdli_piece *piece, const rdli_plane *plane, bool fresh, rdli_contact *contact)
 {
     double value = 0.0;
     for (int i = 0; i < 4; i++)
         value += plane->weight[i] * rdli_dot(plane->normal, piece->trial[contact->vertex[i]]);
     double lost = contact->floor - value;
+    if (fresh) {
+        contact->depth = lost;
+        return;
+    }
     double lead = 4.0 * fmax(lost, contact->ahead);
-    lead = fmax(lead, lead_least * contact->floor);
+    lead = fmax(lead, lead_least * contact->depth);
     contact->ahead = fmax(contact->ahead, fmin(lead, lead_most * contact->floor));
 }
 
@@ -134,8 +169,7 @@ static void strike(const rdli_piece *piece, const rdli_hit *hit, bool fresh, rdl
     rdli_plane plane;
     if (!closest_at(piece, contact, contact->time, &plane))
         return;
-    if (!fresh)
-        aim_ahead(piece, &plane, contact);
+    aim_ahead(piece, &plane, fresh, contact);
     if (hit->reaches_path) {
         contact->blocks = (uint8_t)(contact->blocks + (contact->blocks < UINT8_MAX));
         plane.kept = contact->blocks > 1;

@@ -49,8 +49,9 @@ static double worst_correction(const rdl_engine *engine, const rdli_piece *piece
     return worst;
 }
 
-static void book_zone(rdl_engine *engine, const rdli_piece *piece, const rdli_zone *zone, uint32_t loaded, double length)
+static void book_zone(rdl_engine *engine, const rdli_piece *piece, rdli_zone *zone, uint32_t loaded, double length)
 {
+    rdli_zone_energies(&engine->response, piece, zone);
     rdl_zone *row = (rdl_zone *)engine->out_zones.data + engine->out_zone_count++;
     memset(row, 0, sizeof *row);
     row->vertex_count = zone->vertex_count;
@@ -71,7 +72,7 @@ static void book_zone(rdl_engine *engine, const rdli_piece *piece, const rdli_zo
 
 static void book_zones(rdl_engine *engine, const rdli_piece *piece, double begun, double length)
 {
-    const rdli_zone *zones = engine->response.zones.data;
+    rdli_zone *zones = engine->response.zones.data;
     const uint32_t *order = engine->response.zone_contacts.data;
     const rdli_contact *contacts = engine->contacts.data;
     const double *impulse = engine->impulse.data;

@@ -42,6 +42,10 @@ rdl_status rdli_zones_gather(rdli_response *response, const rdli_piece *piece, r
  * contacts. */
 rdl_status rdli_zones_solve(rdli_response *response, const rdli_piece *piece, rdli_contact *contacts, uint8_t *awake);
 
+/* Kinetic energies of the zone as the displacements of the piece tell them, kg m^2: wanted and delivered; without driven
+ * vertices in the frame of the zone's centre of mass. */
+void rdli_zone_energies(const rdli_response *response, const rdli_piece *piece, rdli_zone *zone);
+
 /* Makes room for row_total rows and vertex_total vertices. */
 rdl_status rdli_response_reserve(rdli_response *response);
 

@@ -44,21 +44,23 @@ static double rounding_allowance(const rdli_piece *piece, const rdli_contact *co
     return 2.0 * spread * (1.25 * largest) * rdli_half_unit(piece->format);
 }
 
-static double aim_of(const rdli_piece *piece, const rdli_contact *contact, const double normal[3])
+/* Where a row must end at least: the floor, what rounding may take of it, and the lead over curvature. Fixed directions
+ * certify the whole piece: no curvature to be ahead of. */
+static double least_end(const rdli_piece *piece, const rdli_contact *contact, const double normal[3], bool fenced)
 {
     /* The rounding of our own sums is a few units of the double format; it matters where the host's is double too. */
     double own = piece->format == RDL_FLOAT64 ? 4.0 : 1.0;
-    return contact->floor * (1.0 + piece->aim_margin) + contact->ahead + own * rounding_allowance(piece, contact, normal);
+    return contact->floor + (fenced ? 0.0 : contact->ahead) + own * rounding_allowance(piece, contact, normal);
 }
 
 static void set_row(rdli_row *row, const job *j, const rdli_contact *contact, const double normal[3],
-                    const double weight[4])
+                    const double weight[4], bool fenced)
 {
     const rdli_piece *piece = j->piece;
     const uint32_t *local = j->response->local.data;
     memset(row, 0, sizeof *row);
     rdli_copy(normal, row->normal);
-    row->bound = aim_of(piece, contact, normal);
+    row->bound = least_end(piece, contact, normal, fenced);
     for (int k = 0; k < 4; k++) {
         uint32_t v = contact->vertex[k];
         if (weight[k] == 0.0)
@@ -70,14 +72,14 @@ static void set_row(rdli_row *row, const job *j, const rdli_contact *contact, co
             row->vertex[k] = local[v];
         }
     }
-    row->tolerance = 0.25 * piece->aim_margin * contact->floor;
+    row->tolerance = piece->aim_margin * contact->floor; /* the margin, for now: see set_tolerances */
 }
 
 static void fill_rows(const job *j, const rdli_contact *contact, bool fenced, rdli_row *rows, double *loads)
 {
     if (!fenced) {
         for (uint8_t i = 0; i < contact->plane_count; i++) {
-            set_row(&rows[i], j, contact, contact->plane[i].normal, contact->plane[i].weight);
+            set_row(&rows[i], j, contact, contact->plane[i].normal, contact->plane[i].weight, false);
             loads[i] = contact->plane[i].load;
         }
         return;
@@ -86,7 +88,7 @@ static void fill_rows(const job *j, const rdli_contact *contact, bool fenced, rd
         double weight[4] = { 0.0, 0.0, 0.0, 0.0 };
         weight[differences[contact->kind][d][0]] = 1.0;
         weight[differences[contact->kind][d][1]] = -1.0;
-        set_row(&rows[d], j, contact, contact->fence, weight);
+        set_row(&rows[d], j, contact, contact->fence, weight, true);
         loads[d] = contact->fence_load[d];
     }
 }
@@ -102,11 +104,14 @@ static void keep_loads(rdli_contact *contact, bool fenced, const double *loads)
         contact->fence_load[d] = loads[d];
 }
 
+/* Among the rows in which something can move. */
 static double worst_violation(const rdli_problem *problem, const double (*x)[3])
 {
     double worst = 0.0;
     for (size_t r = 0; r < problem->row_count; r++) {
         const rdli_row *row = &problem->rows[r];
+        if (row->weight[0] == 0.0 && row->weight[1] == 0.0 && row->weight[2] == 0.0 && row->weight[3] == 0.0)
+            continue;
         double value = -row->bound;
         for (int k = 0; k < 4; k++)
             value += row->weight[k] * rdli_dot(row->normal, x[row->vertex[k]]);
@@ -115,8 +120,10 @@ static double worst_violation(const rdli_problem *problem, const double (*x)[3])
     return worst;
 }
 
-/* How exactly the half spaces must be met. While the zone is violated, planes will be taken anew: a fiftieth of the present
- * violation is enough, so that early passes are cheap and late ones exact. A clean zone is solved to a fraction of a
+/* How far above its least end a row aims, and how exactly it must be met. The margin only has to absorb what the solve
+ * leaves: the setting's share of the floor, but no more than half of the zone's worst violation, so that violations by a
+ * rounding do not blow up a whole sheet. While the zone is violated, planes will be taken anew: a fiftieth of the present
+ * violation is exact enough, so that early passes are cheap and late ones exact. A clean zone is solved to a fraction of a
  * millionth of its correction, so that the answer is the nearest one to the promised 1e-6. Never below what the positions
  * can resolve. */
 static void set_tolerances(const job *j, const rdli_zone *zone, rdli_problem *problem)
@@ -128,38 +135,50 @@ static void set_tolerances(const job *j, const rdli_zone *zone, rdli_problem *pr
         for (int k = 0; k < 3; k++)
             largest = fmax(largest, fabs(problem->target[i][k]));
     }
-    double fine = 2e-8 * correction;
+    double resolved = largest * 0x1p-50;
     double coarse = zone->violated ? 0.02 * worst_violation(problem, (const double (*)[3])problem->solution) : 0.0;
     for (size_t r = 0; r < problem->row_count; r++) {
-        double *tolerance = &problem->rows[r].tolerance;
-        *tolerance = fmax(fmax(fmin(*tolerance, fine), coarse), largest * 0x1p-48);
+        double margin = fmin(problem->rows[r].tolerance, 0.5 * correction) + 2.0 * resolved;
+        problem->rows[r].bound += margin;
+        problem->rows[r].tolerance = fmax(fmin(0.5 * margin, fmax(2e-8 * correction, coarse)), resolved);
     }
 }
 
-/* Kinetic energies as the squared displacements tell them, in the frame of the zone's centre of mass. */
 static void account(const job *j, rdli_zone *zone, const double (*solution)[3])
 {
     const rdli_piece *piece = j->piece;
     const uint32_t *vertices = (const uint32_t *)j->response->zone_vertices.data + zone->vertex_first;
-    double sum[3] = { 0.0, 0.0, 0.0 }, total = 0.0, all = 0.0, moved_sum[3] = { 0.0, 0.0, 0.0 };
-    double meant_sum[3] = { 0.0, 0.0, 0.0 }, after = 0.0, before = 0.0;
+    double sum[3] = { 0.0, 0.0, 0.0 }, total = 0.0;
     for (uint32_t i = 0; i < zone->vertex_count; i++) {
         uint32_t v = vertices[i];
-        double moved[3], meant[3], pushed[3], mass = piece->mass[v];
-        rdli_subtract(solution[i], piece->start[v], moved);
-        rdli_subtract(piece->target[v], piece->start[v], meant);
+        double pushed[3], mass = piece->mass[v];
         rdli_subtract(solution[i], piece->target[v], pushed);
         rdli_add_scaled(sum, mass, pushed);
+        total += mass * rdli_length(pushed);
+    }
+    zone->momentum_error = total > 0.0 ? rdli_length(sum) / total : 0.0;
+}
+
+void rdli_zone_energies(const rdli_response *response, const rdli_piece *piece, rdli_zone *zone)
+{
+    const uint32_t *vertices = (const uint32_t *)response->zone_vertices.data + zone->vertex_first;
+    double all = 0.0, moved_sum[3] = { 0.0, 0.0, 0.0 }, meant_sum[3] = { 0.0, 0.0, 0.0 }, after = 0.0, before = 0.0;
+    for (uint32_t i = 0; i < zone->vertex_count; i++) {
+        uint32_t v = vertices[i];
+        double moved[3], meant[3], mass = piece->mass[v];
+        rdli_subtract(piece->trial[v], piece->start[v], moved);
+        rdli_subtract(piece->target[v], piece->start[v], meant);
         rdli_add_scaled(moved_sum, mass, moved);
         rdli_add_scaled(meant_sum, mass, meant);
-        total += mass * rdli_length(pushed);
         all += mass;
         after += mass * rdli_dot(moved, moved);
         before += mass * rdli_dot(meant, meant);
     }
-    zone->momentum_error = total > 0.0 ? rdli_length(sum) / total : 0.0;
-    zone->energy_before = 0.5 * (before - rdli_dot(meant_sum, meant_sum) / all);
-    zone->energy_after = 0.5 * (after - rdli_dot(moved_sum, moved_sum) / all);
+    /* A zone with driven vertices is no closed system: the frame of its centre of mass means nothing there. */
+    double frame_before = zone->driven ? 0.0 : rdli_dot(meant_sum, meant_sum) / all;
+    double frame_after = zone->driven ? 0.0 : rdli_dot(moved_sum, moved_sum) / all;
+    zone->energy_before = 0.5 * (before - frame_before);
+    zone->energy_after = 0.5 * (after - frame_after);
 }
 
 /* Writes the rounded answer. Without a violation before the solve, an answer that differs by less than a third of a millionth of
