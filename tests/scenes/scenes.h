@@ -50,6 +50,7 @@ void build_spin_border(world *w);
 void drive_spin_border(const world *w, unsigned step, double (*proposed)[3]);
 void build_spin_whole(world *w);
 void dictate_spin_whole(const world *w, unsigned step, double (*proposed)[3]);
+void inspect_spin(judge *j, const judge_step *step);
 void finish_spin(judge *j, unsigned steps, const uint64_t verdicts[4]);
 void build_tangled(world *w);
 void finish_tangled(judge *j, unsigned steps, const uint64_t verdicts[4]);

@@ -96,17 +96,17 @@ void finish_funnel(judge *j, unsigned steps, const uint64_t verdicts[4])
         judge_fault(j, steps, "only %zu vertices fell into the spout", through);
 }
 
-/* A cloth of 5 mm mesh and a strand of 3 mm pieces, both 6 mm half thick, hang from driven ends and swing. */
+/* A cloth of 5 mm mesh and a strand of 5 mm pieces, both 6 mm half thick, hang from driven ends and swing. */
 void build_dense(world *w)
 {
-    const double corner[3] = {0.0, 0.0, 0.0}, u[3] = {0.05, 0.0, 0.0}, v[3] = {0.0, 0.0, -0.05};
+    const double corner[3] = {0.0, 0.0, 0.0}, u[3] = {0.04, 0.0, 0.0}, v[3] = {0.0, 0.0, -0.04};
     const double a[3] = {0.1, 0.0, 0.0}, b[3] = {0.16, 0.0, -0.06};
     world_part(w, "thick cloth", RDL_CLOTH, 0.006);
-    uint32_t first = world_sheet(w, corner, u, v, 10, 10, 0.001);
-    for (uint32_t i = 0; i <= 10; i += 5)
-        world_set_driven(w, first + i * 11);
+    uint32_t first = world_sheet(w, corner, u, v, 8, 8, 0.001);
+    for (uint32_t i = 0; i <= 8; i += 4)
+        world_set_driven(w, first + i * 9);
     world_part(w, "thick strand", RDL_STRANDS, 0.006);
-    first = world_line(w, a, b, 28, 0.001);
+    first = world_line(w, a, b, 17, 0.001);
     world_set_driven(w, first);
     w->gravity[2] = -9.81;
     w->drag = 0.05;
@@ -125,10 +125,10 @@ void finish_dense(judge *j, unsigned steps, const uint64_t verdicts[4])
 {
     const world *w = j->w;
     uint32_t top = w->part_first[0], end = w->part_first[1];
-    double width = stretch_between(w, top, top + 110), height = stretch_between(w, top, top + 10);
-    double length = stretch_between(w, end, end + 28);
+    double width = stretch_between(w, top, top + 72), height = stretch_between(w, top, top + 8);
+    double length = stretch_between(w, end, end + 17);
     (void)verdicts;
-    if (width > 0.05 * 1.05 || height > 0.05 * 1.05)
+    if (width > 0.04 * 1.05 || height > 0.04 * 1.05)
         judge_fault(j, steps, "the cloth grew to %g x %g m", width, height);
     if (length > 0.0848528 * 1.05)
         judge_fault(j, steps, "the strand grew to %g m", length);

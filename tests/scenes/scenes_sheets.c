@@ -65,6 +65,19 @@ void dictate_spin_whole(const world *w, unsigned step, double (*proposed)[3])
         turn_quarter(w->x[v], proposed[v]);
 }
 
+/* The turn happens: the spinning sheet gets at least half of the way that it was to go. */
+void inspect_spin(judge *j, const judge_step *step)
+{
+    double meant = 0.0, done = 0.0;
+    for (uint32_t v = 0; v < j->w->part_first[1]; v++)
+        for (int k = 0; k < 3; k++) {
+            meant += fabs(step->proposed[v][k] - step->start[v][k]);
+            done += fabs(step->delivered[v][k] - step->start[v][k]);
+        }
+    if ((step->number == 3 || step->number == 12) && done < 0.5 * meant)
+        judge_fault(j, step->number, "the sheet turned by %.3g of its way only", done / meant);
+}
+
 void finish_spin(judge *j, unsigned steps, const uint64_t verdicts[4])
 {
     expect_action(j, steps, verdicts, 2);
