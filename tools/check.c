@@ -227,8 +227,9 @@ static void print_text(const checker *c)
            c->about->complete ? "" : " (an unfinished recording)");
     printf("%" PRIu64 " tangles at rest, %" PRIu64 " crossings in steps, %" PRIu64 " crossings where the host moved it\n",
            c->tangles, c->crossings[STRETCH_STEP] + c->crossings[STRETCH_POSES], c->crossings[STRETCH_HOST]);
+    bool hidden = !c->bodies && c->driven_tangles + c->driven_crossings > 0;
     printf("bodies: %" PRIu64 " tangles, %" PRIu64 " crossings among driven vertices%s\n", c->driven_tangles,
-           c->driven_crossings, c->bodies ? "" : " (--bodies lists them and counts them as findings)");
+           c->driven_crossings, hidden ? " (--bodies lists them and counts them as findings)" : "");
     if (c->contacts > 0)
         printf("%" PRIu64 " pairs at distance 0 where a piece of path starts (not counted as findings)\n", c->contacts);
     if (c->bad_frames > 0)

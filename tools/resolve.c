@@ -54,31 +54,37 @@ static const char *part_name(const rdl_scene *scene, uint32_t vertex)
     return cli_clean(scene->parts[scene->vertex_part[vertex]].name);
 }
 
-static void name_pair(resolver *r, size_t frame, const rdl_named_pair *pair)
+/* "vertex 3 of "sheet"", "edge 0-1 of "thread"" or "triangle 7 of "figure"". */
+static void describe(const resolver *r, char text[256], bool is_triangle, bool is_vertex, uint32_t id)
 {
     size_t edge_count = 0;
     const uint32_t(*edges)[2] = rdl_engine_edges(r->engine, &edge_count);
+    if (is_vertex)
+        snprintf(text, 256, "vertex %" PRIu32 " of \"%s\"", id, part_name(r->scene, id));
+    else if (is_triangle)
+        snprintf(text, 256, "triangle %" PRIu32 " of \"%s\"", id, part_name(r->scene, r->scene->triangles[id][0]));
+    else
+        snprintf(text, 256, "edge %" PRIu32 "-%" PRIu32 " of \"%s\"", edges[id][0], edges[id][1],
+                 part_name(r->scene, edges[id][0]));
+}
+
+static void name_pair(resolver *r, size_t frame, const rdl_named_pair *pair)
+{
+    static const char *const kinds[] = {"pt", "ee", "et"};
     const char *why = pair->why < sizeof whys / sizeof whys[0] ? whys[pair->why] : "?";
-    bool point = pair->kind == RDL_POINT_TRIANGLE;
-    uint32_t first = point ? pair->first : edges[pair->first][0];
-    uint32_t second = point ? r->scene->triangles[pair->second][0] : edges[pair->second][0];
+    char first[256], second[256];
+    describe(r, first, false, pair->kind == RDL_POINT_TRIANGLE, pair->first);
+    describe(r, second, pair->kind != RDL_EDGE_EDGE, false, pair->second);
     if (r->json) {
         json_array_append_new(r->named_list,
-                              json_pack("{s:I, s:s, s:I, s:I, s:s, s:s, s:s}", "frame", (json_int_t)frame, "kind",
-                                        point ? "pt" : "ee", "first", (json_int_t)pair->first, "second",
-                                        (json_int_t)pair->second, "first_part",
-                                        r->scene->parts[r->scene->vertex_part[first]].name, "second_part",
-                                        r->scene->parts[r->scene->vertex_part[second]].name, "why", why));
+                              json_pack("{s:I, s:s, s:I, s:I, s:o, s:o, s:s}", "frame", (json_int_t)frame, "kind",
+                                        kinds[pair->kind], "first", (json_int_t)pair->first, "second",
+                                        (json_int_t)pair->second, "first_element", cli_json_text(first),
+                                        "second_element", cli_json_text(second), "why", why));
         return;
     }
     cli_progress_end();
-    if (point)
-        printf("frame %zu: vertex %" PRIu32 " of \"%s\" and triangle %" PRIu32 " of \"%s\": %s\n", frame, pair->first,
-               part_name(r->scene, first), pair->second, part_name(r->scene, second), why);
-    else
-        printf("frame %zu: edge %" PRIu32 "-%" PRIu32 " of \"%s\" and edge %" PRIu32 "-%" PRIu32 " of \"%s\": %s\n",
-               frame, edges[pair->first][0], edges[pair->first][1], part_name(r->scene, first), edges[pair->second][0],
-               edges[pair->second][1], part_name(r->scene, second), why);
+    printf("frame %zu: %s and %s: %s\n", frame, first, second, why);
 }
 
 static void add_report(resolver *r, size_t frame, const rdl_report *report)

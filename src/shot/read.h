@@ -29,6 +29,12 @@ enum { /* what a shot keeps in memory */
     RDLI_ROOM_COUNT
 };
 
+typedef enum rdli_memory_form {
+    RDLI_MEMORY_SPANS, /* what our writer makes: rows of (first, bytes) into memory_bytes */
+    RDLI_MEMORY_FIXED, /* one opaque item of the same size per frame */
+    RDLI_MEMORY_VARYING /* one sequence of bytes per frame */
+} rdli_memory_form;
+
 struct rdl_shot {
     rdli_memory memory;
     hid_t file;
@@ -39,6 +45,7 @@ struct rdl_shot {
     rdli_room rooms[RDLI_ROOM_COUNT];
     rdl_scene scene;
     rdl_shot_info info;
+    rdli_memory_form memory_form;
 };
 
 typedef struct rdli_table {
@@ -46,7 +53,7 @@ typedef struct rdli_table {
     uint64_t rows;
 } rdli_table;
 
-/* Opens GROUP/NAME and checks all that can be checked without reading it: hard links only, type class, rank, the second
+/* Opens GROUP/NAME and checks all that can be checked without reading it: hard links only, type class (H5T_NO_CLASS: any), rank, the second
  * and third extents (tail[i] = 0: any), storage inside the file, standard filters, a size that the file's own size makes
  * plausible. A missing table is RDL_OK with a negative id. field names it in faults. */
 rdl_status rdli_table_open(rdl_shot *shot, const char *group, const char *name, const char *field, H5T_class_t class,
@@ -76,5 +83,8 @@ rdl_status rdli_settings_read(rdl_shot *shot, rdl_fault *fault);
 /* The datasets of /frames: opens them, counts the valid frames. Needs scene.vertex_count, or finds it when it is 0. */
 rdl_status rdli_frames_open(rdl_shot *shot, rdl_fault *fault);
 rdl_status rdli_frames_count(rdl_shot *shot, rdl_fault *fault);
+/* The engine's memory: which form the file has, and one frame's block. */
+rdl_status rdli_memory_find(rdl_shot *shot, rdl_fault *fault);
+rdl_status rdli_memory_read(rdl_shot *shot, size_t frame, rdl_shot_frame *out, rdl_fault *fault);
 
 #endif

@@ -2,40 +2,16 @@
 #include "shot/quiet.h"
 #include "shot/read.h"
 
-enum { WAYPOINTS_MAX = 1 << 20, MEMORY_MAX = 1 << 30 };
+enum { WAYPOINTS_MAX = 1 << 20 };
 
 static H5T_class_t item_class(rdli_item item)
 {
     switch (item) {
     case RDLI_ITEM_F64: return H5T_FLOAT;
-    case RDLI_ITEM_SPAN: return H5T_COMPOUND;
-    case RDLI_ITEM_BYTE: return H5T_OPAQUE;
+    case RDLI_ITEM_SPAN:
+    case RDLI_ITEM_BYTE: return H5T_NO_CLASS; /* any: see read_memory.c */
     default: return H5T_INTEGER;
     }
-}
-
-/* The columns of /frames/memory by name, so that HDF5 converts whatever whole numbers they are. */
-static bool is_span(hid_t set)
-{
-    hid_t type = H5Dget_type(set);
-    bool sound = type >= 0 && H5Tget_nmembers(type) == 2;
-    static const char *const names[2] = {"first", "bytes"};
-    for (size_t k = 0; sound && k < 2; k++) {
-        int member = H5Tget_member_index(type, names[k]);
-        sound = member >= 0 && H5Tget_member_class(type, (unsigned)member) == H5T_INTEGER;
-    }
-    if (type >= 0)
-        H5Tclose(type);
-    return sound;
-}
-
-static bool is_byte(hid_t set)
-{
-    hid_t type = H5Dget_type(set);
-    bool sound = type >= 0 && H5Tget_size(type) == 1;
-    if (type >= 0)
-        H5Tclose(type);
-    return sound;
 }
 
 static rdl_status open_set(rdl_shot *shot, size_t which, rdl_fault *fault)
@@ -49,8 +25,6 @@ static rdl_status open_set(rdl_shot *shot, size_t which, rdl_fault *fault)
         return status;
     shot->sets[which] = table.id; /* from here on closed with the shot */
     shot->rows[which] = table.rows;
-    if ((set->item == RDLI_ITEM_SPAN && !is_span(table.id)) || (set->item == RDLI_ITEM_BYTE && !is_byte(table.id)))
-        return rdli_fault_set(fault, RDL_BAD_FILE, set->field, 0);
     if (set->rank != 3)
         return RDL_OK;
     /* Without a mesh table of its own a sequence of poses says here how many vertices there are. */
@@ -76,9 +50,7 @@ static rdl_status check_company(rdl_shot *shot, rdl_fault *fault)
     bool first = has(shot, RDLI_SET_WAYPOINT_FIRST);
     if (first != has(shot, RDLI_SET_WAYPOINT_TIME) || first != has(shot, RDLI_SET_WAYPOINT_POSITION))
         return rdli_fault_set(fault, RDL_BAD_FILE, "frames/waypoint_first", 0);
-    if (has(shot, RDLI_SET_MEMORY) != has(shot, RDLI_SET_MEMORY_BYTES))
-        return rdli_fault_set(fault, RDL_BAD_FILE, "frames/memory", 0);
-    return RDL_OK;
+    return rdli_memory_find(shot, fault);
 }
 
 static rdl_status read_marks(rdl_shot *shot, rdl_fault *fault)
@@ -185,32 +157,6 @@ static rdl_status read_waypoints(rdl_shot *shot, size_t frame, rdl_shot_frame *o
     return status;
 }
 
-static rdl_status read_memory(rdl_shot *shot, size_t frame, rdl_shot_frame *out, rdl_fault *fault)
-{
-    rdli_span span = {0, 0};
-    rdl_status status = read_item(shot, RDLI_SET_MEMORY, frame, 1, &span, fault);
-    if (status != RDL_OK || span.bytes == 0)
-        return status;
-    uint64_t rows = shot->rows[RDLI_SET_MEMORY_BYTES];
-    if (span.bytes > MEMORY_MAX || span.first > rows || span.bytes > rows - span.first)
-        return rdli_fault_set(fault, RDL_BAD_FILE, "frames/memory", frame);
-    rdli_room *room = &shot->rooms[RDLI_ROOM_MEMORY];
-    if (!rdli_room_reserve(&shot->memory, room, (size_t)span.bytes, 1, false))
-        return RDL_NO_MEMORY;
-    /* Read by the file's own type: opaque types of another tag do not convert. */
-    hid_t type = H5Dget_type(shot->sets[RDLI_SET_MEMORY_BYTES]);
-    status = type >= 0 ? rdli_rows_read(shot->sets[RDLI_SET_MEMORY_BYTES], type, span.first, span.bytes, room->data,
-                                        "frames/memory_bytes", fault)
-                       : RDL_NO_MEMORY;
-    if (type >= 0)
-        H5Tclose(type);
-    if (status == RDL_OK) {
-        out->memory = room->data;
-        out->memory_bytes = (size_t)span.bytes;
-    }
-    return status;
-}
-
 static rdl_status read_frame(rdl_shot *shot, size_t frame, rdl_shot_frame *out, rdl_fault *fault)
 {
     rdl_status status = RDL_OK;
@@ -228,7 +174,7 @@ static rdl_status read_frame(rdl_shot *shot, size_t frame, rdl_shot_frame *out, 
     if (status == RDL_OK && has(shot, RDLI_SET_WAYPOINT_FIRST))
         status = read_waypoints(shot, frame, &read, fault);
     if (status == RDL_OK && has(shot, RDLI_SET_MEMORY))
-        status = read_memory(shot, frame, &read, fault);
+        status = rdli_memory_read(shot, frame, &read, fault);
     if (status == RDL_OK)
         *out = read;
     return status;

@@ -89,7 +89,7 @@ static bool type_is_sound(hid_t set, H5T_class_t class, size_t *item)
     hid_t type = H5Dget_type(set);
     if (type < 0)
         return false;
-    bool sound = H5Tget_class(type) == class;
+    bool sound = H5Tget_class(type) == class || class == H5T_NO_CLASS;
     *item = H5Tget_size(type);
     if (sound && (class == H5T_INTEGER || class == H5T_FLOAT))
         sound = number_is_sane(type, class);

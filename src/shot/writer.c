@@ -97,7 +97,8 @@ static hid_t create_file(rdl_shot_writer *writer)
     hid_t file = H5I_INVALID_HID;
     if (access >= 0 && creation >= 0 && rdli_disk_use(access, &writer->broken, &writer->driver) &&
         H5Pset_libver_bounds(access, H5F_LIBVER_V110, H5F_LIBVER_V110) >= 0 &&
-        H5Pset_fclose_degree(access, H5F_CLOSE_STRONG) >= 0 && H5Pset_obj_track_times(creation, false) >= 0)
+        H5Pset_fclose_degree(access, H5F_CLOSE_STRONG) >= 0 && H5Pset_metadata_read_attempts(access, 1) >= 0 &&
+        H5Pset_obj_track_times(creation, false) >= 0)
         file = H5Fcreate(writer->part, H5F_ACC_TRUNC, creation, access);
     if (access >= 0)
         H5Pclose(access);
@@ -157,9 +158,9 @@ static bool begin_file(rdl_shot_writer *writer, const rdl_scene *scene, const rd
     const uint64_t zero = 0;
     writer->file = create_file(writer);
     return writer->file >= 0 && rdli_write_scene(writer, scene, options) && rdli_write_frame_sets(writer) &&
-           H5Fflush(writer->file, H5F_SCOPE_LOCAL) >= 0 && H5Fstart_swmr_write(writer->file) >= 0 &&
-           open_sets(writer) && add_rows(writer, RDLI_SET_WAYPOINT_FIRST, 1, 1, &zero) &&
-           H5Fflush(writer->file, H5F_SCOPE_LOCAL) >= 0;
+           H5Fflush(writer->file, H5F_SCOPE_LOCAL) >= 0 && !writer->broken && /* what follows reads the file back */
+           H5Fstart_swmr_write(writer->file) >= 0 && open_sets(writer) &&
+           add_rows(writer, RDLI_SET_WAYPOINT_FIRST, 1, 1, &zero) && H5Fflush(writer->file, H5F_SCOPE_LOCAL) >= 0;
 }
 
 rdl_status rdl_shot_create(const char *path, const rdl_scene *scene, const rdl_shot_options *options,

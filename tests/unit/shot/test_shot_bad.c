@@ -372,6 +372,37 @@ START_TEST(other_writers_are_read)
 }
 END_TEST
 
+/* The engine's memory as one opaque item, or one sequence of bytes, per frame. */
+START_TEST(other_forms_of_memory_are_read)
+{
+    const char *path = scratch("memory.h5");
+    static unsigned char blocks[FRAMES][40];
+    hvl_t sequences[FRAMES];
+    const hsize_t one[3] = {FRAMES, 0, 0};
+    for (unsigned k = 0; k < FRAMES; k++) {
+        for (unsigned i = 0; i < 40; i++)
+            blocks[k][i] = (unsigned char)(7 * k + i);
+        sequences[k] = (hvl_t){10 * k, blocks[k]};
+    }
+    hid_t type = _i == 0 ? H5Tcreate(H5T_OPAQUE, 40) : H5Tvlen_create(H5T_NATIVE_UINT8);
+    hid_t file = begin_change(path);
+    H5Ldelete(file, "frames/memory_bytes", H5P_DEFAULT);
+    put(file, "frames/memory", type, type, 1, one, _i == 0 ? (const void *)blocks : (const void *)sequences);
+    H5Tclose(type);
+    H5Fclose(file);
+    rdl_shot *shot = NULL;
+    ck_assert_int_eq(rdl_shot_open(path, &shot, NULL), RDL_OK);
+    for (unsigned k = 0; k < FRAMES; k++) {
+        rdl_shot_frame frame;
+        ck_assert_int_eq(rdl_shot_read_frame(shot, k, &frame, NULL), RDL_OK);
+        ck_assert_uint_eq(frame.memory_bytes, _i == 0 ? 40 : 10 * k);
+        if (frame.memory_bytes > 0)
+            ck_assert_mem_eq(frame.memory, blocks[k], frame.memory_bytes);
+    }
+    rdl_shot_close(shot);
+}
+END_TEST
+
 /* Poses alone: positions and triangles, nothing else. */
 START_TEST(bare_poses_are_read)
 {
@@ -558,6 +589,7 @@ int main(void)
     tcase_add_test(group, links_and_foreign_storage_are_refused);
     tcase_add_test(group, claims_beyond_the_file_are_refused);
     tcase_add_test(group, other_writers_are_read);
+    tcase_add_loop_test(group, other_forms_of_memory_are_read, 0, 2);
     tcase_add_test(group, bare_poses_are_read);
     tcase_add_test(group, an_unfinished_recording_is_cut);
     tcase_add_loop_test(group, cut_files_are_refused, 0, 2);

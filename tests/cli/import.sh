@@ -1,0 +1,76 @@
+# import: meshes good and bad. A tetrahedron, the same without a face, with a face turned, as a soup of triangles.
+cat >closed.obj <<'END'
+v 0 0 0
+v 1 0 0
+v 0 1 0
+v 0 0 1
+f 1 3 2
+f 1 2 4
+f 2 3 4
+f 3 1 4
+END
+sed '$d' closed.obj >open.obj
+sed 's/f 3 1 4/f 1 3 4/' closed.obj >flipped.obj
+cat >soup.off <<'END'
+OFF
+8 3 0
+0 0 0
+1 0 0
+0 1 0
+1 0 0
+1 1 0
+0 1 0
+7 7 7
+0 0 0
+3 0 1 2
+3 3 4 5
+3 0 7 1
+END
+cat >quad.ply <<'END'
+ply
+format ascii 1.0
+element vertex 4
+property float x
+property float y
+property float z
+element face 1
+property list uchar int vertex_indices
+end_header
+0 0 0
+1 0 0
+1 1 0
+0 1 0
+4 0 1 2 3
+END
+cat >triangle.stl <<'END'
+solid one
+facet normal 0 0 1
+outer loop
+vertex 0 0 0
+vertex 1 0 0
+vertex 0 1 0
+endloop
+endfacet
+endsolid one
+END
+try import-closed 0 import closed.obj -o closed.h5
+filter='s/: [0-9]* bytes, complete/: N bytes, complete/'
+try import-closed-info 0 info closed.h5
+filter=''
+try import-exists 2 import closed.obj -o closed.h5
+try import-open 1 import open.obj -o open.h5
+try import-open-json 1 import --json --force open.obj -o open.h5
+try import-flipped 1 import flipped.obj -o flipped.h5
+try import-soup 1 import soup.off -o soup.h5
+try import-quad 0 import quad.ply -o quad.h5 --kind cloth --part "a sheet" --half-thickness 0.002 --scale 0.01
+filter='s/: [0-9]* bytes, complete/: N bytes, complete/'
+try import-quad-info 0 info quad.h5
+filter=''
+try import-stl 1 import triangle.stl -o stl.h5
+try import-cloth-thickness 2 import quad.ply -o x.h5 --kind cloth
+try import-kind 2 import quad.ply -o x.h5 --kind hair
+try import-no-output 2 import quad.ply
+echo 'nothing' >text.obj
+try import-no-triangles 2 import text.obj -o x.h5
+echo 'v 0 0 nan' >nan.obj
+holds import-nothing-left ! -e x.h5
