@@ -79,7 +79,7 @@ int main(void)
 
     double lowest = delivered[0][2];
     for (int v = 1; v < CLOTH; v++)
-        lowest = fmin(lowest, delivered[v][2]);
+        lowest = delivered[v][2] < lowest ? delivered[v][2] : lowest;
     printf("verdict: %s\n", verdicts[report.verdict]);
     printf("proposed height %.3f mm, delivered %.3f mm, gap 0.500 mm\n", 1e3 * proposed[0][2], 1e3 * lowest);
     rdl_engine_destroy(engine);

@@ -13,7 +13,7 @@ failures=0
 work=$(mktemp -d "$build/installed.XXXXXX")
 trap 'rm -rf "$work"' EXIT
 
-# judge NAME COMMAND...: one check that passes when the command succeeds.
+# judge NAME COMMAND...: one check that passes when the command succeeds. Inside, `set -e` has no effect.
 judge() {
     checks=$((checks + 1))
     name=$1
@@ -38,11 +38,11 @@ example() {
     # Flags and paths of pkg-config, to be split here; the stage is reached by a link whose path has no blanks.
     # shellcheck disable=SC2046
     if [ "$3" = static ]; then
-        "$CC" -std=c17 -Wall -Wextra -Wpedantic -Werror "$1" -o "$program" $(flags "$2" --cflags --libs --static)
+        "$CC" -std=c17 -Wall -Wextra -Wpedantic -Werror "$1" -o "$program" $(flags "$2" --cflags --libs --static) || return 1
     else
-        "$CC" -std=c17 -Wall -Wextra -Wpedantic -Werror "$1" -o "$program" $(flags "$2" --cflags --libs)
+        "$CC" -std=c17 -Wall -Wextra -Wpedantic -Werror "$1" -o "$program" $(flags "$2" --cflags --libs) || return 1
     fi
-    (cd "$work" && LD_LIBRARY_PATH=$stage$libdir "$program" >"$program.out")
+    (cd "$work" && LD_LIBRARY_PATH=$stage$libdir "$program" >"$program.out") || return 1
     if [ -f "${1%.c}.txt" ]; then
         diff -u "${1%.c}.txt" "$program.out"
     fi
