@@ -8,7 +8,7 @@
 #include "families.h"
 #include "oracle.h"
 
-enum { MEMBERS = 1000 };
+enum { MEMBERS = 400, GAP_MEMBERS = 40 };
 
 static const int pt_orders[5][4] = {{0, 1, 3, 2}, {0, 2, 1, 3}, {0, 2, 3, 1}, {0, 3, 1, 2}, {0, 3, 2, 1}};
 static const int ee_orders[7][4] = {{1, 0, 2, 3}, {0, 1, 3, 2}, {1, 0, 3, 2}, {2, 3, 0, 1}, {3, 2, 0, 1}, {2, 3, 1, 0},
@@ -137,7 +137,7 @@ static void over_families(int kind, bool at_gap, check_member *check)
     for (int f = 0; f < motion_family_count; f++) {
         const motion_family *family = &motion_families[f];
         random_source source = random_from(77 + (uint64_t)f);
-        int count = family->percent < 10 ? 10 : MEMBERS / (at_gap ? 4 : 1);
+        int count = family->percent < 10 ? 4 : at_gap ? GAP_MEMBERS : MEMBERS;
         for (int n = 0; n < count; n++) {
             rdl_motion motion;
             family->make(&source, kind, &motion);
