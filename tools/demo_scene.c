@@ -227,7 +227,7 @@ demo_scene *demo_scene_create(const mesh *body, int small)
     demo_scene *scene = calloc(1, sizeof *scene);
     if (!scene)
         return NULL;
-    scene->steps_per_picture = 3;
+    scene->steps_per_picture = 2;
     scene->step = 1.0 / (DEMO_PICTURE_RATE * (double)scene->steps_per_picture);
     scene->h = host_create();
     if (scene->h)
