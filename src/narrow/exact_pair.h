@@ -3,7 +3,7 @@
 #define RDLI_EXACT_PAIR_H
 
 #include "base/exact.h"
-#include "narrow/narrow.h"
+#include "narrow/roots.h"
 
 /* Difference vectors in units of 2^unit, [0] at the start and [1] at the end.
  * PT (p; a, b, c): w = p - a, u = b - a, v = c - a. EE (a, b; c, d): w = c - a, u = b - a, v = d - c. */
@@ -35,8 +35,8 @@ typedef struct rdli_ratio {
 } rdli_ratio;
 rdli_ratio rdli_squared_distance(rdli_arena *arena, const rdli_exact_pair *pair, int end);
 
-/* Gap 0. Fills touch; exact. */
-void rdli_exact_zero(rdli_arena *arena, int kind, const rdl_motion *motion, rdl_touch *touch);
+/* Gap 0. Fills touch; exact. doubles: the pair's polynomials at ordinary size, whose certain answers are used. */
+void rdli_exact_zero(rdli_arena *arena, int kind, const rdl_motion *motion, const rdli_cubic *doubles, rdl_touch *touch);
 /* Distance 0 at t = 0 (end 0) or t = 1 (end 1). */
 bool rdli_exact_meets(rdli_arena *arena, const rdli_exact_pair *pair, int end);
 /* Sign of (distance at `end`)^2 - gap^2. */

@@ -7,8 +7,9 @@
  * root are exact Tarski queries (Basu, Pollack, Roy 2006, ch. 2): the sign of q at the only root of f in (a, b) is
  * the difference of sign variations at a and b of the signed remainder sequence of f and f' q. */
 #include "narrow/exact_pair.h"
+#include "narrow/roots.h"
 
-enum { CHAIN = 6, FINE = 24 };
+enum { CHAIN = 6, FINE = 24, SHARP = 72 };
 
 /* A time: exactly k / 2^m, or the only root of f in (k / 2^m, (k + 1) / 2^m). */
 typedef struct instant {
@@ -16,6 +17,7 @@ typedef struct instant {
     rdli_int k;
     unsigned m;
     const rdli_poly *f;
+    mp_limb_t own[2]; /* where k lives while it is short, so that it can be sharpened in place */
 } instant;
 
 /* t : 1 - t, both >= 0 */
@@ -35,22 +37,28 @@ static proportion proportion_of(rdli_arena *arena, rdli_int k, unsigned m, bool 
     return (proportion){t, rdli_int_sub(arena, rdli_int_shift(arena, one, m), t)};
 }
 
-/* Sign of sum c[i] t^i rest^(n-i). */
-static int sign_at_proportion(rdli_arena *arena, const rdli_poly *q, proportion at)
+/* sum c[i] t^i rest^(n-i) */
+static rdli_int value_at_proportion(rdli_arena *arena, const rdli_poly *q, proportion at)
 {
     if (at.t.size == 0)
-        return rdli_int_sign(q->c[0]);
+        return q->c[0];
     if (at.rest.size == 0)
-        return rdli_int_sign(q->c[q->degree]);
-    size_t mark = arena->used;
+        return q->c[q->degree];
     rdli_int sum = q->c[q->degree], power = at.rest;
     for (int i = q->degree - 1; i >= 0; i--) {
         sum = rdli_int_add(arena, rdli_int_mul(arena, sum, at.t), rdli_int_mul(arena, q->c[i], power));
         if (i)
             power = rdli_int_mul(arena, power, at.rest);
     }
+    return sum;
+}
+
+static int sign_at_proportion(rdli_arena *arena, const rdli_poly *q, proportion at)
+{
+    size_t mark = arena->used;
+    int sign = rdli_int_sign(value_at_proportion(arena, q, at));
     arena->used = mark;
-    return rdli_int_sign(sum);
+    return sign;
 }
 
 /* The polynomial in x = t / (1 - t) without its roots at 0 and infinity. */
@@ -182,29 +190,92 @@ static int sign_over(rdli_arena *arena, const rdli_poly *q, proportion a, propor
     return low >= 0 ? high : high <= 0 ? low : 0;
 }
 
-static int sign_at(rdli_arena *arena, const instant *at, const rdli_poly *q)
+/* |a| / (|a| + |b|) */
+static double share_of(rdli_int a, rdli_int b)
 {
-    size_t mark = arena->used;
-    proportion a = proportion_of(arena, at->k, at->m, false);
-    if (at->dyadic) {
-        int sign = sign_at_proportion(arena, q, a);
-        arena->used = mark;
-        return sign;
-    }
-    proportion b = proportion_of(arena, at->k, at->m, true);
-    int sign = sign_over(arena, q, a, b);
-    if (sign == 0 && !rdli_poly_is_zero(q)) {
-        rdli_poly slope = derivative(arena, at->f), weighted = rdli_poly_mul(arena, &slope, q);
-        drop_leading_zeros(&weighted);
-        chain s;
-        build_chain(arena, at->f, remainder_of(arena, weighted, at->f, NULL), &s);
-        sign = variations(arena, &s, a) - variations(arena, &s, b);
-    }
-    arena->used = mark;
-    return sign;
+    int64_t bits = rdli_int_bits(a) > rdli_int_bits(b) ? rdli_int_bits(a) : rdli_int_bits(b);
+    double x = rdli_int_below(a, -bits), y = rdli_int_below(b, -bits);
+    return x / (x + y);
 }
 
-static bool vector_vanishes(rdli_arena *arena, const instant *at, const rdli_int v[2][3])
+/* Finds the cell of (k, k + 2^more) / 2^m that holds the only root of f in it; `left` is f's sign at its left end, not 0,
+ * and guess a cell that may be right. Leaves an exact root where a cell's end is one. */
+static void find_cell(rdli_arena *arena, instant *at, unsigned more, uint64_t guess, int left)
+{
+    size_t mark = arena->used;
+    rdli_int base = rdli_int_shift(arena, at->k, more);
+    uint64_t lo = 0, hi = UINT64_C(1) << more, step = 1;
+    at->m += more;
+    size_t above = arena->used;
+    while (hi - lo > 1 && !at->dyadic) {
+        uint64_t cut = guess > lo && guess < hi ? guess : guess <= lo ? lo + step : hi - step;
+        cut = cut > lo && cut < hi ? cut : lo + (hi - lo) / 2;
+        rdli_int k = rdli_int_add(arena, base, rdli_int_of_word(arena, cut));
+        int sign = sign_at_proportion(arena, at->f, proportion_of(arena, k, at->m, false));
+        arena->used = above;
+        at->dyadic = sign == 0;
+        bool right = sign == left;
+        lo = right || at->dyadic ? cut : lo;
+        hi = right ? hi : cut;
+        step = (guess == cut) ? 1 : step * 8;
+        if (arena->overflow)
+            break;
+    }
+    rdli_int k = rdli_int_add(arena, base, rdli_int_of_word(arena, lo));
+    if (!arena->overflow)
+        memcpy(at->own, k.limb, (size_t)k.size * sizeof *k.limb);
+    at->k = (rdli_int){at->own, k.size};
+    arena->used = mark;
+}
+
+/* Makes the interval 2^16 times narrower, by the secant. */
+static void sharpen(rdli_arena *arena, instant *at)
+{
+    size_t mark = arena->used;
+    rdli_int a = value_at_proportion(arena, at->f, proportion_of(arena, at->k, at->m, false));
+    rdli_int b = value_at_proportion(arena, at->f, proportion_of(arena, at->k, at->m, true));
+    double share = share_of(a, b);
+    int left = rdli_int_sign(a);
+    arena->used = mark;
+    find_cell(arena, at, 16, (uint64_t)(share * 0x1p16), left);
+}
+
+/* The sign of q at the only root of at->f in the interval, by a Tarski query. */
+static int sign_by_query(rdli_arena *arena, const instant *at, const rdli_poly *q, proportion a, proportion b)
+{
+    rdli_poly slope = derivative(arena, at->f), weighted = rdli_poly_mul(arena, &slope, q);
+    drop_leading_zeros(&weighted);
+    chain s;
+    build_chain(arena, at->f, remainder_of(arena, weighted, at->f, NULL), &s);
+    return variations(arena, &s, a) - variations(arena, &s, b);
+}
+
+static int sign_at(rdli_arena *arena, instant *at, const rdli_poly *q)
+{
+    if (rdli_poly_is_zero(q))
+        return 0;
+    for (;;) {
+        size_t mark = arena->used;
+        proportion a = proportion_of(arena, at->k, at->m, false);
+        int sign;
+        if (at->dyadic) {
+            sign = sign_at_proportion(arena, q, a);
+            arena->used = mark;
+            return sign;
+        }
+        proportion b = proportion_of(arena, at->k, at->m, true);
+        sign = sign_over(arena, q, a, b);
+        bool sharp = at->m >= SHARP;
+        if (sign == 0 && sharp)
+            sign = sign_by_query(arena, at, q, a, b);
+        arena->used = mark;
+        if (sign || sharp)
+            return sign;
+        sharpen(arena, at);
+    }
+}
+
+static bool vector_vanishes(rdli_arena *arena, instant *at, const rdli_int v[2][3])
 {
     for (int k = 0; k < 3; k++) {
         rdli_poly line = {.degree = 1, .c = {v[0][k], v[1][k]}};
@@ -214,7 +285,7 @@ static bool vector_vanishes(rdli_arena *arena, const instant *at, const rdli_int
     return true;
 }
 
-static bool on_segment(rdli_arena *arena, const instant *at, const rdli_point_segment *couple)
+static bool on_segment(rdli_arena *arena, instant *at, const rdli_point_segment *couple)
 {
     size_t mark = arena->used;
     for (int k = 0; k < 3; k++) {
@@ -234,7 +305,7 @@ static bool on_segment(rdli_arena *arena, const instant *at, const rdli_point_se
 }
 
 /* n_k does not vanish; all vectors lie in one plane. */
-static bool inside_in_plane(rdli_arena *arena, const instant *at, const rdli_exact_pair *pair, int k, const rdli_poly *n,
+static bool inside_in_plane(rdli_arena *arena, instant *at, const rdli_exact_pair *pair, int k, const rdli_poly *n,
                             int facing)
 {
     rdli_poly first = rdli_cross_component(arena, pair->w, pair->v, k);
@@ -255,7 +326,7 @@ static bool inside_in_plane(rdli_arena *arena, const instant *at, const rdli_exa
 }
 
 /* Whether the pair, coplanar at the instant, meets then. */
-static bool meets_when_coplanar(rdli_arena *arena, const instant *at, const rdli_exact_pair *pair)
+static bool meets_when_coplanar(rdli_arena *arena, instant *at, const rdli_exact_pair *pair)
 {
     size_t mark = arena->used;
     for (int k = 0; k < 3; k++) {
@@ -301,31 +372,66 @@ bool rdli_exact_meets(rdli_arena *arena, const rdli_exact_pair *pair, int end)
 /* What the roots of an event polynomial are asked. */
 typedef struct event {
     const rdli_exact_pair *pair;       /* the pair, where f is its coplanarity */
+    const rdli_cubic *doubles;         /* and what doubles know of it */
     const rdli_point_segment *couple;  /* else the point and the segment */
 } event;
 
-/* Bisects to the root of rank `rank` (from 1) of the squarefree f until it is alone between dyadic ends that are not
- * roots, or is itself the right end. */
-static void isolate(rdli_arena *arena, const chain *s, int at_zero, int at_one, int rank, size_t mark, instant *root)
+static bool happens(rdli_arena *arena, const event *what, instant *root, double lo, double hi)
 {
+    if (!what->pair)
+        return on_segment(arena, root, what->couple);
+    enum rdli_inside inside = rdli_cubic_inside(what->doubles, lo, hi);
+    return inside == RDLI_INSIDE_YES || (inside == RDLI_INSIDE_MAYBE && meets_when_coplanar(arena, root, what->pair));
+}
+
+/* The cell of (k, k + 2^more) / 2^m in which doubles see the root. */
+static uint64_t guess_cell(const rdli_poly *f, const instant *at, unsigned more, int left)
+{
+    double c[4], base = at->k.size ? (double)at->k.limb[0] : 0;
+    int64_t bits = 0;
+    for (int i = 0; i <= f->degree; i++)
+        bits = rdli_int_bits(f->c[i]) > bits ? rdli_int_bits(f->c[i]) : bits;
+    for (int i = 0; i <= f->degree; i++)
+        c[i] = rdli_int_sign(f->c[i]) * rdli_int_below(f->c[i], -bits);
+    uint64_t lo = 0, hi = UINT64_C(1) << more;
+    while (hi - lo > 1) {
+        uint64_t cut = lo + (hi - lo) / 2;
+        double t = ldexp(base, -(int)at->m) + ldexp((double)cut, -(int)(at->m + more)), s = 1 - t;
+        double value = c[f->degree], power = s;
+        for (int i = f->degree - 1; i >= 0; i--, power *= s)
+            value = value * t + c[i] * power;
+        bool right = (value > 0) == (left > 0);
+        lo = right ? cut : lo;
+        hi = right ? hi : cut;
+    }
+    return lo;
+}
+
+/* Bisects to the root of rank `rank` (from 1) of the squarefree f until it is alone between dyadic ends that are not
+ * roots, or is itself the right end; then narrows that interval to 2^-FINE. */
+static void isolate(rdli_arena *arena, const chain *s, int at_zero, int at_one, int rank, instant *root)
+{
+    size_t mark = arena->used;
     int left = at_zero, right = at_one;
     root->k = (rdli_int){NULL, 0};
     root->m = 0;
     root->dyadic = false;
-    for (;;) {
-        arena->used = mark;
+    while (!arena->overflow) {
         root->k = rdli_int_keep(arena, mark, root->k);
         size_t above = arena->used;
-        if (root->m >= FINE && left - right == 1) {
+        if (left - right == 1) {
             proportion a = proportion_of(arena, root->k, root->m, false), b = proportion_of(arena, root->k, root->m, true);
-            bool at_left = sign_at_proportion(arena, &s->p[0], a) == 0;
-            root->dyadic = sign_at_proportion(arena, &s->p[0], b) == 0;
-            if (root->dyadic || !at_left) {
-                arena->used = above;
-                if (root->dyadic)
-                    root->k = rdli_int_keep(arena, mark, b.t);
+            int sign = sign_at_proportion(arena, root->f, a);
+            root->dyadic = sign_at_proportion(arena, root->f, b) == 0;
+            arena->used = above;
+            if (root->dyadic) {
+                root->k = rdli_int_keep(arena, mark, rdli_int_add(arena, root->k, rdli_int_of_word(arena, 1)));
                 return;
             }
+            if (sign && root->m < FINE)
+                find_cell(arena, root, FINE - root->m, guess_cell(root->f, root, FINE - root->m, sign), sign);
+            if (sign)
+                return;
         }
         rdli_int twice = rdli_int_shift(arena, root->k, 1);
         proportion middle = proportion_of(arena, twice, ++root->m, true);
@@ -334,8 +440,6 @@ static void isolate(rdli_arena *arena, const chain *s, int at_zero, int at_one, 
         left = go_left ? left : here;
         right = go_left ? here : right;
         root->k = go_left ? twice : middle.t;
-        if (arena->overflow)
-            return;
     }
 }
 
@@ -370,10 +474,10 @@ static bool first_event(rdli_arena *arena, const rdli_poly *f, const event *what
         int at_zero = variations(arena, &s, zero), at_one = variations(arena, &s, one);
         for (int rank = 1; rank <= at_zero - at_one && !found && !arena->overflow; rank++) {
             instant root = {.f = &g};
-            isolate(arena, &s, at_zero, at_one, rank, arena->used, &root);
-            found = what->pair ? meets_when_coplanar(arena, &root, what->pair) : on_segment(arena, &root, what->couple);
+            isolate(arena, &s, at_zero, at_one, rank, &root);
+            bracket_of(&root, lo, hi);
+            found = happens(arena, what, &root, *lo, *hi);
             if (found) {
-                bracket_of(&root, lo, hi);
                 *depth = (uint8_t)(root.m < 255 ? root.m : 255);
             }
         }
@@ -401,47 +505,82 @@ static bool segment_event(rdli_arena *arena, const rdli_point_segment *couple, i
     return false;
 }
 
-static bool first_planar_event(rdli_arena *arena, const rdli_exact_pair *pair, rdl_touch *touch)
+/* The couples of rdli_point_segments as frames of doubles. */
+static void couple_of(const rdli_cubic *s, int which, double w[2][3], double u[2][3])
+{
+    bool triangle = s->kind == RDL_POINT_TRIANGLE;
+    for (int end = 0; end < 2; end++)
+        for (int k = 0; k < 3; k++) {
+            double pw = s->at[end].w[k], pu = s->at[end].u[k], pv = s->at[end].v[k];
+            const double from[2][4] = {{pw, -pw, pw + pv, pu - pw}, {pw, pw, pw - pu, 0}};
+            const double along[2][4] = {{pu, pv, pu, pv}, {pu, pv, pv - pu, 0}};
+            w[end][k] = from[triangle][which];
+            u[end][k] = along[triangle][which];
+        }
+}
+
+static bool first_couple_event(rdli_arena *arena, const rdli_point_segment *couple, double *lo, double *hi, uint8_t *depth)
+{
+    for (int which = 0; which < 2; which++) {
+        size_t mark = arena->used;
+        event what = {NULL, NULL, couple};
+        rdli_poly f;
+        bool found = segment_event(arena, couple, which, &f) && first_event(arena, &f, &what, lo, hi, depth);
+        arena->used = mark;
+        if (found || f.degree == 2) /* not on one line: there is no second polynomial */
+            return found;
+    }
+    return false;
+}
+
+static bool first_planar_event(rdli_arena *arena, const rdli_exact_pair *pair, const rdli_cubic *doubles, rdl_touch *touch)
 {
     rdli_point_segment couples[RDLI_POINT_SEGMENTS];
     int count = rdli_point_segments(arena, pair, couples);
     bool found = false;
     touch->time_lo = touch->time_hi = 1;
-    for (int i = 0; i < count; i++)
-        for (int which = 0; which < 2; which++) {
-            size_t mark = arena->used;
-            event what = {NULL, &couples[i]};
-            rdli_poly f;
-            double lo, hi;
-            if (segment_event(arena, &couples[i], which, &f) && first_event(arena, &f, &what, &lo, &hi, &touch->depth)) {
-                found = true;
-                touch->time_lo = lo < touch->time_lo ? lo : touch->time_lo;
-                touch->time_hi = hi < touch->time_hi ? hi : touch->time_hi;
-            }
-            arena->used = mark;
-            if (f.degree == 2) /* not on one line */
-                break;
-        }
+    for (int i = 0; i < count; i++) {
+        double lo, hi, w[2][3], u[2][3];
+        couple_of(doubles, i, w, u);
+        enum rdli_inside meets = rdli_planar_event(doubles, (const double (*)[3])w, (const double (*)[3])u, &lo, &hi);
+        if (meets == RDLI_INSIDE_NO ||
+            (meets == RDLI_INSIDE_MAYBE && !first_couple_event(arena, &couples[i], &lo, &hi, &touch->depth)))
+            continue;
+        found = true;
+        touch->time_lo = lo < touch->time_lo ? lo : touch->time_lo;
+        touch->time_hi = hi < touch->time_hi ? hi : touch->time_hi;
+    }
     return found;
 }
 
-void rdli_exact_zero(rdli_arena *arena, int kind, const rdl_motion *motion, rdl_touch *touch)
+/* f(end) = 0 is known exactly. */
+static bool meets_at_end(rdli_arena *arena, const rdli_exact_pair *pair, const rdli_cubic *doubles, int end)
+{
+    size_t mark = arena->used;
+    enum rdli_inside inside = rdli_cubic_inside(doubles, end, end);
+    instant at = {.dyadic = true, .k = end ? rdli_int_of_word(arena, 1) : (rdli_int){NULL, 0}};
+    bool meets = inside == RDLI_INSIDE_YES || (inside == RDLI_INSIDE_MAYBE && meets_when_coplanar(arena, &at, pair));
+    arena->used = mark;
+    return meets;
+}
+
+void rdli_exact_zero(rdli_arena *arena, int kind, const rdl_motion *motion, const rdli_cubic *doubles, rdl_touch *touch)
 {
     rdli_exact_pair pair;
     rdli_exact_pair_of(arena, kind, motion, rdli_common_unit(motion, 0), &pair);
     *touch = (rdl_touch){.stage = RDL_STAGE_EXACT, .order = 3};
-    if (rdli_exact_meets(arena, &pair, 0)) {
+    rdli_poly f = coplanarity(arena, &pair);
+    if (f.c[0].size == 0 && meets_at_end(arena, &pair, doubles, 0)) {
         touch->touches = 1;
         touch->stage = RDL_STAGE_ENDS;
         return;
     }
-    rdli_poly f = coplanarity(arena, &pair);
-    event what = {&pair, NULL};
+    event what = {&pair, doubles, NULL};
     touch->touches = rdli_poly_is_zero(&f)
-        ? first_planar_event(arena, &pair, touch)
+        ? first_planar_event(arena, &pair, doubles, touch)
         : first_event(arena, &f, &what, &touch->time_lo, &touch->time_hi, &touch->depth);
     if (!touch->touches) {
         touch->time_lo = touch->time_hi = 1;
-        touch->touches = rdli_exact_meets(arena, &pair, 1);
+        touch->touches = f.c[3].size == 0 && meets_at_end(arena, &pair, doubles, 1);
     }
 }

@@ -12,19 +12,7 @@ enum { MOST_SPANS = 24, DEEPEST = 12, MOST_ROOTS = 3 };
 /* One unit of 2^-52 per rounding holds in every rounding mode. */
 static const double unit = 0x1p-52;
 
-typedef struct quadratic {
-    double c[3], bound; /* Bernstein coefficients on [0, 1], each certain to the bound */
-} quadratic;
-
-typedef struct scene {
-    int kind, spans;
-    rdli_frame at[2];
-    quadratic n[3];
-    double f[4], bound; /* the cubic, certain to the bound also after restriction */
-    double pad;
-} scene;
-
-static void quadratic_of(const double a0[3], const double a1[3], const double b0[3], const double b1[3], int k, quadratic *q)
+static void quadratic_of(const double a0[3], const double a1[3], const double b0[3], const double b1[3], int k, rdli_quadratic *q)
 {
     int i = (k + 1) % 3, j = (k + 2) % 3;
     double left[4] = {a0[i] * b0[j], a0[i] * b1[j], a1[i] * b0[j], a1[i] * b1[j]};
@@ -41,7 +29,7 @@ static void quadratic_of(const double a0[3], const double a1[3], const double b0
     q->bound = 16 * unit * largest + RDLI_UNDERFLOW;
 }
 
-static void quadratic_on(const quadratic *q, double a, double b, double c[3])
+static void quadratic_on(const rdli_quadratic *q, double a, double b, double c[3])
 {
     double a1 = 1 - a, b1 = 1 - b, left = a1 * q->c[0] + a * q->c[1], right = a1 * q->c[1] + a * q->c[2];
     c[0] = a1 * left + a * right;
@@ -82,7 +70,7 @@ static double value_of(const double f[4], double t)
     return s * s * s * f[0] + 3 * t * s * (s * f[1] + t * f[2]) + t * t * t * f[3];
 }
 
-static void make_cubic(scene *s)
+static void make_cubic(rdli_cubic *s)
 {
     const double *w0 = s->at[0].w, *w1 = s->at[1].w;
     double size = 0;
@@ -101,11 +89,8 @@ static void make_cubic(scene *s)
     s->bound = 64 * unit * size + RDLI_UNDERFLOW;
 }
 
-enum inside { INSIDE_NO, INSIDE_MAYBE, INSIDE_YES };
-
-/* Where the meeting point of the coplanar pair lies during [a, b], from one projection in which the normal keeps its
- * sign: first and second must lie between 0 and the normal (EE), or be positive with their sum below it (PT). */
-static enum inside parameters(const scene *s, double a, double b)
+/* From one projection in which the normal keeps its sign: first and second must lie between 0 and the normal (EE), or be positive with their sum below it (PT). */
+enum rdli_inside rdli_cubic_inside(const rdli_cubic *s, double a, double b)
 {
     double n[3][3], c[3];
     int k = 0;
@@ -115,8 +100,8 @@ static enum inside parameters(const scene *s, double a, double b)
     }
     int facing = certain_sign(n[k], 3, s->n[k].bound);
     if (!facing)
-        return INSIDE_MAYBE;
-    quadratic first, second;
+        return RDLI_INSIDE_MAYBE;
+    rdli_quadratic first, second;
     const rdli_frame *p = &s->at[0], *q = &s->at[1];
     double lower[2][3], upper[2][3], bounds[2];
     quadratic_of(p->w, q->w, p->v, q->v, k, &first);
@@ -132,7 +117,7 @@ static enum inside parameters(const scene *s, double a, double b)
     for (int i = 0; i < 2; i++) {
         int sign = certain_sign(lower[i], 3, bounds[i]) * facing;
         if (sign < 0)
-            return INSIDE_NO;
+            return RDLI_INSIDE_NO;
         certain = certain && sign > 0;
     }
     bool triangle = s->kind == RDL_POINT_TRIANGLE;
@@ -143,13 +128,13 @@ static enum inside parameters(const scene *s, double a, double b)
         memcpy(upper[i], c, sizeof c);
         int sign = certain_sign(upper[i], 3, bound) * facing;
         if (sign < 0)
-            return INSIDE_NO;
+            return RDLI_INSIDE_NO;
         certain = certain && sign > 0;
     }
-    return certain ? INSIDE_YES : INSIDE_MAYBE;
+    return certain ? RDLI_INSIDE_YES : RDLI_INSIDE_MAYBE;
 }
 
-static bool separated(const scene *s, double a, double b)
+static bool separated(const rdli_cubic *s, double a, double b)
 {
     rdli_frame left, right, middle;
     rdli_nearest nearest;
@@ -163,16 +148,16 @@ static bool separated(const scene *s, double a, double b)
     return least > s->pad * (fabs(d[0]) + fabs(d[1]) + fabs(d[2])) + RDLI_UNDERFLOW;
 }
 
-static bool is_free(scene *s, double a, double b)
+static bool is_free(rdli_cubic *s, double a, double b)
 {
     double c[4];
     s->spans++;
     cubic_on(s->f, a, b, c);
-    return certain_sign(c, 4, s->bound) || parameters(s, a, b) == INSIDE_NO || separated(s, a, b);
+    return certain_sign(c, 4, s->bound) || rdli_cubic_inside(s, a, b) == RDLI_INSIDE_NO || separated(s, a, b);
 }
 
 /* Certifies [a, b] free, splitting where needed. */
-static bool all_free(scene *s, double a, double b, int *depth)
+static bool all_free(rdli_cubic *s, double a, double b, int *depth)
 {
     double ends[DEEPEST];
     int top = 0;
@@ -238,7 +223,7 @@ static int guess_roots(const double f[4], double roots[MOST_ROOTS])
 }
 
 /* The guess's surroundings: 1 touch, 0 free, -1 undecided. */
-static int settle(scene *s, double root, double free, double *lo, double *hi)
+static int settle(rdli_cubic *s, double root, double free, double *lo, double *hi)
 {
     for (int e = -30; e <= -22; e += 4) {
         double width = ldexp(1, e), c[4];
@@ -247,30 +232,31 @@ static int settle(scene *s, double root, double free, double *lo, double *hi)
         if (*lo >= *hi)
             continue;
         cubic_on(s->f, *lo, *hi, c);
-        enum inside inside = parameters(s, *lo, *hi);
-        if (inside == INSIDE_NO)
+        enum rdli_inside inside = rdli_cubic_inside(s, *lo, *hi);
+        if (inside == RDLI_INSIDE_NO)
             return 0;
         bool opposite = (c[0] > s->bound && c[3] < -s->bound) || (c[0] < -s->bound && c[3] > s->bound);
-        if (inside == INSIDE_YES && opposite)
+        if (inside == RDLI_INSIDE_YES && opposite)
             return 1;
     }
     return separated(s, *lo, *hi) ? 0 : -1;
 }
 
-static scene scene_of(int kind, const rdli_frame *start, const rdli_frame *end)
+rdli_cubic rdli_cubic_of(int kind, const rdli_frame *start, const rdli_frame *end)
 {
-    scene s = {.kind = kind, .at = {*start, *end}};
+    rdli_cubic s = {.kind = kind, .at = {*start, *end}};
     double a = rdli_frame_size(start), b = rdli_frame_size(end), largest = a > b ? a : b;
     for (int k = 0; k < 3; k++)
         quadratic_of(s.at[0].u, s.at[1].u, s.at[0].v, s.at[1].v, k, &s.n[k]);
     make_cubic(&s);
     s.pad = 0x1p-45 * largest + RDLI_UNDERFLOW;
+    s.size = largest;
     return s;
 }
 
 bool rdli_roots_touch(int kind, const rdli_frame *start, const rdli_frame *end, rdl_touch *touch)
 {
-    scene s = scene_of(kind, start, end);
+    rdli_cubic s = rdli_cubic_of(kind, start, end);
     double roots[MOST_ROOTS], free = 0;
     int count = guess_roots(s.f, roots), depth = 0;
     *touch = (rdl_touch){.time_lo = 1, .time_hi = 1, .stage = RDL_STAGE_ROOTS, .order = 3};

@@ -5,6 +5,31 @@
 
 #include "narrow/filter.h"
 
+/* A quadratic in Bernstein form on [0, 1], each coefficient certain to the bound, also after restriction. */
+typedef struct rdli_quadratic {
+    double c[3], bound;
+} rdli_quadratic;
+
+/* The pair's polynomials in doubles: n = u x v and f = w . n, with bounds. */
+typedef struct rdli_cubic {
+    int kind, spans;
+    rdli_frame at[2];
+    rdli_quadratic n[3];
+    double f[4], bound;
+    double pad, size;
+} rdli_cubic;
+rdli_cubic rdli_cubic_of(int kind, const rdli_frame *start, const rdli_frame *end);
+
+enum rdli_inside { RDLI_INSIDE_NO, RDLI_INSIDE_MAYBE, RDLI_INSIDE_YES };
+
+/* Where the meeting point lies at any instant of [a, b] at which the pair is coplanar: certainly outside a feature,
+ * certainly inside both, or unknown. */
+enum rdli_inside rdli_cubic_inside(const rdli_cubic *s, double a, double b);
+
+/* For a pair that is coplanar all the time: does the point w come onto the segment u in (0, 1)? YES: [lo, hi] encloses
+ * the first such time and [0, lo] is free of such times. n: the pair's normals. */
+enum rdli_inside rdli_planar_event(const rdli_cubic *s, const double w[2][3], const double u[2][3], double *lo, double *hi);
+
 /* For frames of ordinary size (rdli_scale_points). False where doubles cannot decide: touch is then untouched. */
 bool rdli_roots_touch(int kind, const rdli_frame *start, const rdli_frame *end, rdl_touch *touch);
 

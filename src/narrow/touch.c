@@ -4,31 +4,40 @@
 #include "narrow/series.h"
 #include "narrow/stages.h"
 
-static bool exact_touch(mp_limb_t *limbs, size_t room, int kind, const rdl_motion *motion, double gap, rdl_touch *touch)
+typedef struct question {
+    int kind;
+    const rdl_motion *motion;
+    double gap;
+    rdli_frame start, end; /* of ordinary size */
+} question;
+
+static bool exact_touch(mp_limb_t *limbs, size_t room, const question *q, rdl_touch *touch)
 {
     rdli_arena arena = {limbs, 0, room, false};
-    if (gap > 0)
-        rdli_exact_gap(&arena, kind, motion, gap, touch);
-    else
-        rdli_exact_zero(&arena, kind, motion, touch);
+    if (q->gap > 0) {
+        rdli_exact_gap(&arena, q->kind, q->motion, q->gap, touch);
+    } else {
+        rdli_cubic doubles = rdli_cubic_of(q->kind, &q->start, &q->end);
+        rdli_exact_zero(&arena, q->kind, q->motion, &doubles, touch);
+    }
     return !arena.overflow;
 }
 
 /* Its own frame, so that only numbers of very different size need a large stack. */
-static __attribute__((noinline)) void wide_touch(int kind, const rdl_motion *motion, double gap, rdl_touch *touch)
+static __attribute__((noinline)) void wide_touch(const question *q, rdl_touch *touch)
 {
     mp_limb_t limbs[RDLI_LARGE_ROOM];
-    bool enough = exact_touch(limbs, RDLI_LARGE_ROOM, kind, motion, gap, touch);
+    bool enough = exact_touch(limbs, RDLI_LARGE_ROOM, q, touch);
     assert(enough);
     if (!enough)
         *touch = (rdl_touch){.time_hi = 1, .touches = 1, .stage = RDL_STAGE_EXACT};
 }
 
-static __attribute__((noinline)) void certain_touch(int kind, const rdl_motion *motion, double gap, rdl_touch *touch)
+static __attribute__((noinline)) void certain_touch(const question *q, rdl_touch *touch)
 {
     mp_limb_t limbs[RDLI_SMALL_ROOM];
-    if (!exact_touch(limbs, RDLI_SMALL_ROOM, kind, motion, gap, touch))
-        wide_touch(kind, motion, gap, touch);
+    if (!exact_touch(limbs, RDLI_SMALL_ROOM, q, touch))
+        wide_touch(q, touch);
 }
 
 void rdli_sized_of(const rdl_motion *motion, rdli_sized *sized)
@@ -44,12 +53,12 @@ static double sized_gap(const rdli_sized *sized, double gap)
 void rdli_find_open_touch(int kind, const rdl_motion *motion, const rdli_sized *sized, double gap, rdl_touch *touch)
 {
     double own_gap = sized_gap(sized, gap);
-    rdli_frame start = rdli_frame_of(kind, sized->motion.start), end = rdli_frame_of(kind, sized->motion.end);
-    if (gap > 0 && isnormal(own_gap) && rdli_series_touch(kind, &start, &end, own_gap, touch))
+    question q = {kind, motion, gap, rdli_frame_of(kind, sized->motion.start), rdli_frame_of(kind, sized->motion.end)};
+    if (gap > 0 && isnormal(own_gap) && rdli_series_touch(kind, &q.start, &q.end, own_gap, touch))
         return;
-    if (gap == 0 && rdli_roots_touch(kind, &start, &end, touch))
+    if (gap == 0 && rdli_roots_touch(kind, &q.start, &q.end, touch))
         return;
-    certain_touch(kind, motion, gap, touch);
+    certain_touch(&q, touch);
 }
 
 /* The answer of a screen's verdict; false where the pair is open. */

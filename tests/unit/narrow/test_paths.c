@@ -1,0 +1,155 @@
+/* unit/narrow/test_paths.c: the same answers on every path: AVX2 and portable lanes, one by one and in lists, doubles and
+ * exact arithmetic; and under every symmetry of the question. */
+#include <check.h>
+#include <math.h>
+#include <stdlib.h>
+#include <string.h>
+
+#include "cases.h"
+#include "families.h"
+#include "narrow/exact_pair.h"
+#include "narrow/screen.h"
+#include "narrow/stages.h"
+
+enum { COUNT = 60 };
+
+static void make(int family, int kind, rdl_motion motions[COUNT], double gaps[COUNT])
+{
+    random_source source = random_from(4000 + (uint64_t)(2 * family + kind));
+    for (int i = 0; i < COUNT; i++) {
+        motion_families[family].make(&source, kind, &motions[i]);
+        gaps[i] = i % 2 ? 0.05 * motion_size(&motions[i]) : 0;
+    }
+}
+
+START_TEST(lanes_give_the_same_bits)
+{
+    rdl_motion motions[COUNT];
+    double gaps[COUNT];
+    for (int kind = 0; kind < 2; kind++) {
+        make(_i, kind, motions, gaps);
+        for (int first = 0; first + RDLI_LANES <= COUNT; first += RDLI_LANES) {
+            rdli_lanes lanes;
+            uint8_t one[RDLI_LANES] = {9, 9, 9, 9}, other[RDLI_LANES] = {8, 8, 8, 8};
+            for (int i = 0; i < RDLI_LANES; i++) {
+                rdli_sized sized;
+                rdli_sized_of(&motions[first + i], &sized);
+                rdli_lanes_load(&lanes, i, &sized.motion, ldexp(gaps[first + i], sized.shift));
+            }
+            rdli_screen_portable(kind, &lanes, one);
+            if (rdli_screen_has_avx2())
+                rdli_screen_avx2(kind, &lanes, other);
+            else
+                rdli_screen_choose()(kind, &lanes, other);
+            ck_assert(memcmp(one, other, sizeof one) == 0);
+        }
+    }
+}
+END_TEST
+
+START_TEST(lists_and_singles)
+{
+    rdl_motion motions[COUNT];
+    double gaps[COUNT];
+    rdl_touch listed[COUNT], single;
+    uint8_t quiet[COUNT];
+    for (int kind = 0; kind < 2; kind++) {
+        make(_i, kind, motions, gaps);
+        for (size_t count = COUNT; count > COUNT - 5; count--) { /* every length of the last block */
+            rdli_find_touch_list(kind, count, motions, gaps, listed);
+            rdli_screen_list(kind, count, motions, gaps, quiet);
+            for (size_t i = 0; i < count; i++) {
+                rdli_find_touch(kind, &motions[i], gaps[i], &single);
+                ck_assert(memcmp(&single, &listed[i], sizeof single) == 0);
+                ck_assert(!(quiet[i] && single.touches));
+            }
+        }
+    }
+}
+END_TEST
+
+/* The exact stage alone against the answer of the whole chain; its doubles know nothing here. */
+START_TEST(exact_alone)
+{
+    rdl_motion motions[COUNT];
+    double gaps[COUNT];
+    static mp_limb_t limbs[RDLI_LARGE_ROOM];
+    for (int kind = 0; kind < 2; kind++) {
+        make(_i, kind, motions, gaps);
+        for (int i = 0; i < COUNT; i += motion_families[_i].percent < 10 ? 20 : 4) {
+            rdl_touch chain, exact;
+            rdli_arena arena = {limbs, 0, RDLI_LARGE_ROOM, false};
+            rdli_frame nothing = {{0}, {0}, {0}};
+            rdli_cubic doubles = rdli_cubic_of(kind, &nothing, &nothing);
+            rdli_find_touch(kind, &motions[i], 0, &chain);
+            rdli_exact_zero(&arena, kind, &motions[i], &doubles, &exact);
+            ck_assert(!arena.overflow && exact.touches == chain.touches);
+            ck_assert(exact.time_lo <= chain.time_hi && chain.time_lo <= exact.time_hi);
+        }
+    }
+}
+END_TEST
+
+START_TEST(symmetries)
+{
+    rdl_motion motions[COUNT];
+    double gaps[COUNT];
+    for (int kind = 0; kind < 2; kind++) {
+        make(_i, kind, motions, gaps);
+        for (int i = 0; i < COUNT; i += motion_families[_i].percent < 10 ? 20 : 6) {
+            rdl_touch here, there;
+            rdli_find_touch(kind, &motions[i], 0, &here);
+            for (int j = 1; j < (kind ? 8 : 6); j++) {
+                rdl_motion other = motion_permuted(&motions[i], kind ? edge_orders[j] : point_orders[j]);
+                rdli_find_touch(kind, &other, 0, &there);
+                ck_assert(here.touches == there.touches);
+                ck_assert(here.time_lo <= there.time_hi && there.time_lo <= here.time_hi);
+            }
+            rdl_motion back = motion_reversed(&motions[i]);
+            rdli_find_touch(kind, &back, 0, &there);
+            ck_assert(here.touches == there.touches);
+            if (here.touches) /* the first time backwards is the last one forwards */
+                ck_assert(1 - there.time_lo >= here.time_lo);
+        }
+    }
+}
+END_TEST
+
+START_TEST(numbers)
+{
+    mp_limb_t limbs[512];
+    rdli_arena arena = {limbs, 0, 512, false};
+    rdli_int a = rdli_int_of_double(&arena, 0x1.8p200, -300), b = rdli_int_of_double(&arena, -0x1p-290, -300);
+    rdli_int sum = rdli_int_add(&arena, a, b), product = rdli_int_mul(&arena, a, b);
+    ck_assert_int_eq(rdli_int_bits(a), 501);
+    ck_assert_int_eq(rdli_int_bits(sum), 501);
+    ck_assert(rdli_int_compare(rdli_int_sub(&arena, sum, b), a) == 0 && rdli_int_compare(sum, a) < 0);
+    ck_assert(rdli_int_sign(product) < 0 && rdli_int_below(product, -600) == 0x1.8p-90);
+    ck_assert(rdli_int_below(sum, -300) < 0x1.8p200 && rdli_int_above(sum, -300) == 0x1.8p200);
+    ck_assert(rdli_int_compare(rdli_int_shift(&arena, rdli_int_shift(&arena, a, 77), -77), a) == 0);
+    ck_assert(!arena.overflow);
+    for (int i = 0; i < 60; i++)
+        a = rdli_int_mul(&arena, a, a);
+    ck_assert(arena.overflow && arena.used <= arena.room);
+    ck_assert_int_eq(rdli_lowest_bit(0x1.8p-1073), -1074);
+    ck_assert_int_eq(rdli_lowest_bit(12), 2);
+}
+END_TEST
+
+int main(void)
+{
+    Suite *suite = suite_create("narrow paths");
+    TCase *all = tcase_create("all");
+    tcase_set_timeout(all, 120);
+    tcase_add_loop_test(all, lanes_give_the_same_bits, 0, motion_family_count);
+    tcase_add_loop_test(all, lists_and_singles, 0, motion_family_count);
+    tcase_add_loop_test(all, exact_alone, 0, motion_family_count);
+    tcase_add_loop_test(all, symmetries, 0, motion_family_count);
+    tcase_add_test(all, numbers);
+    suite_add_tcase(suite, all);
+    SRunner *runner = srunner_create(suite);
+    srunner_run_all(runner, CK_NORMAL);
+    int failed = srunner_ntests_failed(runner);
+    srunner_free(runner);
+    return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
+}
