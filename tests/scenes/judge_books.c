@@ -20,8 +20,29 @@ static uint32_t root_of(uint32_t *group, uint32_t v)
     return v;
 }
 
+/* Which vertices a rigid zone carries along is not in the report: all that moved without a contact go with the rigid zones,
+ * as one group. Sums over several zones obey the same rules. */
+static void join_rigid(judge *j, const judge_step *step, const books *all)
+{
+    const rdl_report *r = step->report;
+    uint32_t first = UINT32_MAX;
+    for (size_t c = 0; c < r->contact_count; c++)
+        for (int k = 0; k < 4 && r->zones[r->contacts[c].zone].level == RDL_LEVEL_RIGID; k++) {
+            uint32_t v = r->contacts[c].vertices[k];
+            if (world_is_driven(j->w, v))
+                continue;
+            first = first == UINT32_MAX ? v : first;
+            j->group[root_of(j->group, v)] = root_of(j->group, first);
+        }
+    for (uint32_t v = 0; v < j->w->vertex_count && first != UINT32_MAX; v++) {
+        bool moved = memcmp(step->delivered[v], step->proposed[v], sizeof step->delivered[v]) != 0;
+        if (moved && !world_is_driven(j->w, v) && !all[v].touched)
+            j->group[root_of(j->group, v)] = root_of(j->group, first);
+    }
+}
+
 /* Joins the movable vertices of each zone: its loaded contacts need not hang together, and the promise is for the zone. */
-static void join_contacts(judge *j, const rdl_report *r)
+static void join_contacts(judge *j, const rdl_report *r, books *all)
 {
     static uint32_t first_of_zone[WORLD_ELEMENTS * 64];
     size_t zones = r->zone_count < WORLD_ELEMENTS * 64 ? r->zone_count : WORLD_ELEMENTS * 64;
@@ -37,6 +58,7 @@ static void join_contacts(judge *j, const rdl_report *r)
                 continue;
             if (*first == UINT32_MAX)
                 *first = vertex[k];
+            all[vertex[k]].touched = true;
             j->group[root_of(j->group, vertex[k])] = root_of(j->group, *first);
         }
     }
@@ -53,7 +75,7 @@ static void mark_fed(judge *j, const rdl_report *r, books *all)
             driven = driven || world_is_driven(j->w, vertex[k]) || (said && (j->near[vertex[k]] & 2) != 0);
         for (int k = 0; k < 4; k++) {
             books *b = &all[root_of(j->group, vertex[k])];
-            b->touched = true;
+            b->touched = true; /* the root too */
             b->fed = b->fed || (driven && !world_is_driven(j->w, vertex[k]));
         }
     }
@@ -124,7 +146,9 @@ void judge_books(judge *j, const judge_step *step)
     static books all[WORLD_VERTICES];
     const rdl_report *r = step->report;
     memset(all, 0, sizeof all);
-    join_contacts(j, r);
+    join_contacts(j, r, all);
+    if (r->level_zones[RDL_LEVEL_RIGID] > 0)
+        join_rigid(j, step, all);
     mark_fed(j, r, all);
     size_t movable = 0;
     for (uint32_t v = 0; v < j->w->vertex_count; v++)

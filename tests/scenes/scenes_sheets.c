@@ -80,7 +80,7 @@ void inspect_spin(judge *j, const judge_step *step)
 
 void finish_spin(judge *j, unsigned steps, const uint64_t verdicts[4])
 {
-    expect_action(j, steps, verdicts, 2);
+    expect_action(j, steps, verdicts, 1);
 }
 
 /* Two sheets that cut each other, a strand through one of them, and a third sheet that flies onto the first. */
