@@ -9,10 +9,15 @@ build=$root/build
 shot=$build/demo/demo.h5
 
 sh "$root/tools/setup.sh" build
-if [ ! -f "$build/build.ninja" ]; then
-    meson setup --buildtype=release "$build" "$root"
+log=$(mktemp)
+trap 'rm -f "$log"' EXIT
+echo 'building raddle in build/'
+if ! { [ -f "$build/build.ninja" ] || meson setup --buildtype=release "$build" "$root"; } >"$log" 2>&1 ||
+    ! ninja -C "$build" tools/raddle >>"$log" 2>&1; then
+    cat "$log" >&2
+    echo 'demo: raddle does not build' >&2
+    exit 3
 fi
-ninja -C "$build" tools/raddle
 mkdir -p "$build/demo"
 cd "$build/demo"
 "$build/tools/raddle" demo --force -o "$shot" "$@"
