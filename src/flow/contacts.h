@@ -22,6 +22,7 @@ typedef struct rdli_contact {
     double start_distance[2]; /* enclosure of the distance at the start of the step, m */
     double floor;             /* end floor to be kept now: squeezed where there was no room, m */
     double ahead;             /* aimed above the floor for now, by what curvature took in earlier passes, m */
+    double slop;              /* aimed above the floor by the whole zone, by what a quick solve may miss, m */
     double depth;             /* below the floor when it was first seen, m */
     double time;              /* share of the piece at which the plane was taken */
     rdli_plane plane[RDLI_PLANES];

@@ -11,7 +11,7 @@ typedef struct rdli_response {
     rdli_room parent, stamp, local;      /* per vertex: union-find, pass in which it was last seen, number in its zone */
     uint32_t pass_stamp;
     rdli_room zones, zone_contacts, zone_vertices;
-    rdli_room rows, loads, row_work, inverse_mass, targets, solutions, scratch;
+    rdli_room rows, loads, all_loads, row_work, inverse_mass, targets, solutions, scratch;
     uint32_t zone_count;
     size_t row_total, vertex_total;
 } rdli_response;

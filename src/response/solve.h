@@ -11,6 +11,7 @@ typedef struct rdli_row {
     double weight[4], normal[3];
     double bound;         /* m, less what unmovable vertices contribute */
     double tolerance;     /* m, allowed violation */
+    uint32_t origin;      /* row number before idle rows were left out; the solve does not look at it */
     double scale;         /* 1 / sqrt(A_rr), filled by the solve; 0 = nothing in this row can move */
 } rdli_row;
 

@@ -104,28 +104,63 @@ static void keep_loads(rdli_contact *contact, bool fenced, const double *loads)
         contact->fence_load[d] = loads[d];
 }
 
+static double slack_of(const rdli_row *row, const double (*x)[3])
+{
+    double value = -row->bound;
+    for (int k = 0; k < 4; k++)
+        value += row->weight[k] * rdli_dot(row->normal, x[row->vertex[k]]);
+    return value;
+}
+
+static bool can_move(const rdli_row *row)
+{
+    return row->weight[0] != 0.0 || row->weight[1] != 0.0 || row->weight[2] != 0.0 || row->weight[3] != 0.0;
+}
+
 /* Among the rows in which something can move. */
 static double worst_violation(const rdli_problem *problem, const double (*x)[3])
 {
     double worst = 0.0;
     for (size_t r = 0; r < problem->row_count; r++) {
-        const rdli_row *row = &problem->rows[r];
-        if (row->weight[0] == 0.0 && row->weight[1] == 0.0 && row->weight[2] == 0.0 && row->weight[3] == 0.0)
-            continue;
-        double value = -row->bound;
-        for (int k = 0; k < 4; k++)
-            value += row->weight[k] * rdli_dot(row->normal, x[row->vertex[k]]);
-        worst = fmax(worst, -value);
+        if (can_move(&problem->rows[r]))
+            worst = fmax(worst, -slack_of(&problem->rows[r], x));
     }
     return worst;
 }
 
-/* How far above its least end a row aims, and how exactly it must be met. The margin only has to absorb what the solve
- * leaves: the setting's share of the floor, but no more than half of the zone's worst violation, so that violations by a
- * rounding do not blow up a whole sheet. While the zone is violated, planes will be taken anew: a fiftieth of the present
- * violation is exact enough, so that early passes are cheap and late ones exact. A clean zone is solved to a fraction of a
- * millionth of its correction, so that the answer is the nearest one to the promised 1e-6. Never below what the positions
- * can resolve. */
+/* Zones of few rows are solved exactly at once. */
+enum { FEW_ROWS = 64 };
+/* A large violated zone is solved to a twentieth of its violation and aims as much above, so that every row ends above
+ * its floor although the solve is quick; each clean pass takes four fifths of that back. */
+static const double slop_share = 0.05, slop_growth = 1.5, slop_kept = 0.2, slop_most = 0.5;
+
+static double zone_slop(const job *j, const rdli_zone *zone, size_t rows, double correction)
+{
+    const uint32_t *order = (const uint32_t *)j->response->zone_contacts.data + zone->contact_first;
+    double slop = 0.0, floor = DBL_MAX;
+    bool again = false;
+    for (uint32_t i = 0; i < zone->contact_count; i++) {
+        const rdli_contact *contact = &j->contacts[order[i]];
+        slop = fmax(slop, contact->slop);
+        floor = fmin(floor, contact->floor);
+        again = again || (contact->violated && contact->slop > 0.0);
+    }
+    if (rows <= FEW_ROWS)
+        slop = 0.0;
+    else if (zone->violated)
+        slop = fmin(fmax(again ? slop_growth * slop : slop, slop_share * correction), slop_most * floor);
+    else
+        slop *= slop_kept;
+    for (uint32_t i = 0; i < zone->contact_count; i++)
+        j->contacts[order[i]].slop = slop;
+    return slop;
+}
+
+/* How far above its least end a row aims, and how exactly it must be met. The margin has to absorb what the solve leaves:
+ * the setting's share of the floor, but no more than half of the zone's worst violation, so that violations by a rounding
+ * do not blow up a whole sheet; and the slop of large zones while they are not refined. A small or refined zone is solved
+ * to a fraction of a millionth of its correction, so that the answer is the nearest one to the promised 1e-6. Never below
+ * what the positions can resolve. */
 static void set_tolerances(const job *j, const rdli_zone *zone, rdli_problem *problem)
 {
     const uint32_t *vertices = (const uint32_t *)j->response->zone_vertices.data + zone->vertex_first;
@@ -135,13 +170,32 @@ static void set_tolerances(const job *j, const rdli_zone *zone, rdli_problem *pr
         for (int k = 0; k < 3; k++)
             largest = fmax(largest, fabs(problem->target[i][k]));
     }
-    double resolved = largest * 0x1p-50;
-    double coarse = zone->violated ? 0.02 * worst_violation(problem, (const double (*)[3])problem->solution) : 0.0;
+    double resolved = largest * 0x1p-50, slop = zone_slop(j, zone, problem->row_count, correction);
     for (size_t r = 0; r < problem->row_count; r++) {
         double margin = fmin(problem->rows[r].tolerance, 0.5 * correction) + 2.0 * resolved;
-        problem->rows[r].bound += margin;
-        problem->rows[r].tolerance = fmax(fmin(0.5 * margin, fmax(2e-8 * correction, coarse)), resolved);
+        problem->rows[r].bound += margin + slop;
+        problem->rows[r].tolerance = fmax(fmax(fmin(0.5 * margin, 2e-8 * correction), 0.5 * slop), resolved);
     }
+}
+
+/* A solve moves vertices about as far as the worst violation that it starts from. Rows that are several times as far from
+ * their bound and carry nothing are left out; should one be violated after all, the next detection says so. */
+static void leave_out_idle_rows(rdli_problem *problem, double *all_loads)
+{
+    double reach = 4.0 * worst_violation(problem, (const double (*)[3])problem->solution);
+    size_t kept = 0;
+    for (size_t r = 0; r < problem->row_count; r++) {
+        rdli_row *row = &problem->rows[r];
+        row->origin = (uint32_t)r;
+        all_loads[r] = 0.0;
+        bool idle = problem->load[r] == 0.0 && slack_of(row, (const double (*)[3])problem->solution) > reach;
+        if (idle || !can_move(row))
+            continue;
+        problem->rows[kept] = *row;
+        problem->load[kept] = problem->load[r];
+        kept++;
+    }
+    problem->row_count = kept;
 }
 
 static void account(const job *j, rdli_zone *zone, const double (*solution)[3])
@@ -275,14 +329,18 @@ static void solve_zone(void *data, size_t index, unsigned worker)
             row += rows_of(&j->contacts[order[i]], fenced);
         }
         set_tolerances(j, zone, &problem);
+        double *all_loads = (double *)r->all_loads.data + zone->row_first;
+        leave_out_idle_rows(&problem, all_loads);
         rdli_solved solved = rdli_solve(&problem);
         zone->sweeps = solved.sweeps;
         zone->infeasible = solved.infeasible;
-        zone->exhausted = !solved.converged && solved.worst_after > 0x1p-7 * solved.worst_before;
+        zone->exhausted = !solved.converged && solved.worst_after > 0.25 * solved.worst_before;
         zone->residual = solved.worst_before > 0.0 ? fmax(solved.worst_after, 0.0) / solved.worst_before : 0.0;
+        for (size_t k = 0; k < problem.row_count; k++)
+            all_loads[problem.rows[k].origin] = problem.load[k];
         row = 0;
         for (uint32_t i = 0; i < zone->contact_count; i++) {
-            keep_loads(&j->contacts[order[i]], fenced, &problem.load[row]);
+            keep_loads(&j->contacts[order[i]], fenced, &all_loads[row]);
             row += rows_of(&j->contacts[order[i]], fenced);
         }
     }
@@ -297,6 +355,7 @@ rdl_status rdli_response_reserve(rdli_response *r)
     size_t rows = r->row_total, vertices = r->vertex_total;
     bool fits = rdli_room_reserve(r->memory, &r->rows, rows, sizeof(rdli_row), false)
         && rdli_room_reserve(r->memory, &r->loads, rows, sizeof(double), false)
+        && rdli_room_reserve(r->memory, &r->all_loads, rows, sizeof(double), false)
         && rdli_room_reserve(r->memory, &r->row_work, 4 * rows, sizeof(double), false)
         && rdli_room_reserve(r->memory, &r->inverse_mass, vertices, sizeof(double), false)
         && rdli_room_reserve(r->memory, &r->targets, vertices, 3 * sizeof(double), false)
