@@ -5,28 +5,27 @@
 #include <pthread.h>
 
 #include "common.h"
+#include "driver/boxtree.h"
 
 typedef struct pair_list {
     pthread_mutex_t lock;
     uint32_t (*pairs)[2];
-    size_t count, room, blocks;
-    unsigned busy[RDL_THREADS_MAX];
+    size_t count, room;
+    unsigned threads, busy[RDL_THREADS_MAX];
     bool overlapped;
 } pair_list;
 
 static void collect(void *user, unsigned worker, const uint32_t (*pairs)[2], size_t count)
 {
     pair_list *list = user;
-    ck_assert_uint_gt(count, 0);
     pthread_mutex_lock(&list->lock);
-    list->overlapped |= worker >= RDL_THREADS_MAX || list->busy[worker]++ != 0;
+    list->overlapped |= count == 0 || worker >= list->threads || list->busy[worker]++ != 0;
     while (list->count + count > list->room) {
         list->room = list->room * 2 + 1024;
         list->pairs = realloc(list->pairs, list->room * sizeof *list->pairs);
     }
     memcpy(list->pairs + list->count, pairs, count * sizeof *pairs);
     list->count += count;
-    list->blocks++;
     list->busy[worker]--;
     pthread_mutex_unlock(&list->lock);
 }
@@ -35,6 +34,7 @@ static pair_list new_list(void)
 {
     pair_list list;
     memset(&list, 0, sizeof list);
+    list.threads = 1;
     pthread_mutex_init(&list.lock, NULL);
     return list;
 }
@@ -86,14 +86,21 @@ static void expect_equal(const pair_list *got, const pair_list *want)
     ck_assert(got->count == 0 || memcmp(got->pairs, want->pairs, got->count * sizeof *got->pairs) == 0);
 }
 
-static void check_tree(const rdl_tree *tree, unsigned threads, const rdl_box *boxes, size_t count, const uint32_t *corners)
+static void check_against(const pair_list *want, const rdl_tree *tree, unsigned threads, const uint32_t *corners)
 {
-    pair_list want = brute_force(boxes, count, corners), got = new_list();
+    pair_list got = new_list();
+    got.threads = threads;
     ck_assert_int_eq(rdl_tree_self_pairs(tree, corners, collect, &got), RDL_OK);
     if (threads > 1 && got.count > 0)
         qsort(got.pairs, got.count, sizeof *got.pairs, compare_pairs);
-    expect_equal(&got, &want);
+    expect_equal(&got, want);
     free_list(&got);
+}
+
+static void check_tree(const rdl_tree *tree, unsigned threads, const rdl_box *boxes, size_t count, const uint32_t *corners)
+{
+    pair_list want = brute_force(boxes, count, corners);
+    check_against(&want, tree, threads, corners);
     free_list(&want);
 }
 
@@ -120,6 +127,52 @@ START_TEST(test_brute_force)
 }
 END_TEST
 
+/* Portable code, and so little room that the pairs come in many stretches: the same pairs in the same order. */
+START_TEST(test_same_everywhere)
+{
+    const size_t count = 3000;
+    for (int size = 0; size < 3; size++) {
+        rdl_box *boxes = random_boxes(count, (double[]){0.03, 0.1, 0.6}[size], (uint64_t)size);
+        pair_list want = brute_force(boxes, count, NULL);
+        for (unsigned threads = 1; threads <= 4; threads *= 2)
+            for (int vector = 0; vector < 2; vector++) {
+                rdl_host host = ledger_host(&(ledger){0}, threads);
+                rdl_tree *tree;
+                ck_assert_int_eq(rdl_tree_create(boxes, count, &host, &tree, NULL), RDL_OK);
+                rdli_boxtree_use_vector(tree, vector != 0);
+                for (int l = 0; l < 3; l++) {
+                    rdli_boxtree_limit(tree, (size_t[]){SIZE_MAX, 5000, 100}[l]);
+                    check_against(&want, tree, threads, NULL);
+                }
+                ck_assert_int_eq(rdl_tree_update(tree, boxes, NULL), RDL_OK);
+                check_against(&want, tree, threads, NULL);
+                rdl_tree_destroy(tree);
+            }
+        free_list(&want);
+        free(boxes);
+    }
+}
+END_TEST
+
+/* Thousands of boxes in one place: lists and rows grow far beyond their first room. */
+START_TEST(test_crowd)
+{
+    const size_t count = 8000, crowd = 1300;
+    rdl_box *boxes = random_boxes(count, 0.0001, 4);
+    for (size_t i = 0; i < crowd; i++)
+        boxes[i * 6 + 1] = (rdl_box){{0.5f, 0.5f, 0.5f}, {0.5001f, 0.5001f, 0.5001f}};
+    boxes[13] = (rdl_box){{0, 0, 0}, {1.1f, 1.1f, 1.1f}};
+    for (unsigned threads = 1; threads <= 2; threads++) {
+        rdl_host host = ledger_host(&(ledger){0}, threads);
+        rdl_tree *tree;
+        ck_assert_int_eq(rdl_tree_create(boxes, count, &host, &tree, NULL), RDL_OK);
+        check_tree(tree, threads, boxes, count, NULL);
+        rdl_tree_destroy(tree);
+    }
+    free(boxes);
+}
+END_TEST
+
 /* Exact counts: n^3 cubes of width w, k < w < k + 1, on a unit lattice (METHODS: closed formula). */
 START_TEST(test_lattice_counts)
 {
@@ -138,8 +191,10 @@ START_TEST(test_lattice_counts)
         rdl_tree *tree;
         ck_assert_int_eq(rdl_tree_create(boxes, (size_t)n * n * n, NULL, &tree, NULL), RDL_OK);
         pair_list got = new_list();
+        got.threads = RDL_THREADS_MAX;
         ck_assert_int_eq(rdl_tree_self_pairs(tree, NULL, collect, &got), RDL_OK);
         ck_assert_uint_eq(got.count, cases[c].pairs);
+        ck_assert(!got.overlapped);
         free_list(&got);
         rdl_tree_destroy(tree);
         free(boxes);
@@ -154,6 +209,7 @@ START_TEST(test_closed)
     rdl_tree *tree;
     ck_assert_int_eq(rdl_tree_create(boxes, 3, NULL, &tree, NULL), RDL_OK);
     pair_list got = new_list();
+    got.threads = RDL_THREADS_MAX;
     ck_assert_int_eq(rdl_tree_self_pairs(tree, NULL, collect, &got), RDL_OK);
     ck_assert_uint_eq(got.count, 1);
     ck_assert_uint_eq(got.pairs[0][0], 0);
@@ -262,6 +318,7 @@ START_TEST(test_failing_memory)
         rdl_host host = ledger_host(&l, 2);
         rdl_tree *tree = NULL;
         pair_list got = new_list();
+        got.threads = 2;
         rdl_status status = rdl_tree_create(boxes, count, &host, &tree, NULL);
         if (status == RDL_OK) {
             status = rdl_tree_self_pairs(tree, NULL, collect, &got);
@@ -290,6 +347,8 @@ int main(void)
     TCase *all = tcase_create("tree");
     tcase_set_timeout(all, 60);
     tcase_add_test(all, test_brute_force);
+    tcase_add_test(all, test_same_everywhere);
+    tcase_add_test(all, test_crowd);
     tcase_add_test(all, test_lattice_counts);
     tcase_add_test(all, test_closed);
     tcase_add_test(all, test_updates);
