@@ -65,6 +65,8 @@ rdl_status rdli_engine_create(const rdl_scene *scene, const rdl_settings *settin
     if (status == RDL_OK)
         status = rdli_broad_create(&engine->memory, engine->workers, &engine->broad);
     if (status == RDL_OK)
+        rdli_broad_use_vector(engine->broad, engine->settings.vector != 0.0);
+    if (status == RDL_OK)
         status = reserve_all(engine);
     rdli_response_init(&engine->response, &engine->memory, engine->workers);
     if (status != RDL_OK) {
