@@ -1,6 +1,6 @@
 /* Multi-step scenes, each judged after every step without the library. Without arguments all of them run, with one line of
  * results for each; `--scene NAME [--verbose] [--float32] [--scale POWER_OF_TWO] [--threads N] [--portable]
- * [--saboteur start|proposed]` plays one. */
+ * [--saboteur start|proposed]` plays one; with `--compare` it plays in all the ways that must give the same bits. */
 #include <check.h>
 #include <math.h>
 #include <stdio.h>
@@ -34,60 +34,78 @@ START_TEST(little_is_frozen)
 }
 END_TEST
 
-static void expect_same_track(const char *name, const play_result *a, const play_result *b, double scale, const char *how)
+/* Compares two plays bit by bit, the first one scaled; false with a line on stdout where they differ. */
+static bool same_track(const char *name, const play_result *a, const play_result *b, double scale, const char *how)
 {
-    ck_assert_msg(a->steps == b->steps, "%s, %s: %u steps, not %u", name, how, b->steps, a->steps);
     size_t n = a->vertex_count * 3;
+    if (a->steps != b->steps) {
+        printf("%s, %s: %u steps, not %u\n", name, how, b->steps, a->steps);
+        return false;
+    }
     for (unsigned s = 0; s < a->steps; s++) {
-        ck_assert_msg(a->verdict_track[s] == b->verdict_track[s], "%s, %s: another verdict in step %u", name, how, s);
+        if (a->verdict_track[s] != b->verdict_track[s]) {
+            printf("%s, %s: another verdict in step %u\n", name, how, s);
+            return false;
+        }
         for (size_t i = 0; i < n; i++) {
             double x = a->track[s * n + i] * scale, y = b->track[s * n + i];
-            ck_assert_msg(memcmp(&x, &y, sizeof x) == 0, "%s, %s: other bits in step %u at vertex %zu: %.17g, not %.17g",
-                          name, how, s, i / 3, y, x);
+            if (memcmp(&x, &y, sizeof x) != 0) {
+                printf("%s, %s: other bits in step %u at vertex %zu: %.17g, not %.17g\n", name, how, s, i / 3, y, x);
+                return false;
+            }
         }
     }
+    return true;
+}
+
+/* One way of playing a scene that must give the bits of the plain way. */
+typedef struct way {
+    const char *how;
+    unsigned threads, flag; /* flag: only scenes that have it; 0: all */
+    double vector, scale;
+} way;
+
+static const way ways[] = {
+    {"2 threads", 2, 0, 1.0, 1.0},
+    {"4 threads", 4, 0, 1.0, 1.0},
+    {"no vector instructions", 1, 0, 0.0, 1.0},
+    {"scale 2^-27", 1, ALSO_SMALL, 1.0, 0x1p-27}, /* DNA */
+    {"scale 2^10", 1, ALSO_LARGE, 1.0, 0x1p10},   /* cables */
+};
+
+static bool same_bits_in(const scene *s, size_t from, size_t to)
+{
+    play_options options = play_defaults();
+    play_result base, other;
+    bool same = true;
+    options.judged = false;
+    play(s, &options, &base);
+    for (size_t i = from; i < to; i++) {
+        if (ways[i].flag != 0 && (s->flags & ways[i].flag) == 0)
+            continue;
+        options.threads = ways[i].threads;
+        options.vector = ways[i].vector;
+        options.scale = ways[i].scale;
+        play(s, &options, &other);
+        same = same_track(s->name, &base, &other, ways[i].scale, ways[i].how) && same;
+        play_release(&other);
+    }
+    play_release(&base);
+    return same;
 }
 
 /* The engine on more threads, and without vector instructions, delivers the same bits. */
 START_TEST(same_bits)
 {
-    static const struct { unsigned threads; double vector; const char *how; } ways[3] = {
-        {2, 1.0, "2 threads"}, {4, 1.0, "4 threads"}, {1, 0.0, "no vector instructions"}};
-    play_options options = play_defaults();
-    play_result base, other;
-    options.judged = false;
-    play(&scenes[_i], &options, &base);
-    for (int way = 0; way < 3; way++) {
-        options.threads = ways[way].threads;
-        options.vector = ways[way].vector;
-        play(&scenes[_i], &options, &other);
-        expect_same_track(scenes[_i].name, &base, &other, 1.0, ways[way].how);
-        play_release(&other);
-    }
-    play_release(&base);
+    ck_assert_msg(same_bits_in(&scenes[_i], 0, 3), "%s: other bits", scenes[_i].name);
 }
 END_TEST
-
-static void scaled(const scene *s, double scale, const char *how)
-{
-    play_options options = play_defaults();
-    play_result base, other;
-    options.judged = false;
-    play(s, &options, &base);
-    options.scale = scale;
-    play(s, &options, &other);
-    expect_same_track(s->name, &base, &other, scale, how);
-    play_release(&base);
-    play_release(&other);
-}
 
 /* Lengths times a power of two: the same verdicts and the same bits, multiplied. */
 START_TEST(scale_free)
 {
-    if (scenes[_i].flags & ALSO_SMALL)
-        scaled(&scenes[_i], 0x1p-27, "scale 2^-27");
-    if (scenes[_i].flags & ALSO_LARGE)
-        scaled(&scenes[_i], 0x1p10, "scale 2^10");
+    if (scenes[_i].flags & (ALSO_SMALL | ALSO_LARGE))
+        ck_assert_msg(same_bits_in(&scenes[_i], 3, 5), "%s: other bits at another scale", scenes[_i].name);
 }
 END_TEST
 
@@ -138,6 +156,7 @@ END_TEST
 static int play_one(int argc, char **argv)
 {
     play_options options = play_defaults();
+    bool compare = false;
     int index = -1;
     for (int i = 1; i < argc; i++) {
         const char *value = i + 1 < argc ? argv[i + 1] : "";
@@ -147,6 +166,8 @@ static int play_one(int argc, char **argv)
             options.format = RDL_FLOAT32;
         else if (strcmp(argv[i], "--portable") == 0)
             options.vector = 0.0;
+        else if (strcmp(argv[i], "--compare") == 0)
+            compare = true;
         else if (strcmp(argv[i], "--scale") == 0)
             options.scale = ldexp(1.0, atoi(value));
         else if (strcmp(argv[i], "--threads") == 0)
@@ -161,6 +182,8 @@ static int play_one(int argc, char **argv)
             fprintf(stderr, "%s\n", scenes[i].name);
         return EXIT_FAILURE;
     }
+    if (compare)
+        return same_bits_in(&scenes[index], 0, sizeof ways / sizeof ways[0]) ? EXIT_SUCCESS : EXIT_FAILURE;
     play_result result;
     play(&scenes[index], &options, &result);
     play_print(scenes[index].name, &result);
