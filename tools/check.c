@@ -238,10 +238,9 @@ static void print_text(const checker *c)
 
 static int run(checker *c, unsigned threads)
 {
-    rdl_fault fault = {0, ""};
-    rdl_status status = rdl_shot_open(c->path, &c->shot, &fault);
-    if (status != RDL_OK)
-        return cli_fail("check", c->path, -1, status, &fault);
+    int code = CLI_DONE;
+    if (!cli_open_shot("check", c->path, &c->shot, &code))
+        return code;
     c->scene = rdl_shot_scene(c->shot);
     c->about = rdl_shot_describe(c->shot);
     unsigned held = c->about->contents;
@@ -250,7 +249,7 @@ static int run(checker *c, unsigned threads)
     c->to = (held & RDL_SHOT_DELIVERED) != 0  ? RDL_SHOT_DELIVERED
             : (held & RDL_SHOT_PROPOSED) != 0 ? RDL_SHOT_PROPOSED
                                               : RDL_SHOT_START;
-    int code = check_all(c, threads);
+    code = check_all(c, threads);
     bool done = code == CLI_DONE || code == CLI_FINDINGS;
     if (done && c->json)
         return cli_print_json("check", make_json(c), code);

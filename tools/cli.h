@@ -67,6 +67,10 @@ int cli_print_json(const char *verb, json_t *object, int code);
 /* A text for JSON; names in files are valid UTF-8, file names need not be. */
 json_t *cli_json_text(const char *text);
 
+/* Opens a shot, within half a minute of processor time: HDF5 can loop over a broken file. False: *code is set, an error
+ * was printed. */
+bool cli_open_shot(const char *verb, const char *path, rdl_shot **shot, int *code);
+
 /* ---- progress on standard error when it is a terminal ---- */
 void cli_progress(const char *verb, size_t done, size_t count);
 void cli_progress_end(void);

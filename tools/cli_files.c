@@ -1,8 +1,10 @@
-/* cli_files.c: progress, interrupts, and output files that appear whole or not at all. */
+/* cli_files.c: progress, interrupts, opening shots, and output files that appear whole or not at all. */
+#define _XOPEN_SOURCE 700 /* setitimer */
 #include <errno.h>
 #include <fcntl.h>
 #include <signal.h>
 #include <string.h>
+#include <sys/time.h>
 #include <unistd.h>
 
 #include "cli.h"
@@ -60,6 +62,23 @@ int cli_cancel(void *user)
 {
     (void)user;
     return interrupted;
+}
+
+static void limit_processor_time(time_t seconds)
+{
+    struct itimerval limit = {{0, 0}, {seconds, 0}};
+    setitimer(ITIMER_PROF, &limit, NULL);
+}
+
+bool cli_open_shot(const char *verb, const char *path, rdl_shot **shot, int *code)
+{
+    rdl_fault fault = {0, ""};
+    limit_processor_time(30);
+    rdl_status status = rdl_shot_open(path, shot, &fault);
+    limit_processor_time(0);
+    if (status != RDL_OK)
+        *code = cli_fail(verb, path, -1, status, &fault);
+    return status == RDL_OK;
 }
 
 bool cli_output_begin(cli_output *output, const char *verb, const char *path, bool force, int *code)

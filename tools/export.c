@@ -181,11 +181,10 @@ static bool read_which(exporter *e, const char *text, unsigned contents)
 
 static int run(exporter *e, const cli_line *line)
 {
-    rdl_fault fault = {0, ""};
     struct stat info;
-    rdl_status status = rdl_shot_open(e->path, &e->shot, &fault);
-    if (status != RDL_OK)
-        return cli_fail("export", e->path, -1, status, &fault);
+    int code = CLI_DONE;
+    if (!cli_open_shot("export", e->path, &e->shot, &code))
+        return code;
     const rdl_shot_info *about = rdl_shot_describe(e->shot);
     e->scene = rdl_shot_scene(e->shot);
     if (about->frame_count == 0) {
@@ -202,7 +201,7 @@ static int run(exporter *e, const cli_line *line)
     e->positions = malloc(3 * e->scene->vertex_count * sizeof *e->positions);
     if (e->positions == NULL)
         return cli_fail("export", e->path, -1, RDL_NO_MEMORY, NULL);
-    int code = export_all(e);
+    code = export_all(e);
     if (code == CLI_DONE)
         printf("%zu files\n", e->last + 1 - e->first);
     return code;

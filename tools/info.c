@@ -201,16 +201,14 @@ int verb_info(int argc, char **argv)
 {
     cli_line line;
     int code = CLI_DONE;
-    rdl_fault fault = {0, ""};
     summary s = {0};
     if (!cli_read(&spec, argc, argv, &line, &code))
         return code;
     s.path = line.operands[0];
     s.list = cli_value(&spec, &line, "frames") != NULL;
     s.json = cli_value(&spec, &line, "json") != NULL;
-    rdl_status status = rdl_shot_open(s.path, &s.shot, &fault);
-    if (status != RDL_OK)
-        return cli_fail("info", s.path, -1, status, &fault);
+    if (!cli_open_shot("info", s.path, &s.shot, &code))
+        return code;
     s.scene = rdl_shot_scene(s.shot);
     s.about = rdl_shot_describe(s.shot);
     s.parts = calloc(s.scene->part_count, sizeof *s.parts);

@@ -72,23 +72,24 @@ static int finish(int code)
     return code;
 }
 
-static void pass_on(int number)
+/* Ctrl-C in a terminal reaches both processes; what another process sent reaches this one alone, and is passed on. */
+static void pass_on(int number, siginfo_t *info, void *context)
 {
-    if (child_id > 0)
+    (void)context;
+    if (child_id > 0 && info->si_code <= 0)
         kill(child_id, number);
 }
 
-/* Ctrl-C in a terminal reaches both processes, so the parent passes on only what was sent to it alone. */
 static void wait_quietly(void)
 {
+    static const int numbers[] = {SIGINT, SIGTERM, SIGHUP};
     struct sigaction action;
     memset(&action, 0, sizeof action);
     sigemptyset(&action.sa_mask);
-    action.sa_handler = SIG_IGN;
-    sigaction(SIGINT, &action, NULL);
-    action.sa_handler = pass_on;
-    sigaction(SIGTERM, &action, NULL);
-    sigaction(SIGHUP, &action, NULL);
+    action.sa_sigaction = pass_on;
+    action.sa_flags = SA_SIGINFO;
+    for (size_t i = 0; i < sizeof numbers / sizeof numbers[0]; i++)
+        sigaction(numbers[i], &action, NULL);
 }
 
 static int report_death(const char *name, int signal_number)
@@ -97,6 +98,10 @@ static int report_death(const char *name, int signal_number)
         unlink(pending->path);
     if (signal_number == SIGINT || signal_number == SIGTERM || signal_number == SIGHUP)
         return CLI_INTERRUPTED;
+    if (signal_number == SIGPROF) {
+        cli_error(name, "the shot takes too long to open: a broken file can do that");
+        return CLI_NOT_FINISHED;
+    }
     cli_error(name, "the work ended by signal %d (%s); a broken input file can do that", signal_number,
               strsignal(signal_number));
     return CLI_NOT_FINISHED;

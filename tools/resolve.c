@@ -320,13 +320,12 @@ static int check_input(const resolver *r)
 
 static int run(resolver *r, const cli_line *line, unsigned threads)
 {
-    rdl_fault fault = {0, ""};
-    rdl_status status = rdl_shot_open(r->path, &r->shot, &fault);
-    if (status != RDL_OK)
-        return cli_fail("resolve", r->path, -1, status, &fault);
+    int code = CLI_DONE;
+    if (!cli_open_shot("resolve", r->path, &r->shot, &code))
+        return code;
     r->scene = rdl_shot_scene(r->shot);
     r->about = rdl_shot_describe(r->shot);
-    int code = check_input(r);
+    code = check_input(r);
     if (code == CLI_DONE)
         code = resolve_all(r, line, threads);
     if (r->json && (code == CLI_DONE || code == CLI_FINDINGS))

@@ -117,6 +117,10 @@ static int build(const char *kind, plan *p)
         to_resolve(p);
     else if (strcmp(kind, "bodies") == 0)
         bodies(p);
+    else if (strcmp(kind, "long") == 0) {
+        to_resolve(p);
+        p->frames = 2000;
+    }
     else if (strcmp(kind, "poses") == 0) {
         cross(p);
         p->contents = RDL_SHOT_DELIVERED;
@@ -174,8 +178,9 @@ static rdl_status write_plan(const char *path, plan *p, rdl_fault *fault)
     rdl_status status = rdl_shot_create(path, &scene, &options, &writer, fault);
     for (size_t k = 0; status == RDL_OK && k < p->frames; k++) {
         const double middle = 0.5;
+        size_t at = k % FRAMES;
         rdl_shot_frame frame = {.time = 0.25 * (double)k, .picture = (uint32_t)k, .verdict = RDL_CLEAR,
-            .start = p->start[k][0], .proposed = p->proposed[k][0], .delivered = p->delivered[k][0]};
+            .start = p->start[at][0], .proposed = p->proposed[at][0], .delivered = p->delivered[at][0]};
         if (p->waypoints > 0 && k == 1) {
             frame.verdict = RDL_RESOLVED;
             frame.waypoint_count = 1;

@@ -7,6 +7,7 @@
 #include <string.h>
 #include <sys/resource.h>
 #include <sys/wait.h>
+#include <time.h>
 #include <unistd.h>
 
 #include "shot/sha256.h"
@@ -389,6 +390,50 @@ START_TEST(a_killed_recording_is_readable)
 }
 END_TEST
 
+/* Killed at any moment, in the middle of a frame too: every frame that was flushed is there. Moments by a fixed rule. */
+START_TEST(killed_at_any_moment)
+{
+    const char *path = scratch("moment.h5"), *part = scratch("moment.h5.part");
+    for (unsigned run = 0; run < 40; run++) {
+        int flushed[2];
+        unlink(part);
+        ck_assert_int_eq(pipe(flushed), 0);
+        pid_t child = fork();
+        if (child == 0) {
+            static made_frame made;
+            rdl_shot_writer *writer = NULL;
+            rdl_status status = rdl_shot_create(path, small_scene(), NULL, &writer, NULL);
+            for (unsigned k = 0; status == RDL_OK; k++) {
+                make_frame(&made, k);
+                status = rdl_shot_append(writer, &made.frame, NULL);
+                if (write(flushed[1], "x", 1) != 1)
+                    break;
+            }
+            _exit(1);
+        }
+        char bytes[256];
+        close(flushed[1]);
+        size_t written = 0;
+        for (; written < 1 + run / 8; written++)
+            ck_assert_int_eq(read(flushed[0], bytes, 1), 1);
+        struct timespec pause = {0, (long)(run * 7919 % 3000) * 1000};
+        nanosleep(&pause, NULL);
+        kill(child, SIGKILL);
+        waitpid(child, NULL, 0);
+        for (ssize_t more; (more = read(flushed[0], bytes, sizeof bytes)) > 0;)
+            written += (size_t)more;
+        close(flushed[0]);
+        rdl_shot *shot = open_good(part);
+        size_t frames = rdl_shot_describe(shot)->frame_count;
+        ck_assert_uint_ge(frames, written);
+        ck_assert_uint_le(frames, written + 1);
+        for (unsigned k = 0; k < frames; k++)
+            expect_frame(shot, k, k);
+        rdl_shot_close(shot);
+    }
+}
+END_TEST
+
 /* A disk that is full: a limit on the file's size makes the system refuse writes, also for root. */
 START_TEST(a_full_disk_is_an_error_and_leaves_nothing)
 {
@@ -479,6 +524,7 @@ int main(void)
     tcase_add_test(group, discard_leaves_nothing);
     tcase_add_test(group, places_that_cannot_be_written_are_named);
     tcase_add_test(group, a_killed_recording_is_readable);
+    tcase_add_test(group, killed_at_any_moment);
     tcase_add_test(group, a_full_disk_is_an_error_and_leaves_nothing);
     tcase_add_test(group, the_hosts_hdf5_is_left_alone);
     suite_add_tcase(suite, group);
