@@ -11,6 +11,7 @@ struct rdli_broad {
     const rdli_kernels *kernels;
     rdli_marked_tree trees[KINDS];
     rdli_query queries[2]; /* point-triangle, edge-edge */
+    rdli_apart apart;
 };
 
 static bool attached(const rdli_mesh *mesh, uint32_t v, uint32_t w)
@@ -79,6 +80,8 @@ static rdl_status collect(rdli_broad *broad, unsigned which, const rdli_mesh *me
     query->part_count = mesh->part_count;
     query->keep = which == 0 ? keep_point_triangle : keep_edge_edge;
     query->rules = mesh;
+    query->records = broad->apart.records;
+    query->vertices_b = which == 0 ? (const uint32_t *)mesh->triangles : (const uint32_t *)mesh->edges;
     rdl_status status = rdli_query_run(broad->memory, broad->workers, broad->kernels, query, count);
     return status == RDL_OK ? rdli_rows_list(broad->memory, broad->workers, &query->rows, list) : status;
 }
@@ -104,6 +107,7 @@ void rdli_broad_destroy(rdli_broad *broad)
         rdli_marks_release(broad->memory, &broad->trees[kind]);
     for (unsigned which = 0; which < 2; which++)
         rdli_query_release(broad->memory, &broad->queries[which]);
+    rdli_room_release(broad->memory, &broad->apart.record_room);
     rdli_give(broad->memory, broad, 1, sizeof *broad);
 }
 
@@ -112,8 +116,9 @@ void rdli_broad_use_vector(rdli_broad *broad, bool vector)
     broad->kernels = rdli_kernels_choose(vector);
 }
 
-rdl_status rdli_broad_pairs(rdli_broad *broad, const rdli_mesh *mesh, const rdli_boxes *boxes, const uint8_t *awake,
-                            rdli_pairs *pairs)
+/* motion NULL: no certificate. */
+static rdl_status find_pairs(rdli_broad *broad, const rdli_mesh *mesh, const rdli_motion *motion, const rdli_boxes *boxes,
+                             const uint8_t *awake, rdli_pairs *pairs)
 {
     const rdli_elements elements[KINDS] = {
         {NULL, 1, mesh->vertex_count, boxes->vertices},
@@ -126,6 +131,9 @@ rdl_status rdli_broad_pairs(rdli_broad *broad, const rdli_mesh *mesh, const rdli
     for (unsigned kind = 0; kind < KINDS && status == RDL_OK; kind++)
         status = rdli_marks_prepare(broad->memory, broad->workers, broad->kernels, &broad->trees[kind], mesh,
                                     &elements[kind], awake, with_parts);
+    broad->apart.records = NULL;
+    if (status == RDL_OK && motion != NULL)
+        status = rdli_apart_fill(broad->memory, broad->workers, &broad->apart, mesh, motion, &broad->trees[VERTICES].tree);
     if (status == RDL_OK)
         status = collect(broad, 0, mesh, &found.point_triangle, &found.point_triangle_count);
     if (status == RDL_OK)
@@ -133,4 +141,16 @@ rdl_status rdli_broad_pairs(rdli_broad *broad, const rdli_mesh *mesh, const rdli
     if (status == RDL_OK)
         *pairs = found;
     return status;
+}
+
+rdl_status rdli_broad_near_pairs(rdli_broad *broad, const rdli_mesh *mesh, const rdli_motion *motion,
+                                 const rdli_boxes *boxes, rdli_pairs *pairs)
+{
+    return find_pairs(broad, mesh, motion, boxes, motion->awake, pairs);
+}
+
+rdl_status rdli_broad_pairs(rdli_broad *broad, const rdli_mesh *mesh, const rdli_boxes *boxes, const uint8_t *awake,
+                            rdli_pairs *pairs)
+{
+    return find_pairs(broad, mesh, NULL, boxes, awake, pairs);
 }

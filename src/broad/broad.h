@@ -17,6 +17,11 @@ void rdli_broad_destroy(rdli_broad *broad);
 /* Vector instructions where the machine has them (so after creation), or portable code: the same lists. */
 void rdli_broad_use_vector(rdli_broad *broad, bool vector);
 
+/* The pairs of rdli_broad_pairs (awake: motion->awake) without those that certainly stay further apart than the sum of
+ * their half-thicknesses during the whole motion. boxes were filled from the same motion. Same errors. */
+rdl_status rdli_broad_near_pairs(rdli_broad *broad, const rdli_mesh *mesh, const rdli_motion *motion,
+                                 const rdli_boxes *boxes, rdli_pairs *pairs);
+
 /* All point-triangle and edge-edge pairs with overlapping boxes, sorted, each once, without: shared vertices, muted
  * parts, attachments, pairs of which all four vertices are driven, and (where awake is given) pairs of which no vertex is
  * awake. The list is owned by broad and valid until its next call. Every vertex, edge and triangle of the mesh takes part.

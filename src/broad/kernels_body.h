@@ -223,6 +223,8 @@ static void sort_row(uint32_t *ids, size_t count, uint32_t *to, uint64_t *bits, 
     }
 }
 
+#include "broad/apart_body.h"
+
 /* Takes `count` seconds from scratch->row. */
 static void store_row(rdli_query *query, rdli_scratch *scratch, unsigned worker, uint32_t first, size_t count)
 {
@@ -314,8 +316,13 @@ static inline __attribute__((always_inline)) void match_pack(rdli_query *query, 
                 mask = ruled(query, a, i, b, mask);
             row = lanes_compress(row, query->b.tree->order + (size_t)b * RDLI_WIDE, mask);
         }
-        if (row != scratch->row)
-            store_row(query, scratch, worker, ids_a[i], (size_t)(row - scratch->row));
+        size_t count = (size_t)(row - scratch->row);
+        if (count > 0 && query->records != NULL) {
+            const uint32_t own[2] = {corners_a[i], corners_a[ca == 2 ? RDLI_WIDE + i : i]};
+            count = drop_apart(query, scratch, own, count);
+        }
+        if (count > 0)
+            store_row(query, scratch, worker, ids_a[i], count);
     }
 }
 

@@ -184,6 +184,98 @@ static inline void lanes_bound(const rdli_pack *pack, rdli_pack *above, unsigned
     }
 }
 
+typedef __m256 lanes_real;
+
+static inline lanes_real lanes_add(lanes_real a, lanes_real b)
+{
+    return _mm256_add_ps(a, b);
+}
+
+static inline lanes_real lanes_sub(lanes_real a, lanes_real b)
+{
+    return _mm256_sub_ps(a, b);
+}
+
+static inline lanes_real lanes_mul(lanes_real a, lanes_real b)
+{
+    return _mm256_mul_ps(a, b);
+}
+
+static inline lanes_real lanes_div(lanes_real a, lanes_real b)
+{
+    return _mm256_div_ps(a, b);
+}
+
+static inline lanes_real lanes_min(lanes_real a, lanes_real b)
+{
+    return _mm256_min_ps(a, b);
+}
+
+static inline lanes_real lanes_max(lanes_real a, lanes_real b)
+{
+    return _mm256_max_ps(a, b);
+}
+
+static inline lanes_real lanes_all(float x)
+{
+    return _mm256_set1_ps(x);
+}
+
+static inline lanes_real lanes_abs(lanes_real a)
+{
+    return _mm256_andnot_ps(_mm256_set1_ps(-0.0f), a);
+}
+
+static inline unsigned lanes_less(lanes_real a, lanes_real b)
+{
+    return (unsigned)_mm256_movemask_ps(_mm256_cmp_ps(a, b, _CMP_LT_OQ));
+}
+
+static inline lanes_real lanes_choose_less(lanes_real a, lanes_real b, lanes_real x, lanes_real y)
+{
+    return _mm256_blendv_ps(y, x, _mm256_cmp_ps(a, b, _CMP_LT_OQ));
+}
+
+typedef __m256i lanes_bits;
+
+static inline lanes_bits lanes_same(int32_t x)
+{
+    return _mm256_set1_epi32(x);
+}
+
+static inline lanes_real lanes_as_real(lanes_bits bits)
+{
+    return _mm256_castsi256_ps(bits);
+}
+
+static inline lanes_real lanes_difference(lanes_bits a, lanes_bits b)
+{
+    return _mm256_cvtepi32_ps(_mm256_sub_epi32(a, b));
+}
+
+static inline __m256 lanes_two_halves(const int32_t *low, const int32_t *high)
+{
+    __m256i both = _mm256_castsi128_si256(_mm_load_si128((const __m128i *)(const void *)low));
+    return _mm256_castsi256_ps(_mm256_inserti128_si256(both, _mm_load_si128((const __m128i *)(const void *)high), 1));
+}
+
+static inline void lanes_records(const rdli_record *records, const uint32_t *vertices, size_t stride, const uint32_t *ids,
+                                 lanes_bits members[8])
+{
+    __m256 start[4], end[4]; /* of ids i and i + 4, one in each half */
+    for (unsigned i = 0; i < 4; i++) {
+        const rdli_record *low = &records[vertices[stride * ids[i]]], *high = &records[vertices[stride * ids[i + 4]]];
+        start[i] = lanes_two_halves(low->start, high->start);
+        end[i] = lanes_two_halves(low->end, high->end);
+    }
+    lanes_transpose(start);
+    lanes_transpose(end);
+    for (unsigned k = 0; k < 4; k++) {
+        members[k] = _mm256_castps_si256(start[k]);
+        members[4 + k] = _mm256_castps_si256(end[k]);
+    }
+}
+
 enum { LANES_RANKED = 64 };
 
 /* Sixteen at a time, so that every broadcast serves twice. A comparison that holds gives -1. */

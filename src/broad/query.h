@@ -13,6 +13,7 @@
 #ifndef RDLI_QUERY_H
 #define RDLI_QUERY_H
 
+#include "broad/apart.h"
 #include "broad/rows.h"
 #include "broad/tree.h"
 
@@ -66,6 +67,8 @@ typedef struct rdli_query {
     uint32_t part_count;
     rdli_keep *keep;
     const void *rules;
+    const rdli_record *records;   /* NULL, or pairs that stay apart for sure are left out (apart_body.h) */
+    const uint32_t *vertices_b;   /* with records: the vertices of b's elements, corner_count each, by element number */
     size_t pairs_max;             /* more are not kept: RDL_TOO_LARGE */
     rdl_emit_pairs *emit;         /* NULL: rows are kept; else pairs go out unsorted as they are found */
     void *emit_user;
