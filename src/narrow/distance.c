@@ -163,7 +163,12 @@ void rdli_examine_open(int kind, const rdl_motion *motion, double gap, double sh
 {
     rdli_closest start, end;
     rdli_sized sized;
-    *examined = (rdli_examined){0};
+    rdli_sized_of(motion, &sized);
+    rdli_frame first = rdli_frame_of(kind, sized.motion.start), last = rdli_frame_of(kind, sized.motion.end);
+    double apart = rdli_frames_apart(kind, &first, &last); /* in units of the scaled motion */
+    *examined = (rdli_examined){.quiet = apart > ldexp(gap, sized.shift)};
+    if (examined->quiet)
+        return;
     rdli_closest_points(kind, motion->start, &start);
     rdli_closest_points(kind, motion->end, &end);
     examined->start_lo = start.distance_lo;
@@ -176,8 +181,9 @@ void rdli_examine_open(int kind, const rdl_motion *motion, double gap, double sh
         examined->below_end = !end_reaches(kind, motion, &end, examined->end_floor);
     else
         examined->below_end = !nothing_moves(motion) && !end_keeps(kind, motion, gap, &start, &end);
-    rdli_sized_of(motion, &sized);
-    if (!rdli_screen_one(rdli_screen_choose(), kind, &sized, examined->path_floor, &examined->touch))
+    if (apart > ldexp(examined->path_floor, sized.shift))
+        examined->touch = (rdl_touch){.time_lo = 1, .time_hi = 1, .stage = RDL_STAGE_DIRECTION, .order = 1};
+    else
         rdli_find_open_touch(kind, motion, &sized, examined->path_floor, &examined->touch);
     examined->reaches_path = examined->touch.touches;
 }

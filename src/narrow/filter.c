@@ -88,3 +88,16 @@ double rdli_frame_least(int kind, const rdli_frame *frame, const double d[3])
     }
     return (u < 0 ? u : 0) - w - (v > 0 ? v : 0);
 }
+
+double rdli_frames_apart(int kind, const rdli_frame *start, const rdli_frame *end)
+{
+    double a = rdli_frame_size(start), b = rdli_frame_size(end), pad = 0x1p-46 * (a > b ? a : b) + RDLI_UNDERFLOW;
+    rdli_frame middle;
+    rdli_nearest nearest;
+    rdli_frame_mix(start, end, 0.5, &middle);
+    rdli_nearest_points(kind, &middle, &nearest);
+    a = rdli_frame_least(kind, start, nearest.d);
+    b = rdli_frame_least(kind, end, nearest.d);
+    double length = rdli_length(nearest.d), least = a < b ? a : b;
+    return length > RDLI_UNDERFLOW ? least / length * (1 - 16 * unit) - pad : 0;
+}

@@ -34,6 +34,10 @@ double rdli_frame_size(const rdli_frame *frame);
 /* Least d . e over the control points of the frame; its rounding is at most 2^-47 size |d|. */
 double rdli_frame_least(int kind, const rdli_frame *frame, const double d[3]);
 
+/* A length that the distance certainly stays above while the frame goes from start to end, by the direction of the
+ * closest points in the middle; 0 or less where that direction shows nothing. */
+double rdli_frames_apart(int kind, const rdli_frame *start, const rdli_frame *end);
+
 /* A bound of the effect of underflow on any expression here, for ordinary sizes: far above 2^-1074 times the number of
  * operations times the largest factor, far below the rounding of anything of relevant size. */
 #define RDLI_UNDERFLOW 0x1p-960

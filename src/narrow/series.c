@@ -69,68 +69,68 @@ static double hull_length(const scene *s, const rdli_span *span, const double d[
     return (a < b ? a : b) / length;
 }
 
-/* Narrows [lo, hi], free at lo and touching at hi, towards the crossing (regula falsi, Illinois variant). */
-static void polish(const scene *s, double lo, double lo_value, double *hi, double hi_value)
+/* Narrows [lo, *hi], free at lo and touching at *hi, towards the crossing (regula falsi, Illinois variant). Values are
+ * distances less the gap. */
+static void polish(const scene *s, double lo, double lo_value, double *hi, double *hi_value)
 {
+    const double close = half_width / 4, margin = half_width / 8;
     rdli_nearest nearest;
+    double below = *hi_value;
     int side = 0;
-    for (int i = 0; i < 40 && *hi - lo > 0x1p-26; i++) {
-        double t = lo + (*hi - lo) * (lo_value / (lo_value - hi_value)), margin = 0x1p-27;
+    for (int i = 0; i < 40 && *hi - lo > close; i++) {
+        double t = lo + (*hi - lo) * (lo_value / (lo_value - below));
         t = t < lo + margin ? lo + margin : t > *hi - margin ? *hi - margin : t;
         double value = distance_at(s, t, &nearest) - s->gap;
         if (value <= 0) {
             *hi = t;
-            hi_value = value;
+            *hi_value = below = value;
             lo_value *= side < 0 ? 0.5 : 1;
             side = -1;
         } else {
             lo = t;
             lo_value = value;
-            hi_value *= side > 0 ? 0.5 : 1;
+            below *= side > 0 ? 0.5 : 1;
             side = 1;
         }
-        if (value == 0)
-            break;
     }
 }
 
 /* What one span shows. */
 enum outcome { KEPT, TOUCHED, OPEN };
 
-static enum outcome look(scene *s, double a, double b, double *middle_distance)
+/* aimed: the span ends just before a crossing, where no hull can separate. */
+static enum outcome look(scene *s, double a, double b, bool aimed, double *middle_distance)
 {
     rdli_span span = {{frame_at(s, a), frame_at(s, b)}};
     rdli_nearest nearest;
+    s->spans++;
+    if (aimed && rdli_span_keeps(s->kind, &span, &s->margin, &s->order))
+        return KEPT;
     double length = distance_at(s, 0.5 * (a + b), &nearest);
     *middle_distance = length;
-    s->spans++;
     if (is_touch(s, length))
         return TOUCHED;
     double hull = hull_length(s, &span, nearest.d, length);
     if (hull * (1 - 16 * unit) - s->pad > (s->gap + s->pad) * (1 + 4 * unit))
         return KEPT;
     /* A hull that loses more than half of the distance announces terms of higher order that are no smaller. */
-    if (hull < 0.5 * length && length > 2 * s->gap)
+    if (aimed || (hull < 0.5 * length && length > 2 * s->gap))
         return OPEN;
     return rdli_span_keeps(s->kind, &span, &s->margin, &s->order) ? KEPT : OPEN;
 }
 
 /* A touch in (free, t]: bracket of the crossing nearest to t. Returns the end of what is left to certify, and in *hi a
  * certified touch. */
-static double aim(const scene *s, double free, double t, double distance, double *hi)
+static double aim(const scene *s, double free, double before, double t, double distance, double *hi)
 {
     rdli_nearest nearest;
-    double crossing = t, before = distance_at(s, free, &nearest) - s->gap;
+    double crossing = t, value = distance - s->gap;
     if (before > 0)
-        polish(s, free, before, &crossing, distance - s->gap);
-    *hi = t;
-    for (double width = half_width / 16; width <= half_width; width *= 4) {
-        double after = crossing + width;
-        if (after < t && is_touch(s, distance_at(s, after, &nearest))) {
-            *hi = after;
-            break;
-        }
-    }
+        polish(s, free, before, &crossing, &value);
+    *hi = is_touch(s, value + s->gap) ? crossing : t;
+    for (double width = half_width / 4; *hi == t && crossing + width < t && width <= half_width; width *= 2)
+        if (is_touch(s, distance_at(s, crossing + width, &nearest)))
+            *hi = crossing + width;
     double target = *hi - 2 * half_width;
     return target > free ? target : free;
 }
@@ -138,11 +138,11 @@ static double aim(const scene *s, double free, double t, double distance, double
 bool rdli_series_touch(int kind, const rdli_frame *start, const rdli_frame *end, double gap, rdl_touch *touch)
 {
     scene s = scene_of(kind, start, end, gap);
-    double middle, ends[DEEPEST], free = 0, hi = 2;
-    enum outcome outcome = look(&s, 0, 1, &middle);
+    rdli_nearest nearest;
+    double middle, ends[DEEPEST], free = 0, hi = 2, distance = INFINITY;
+    enum outcome outcome = look(&s, 0, 1, false, &middle);
     if (outcome != KEPT) {
-        rdli_nearest nearest;
-        double distance = distance_at(&s, 0, &nearest);
+        distance = distance_at(&s, 0, &nearest);
         if (is_touch(&s, distance)) {
             *touch = (rdl_touch){.touches = 1, .stage = RDL_STAGE_ENDS, .order = 1};
             return true;
@@ -152,7 +152,7 @@ bool rdli_series_touch(int kind, const rdli_frame *start, const rdli_frame *end,
     }
     int top = 0, depth = 0;
     ends[0] = 1;
-    for (;; outcome = look(&s, free, ends[top], &middle)) {
+    for (;; outcome = look(&s, free, ends[top], hi <= 1 && top == 0, &middle)) {
         double right = ends[top];
         if (outcome == KEPT) {
             free = right;
@@ -164,7 +164,8 @@ bool rdli_series_touch(int kind, const rdli_frame *start, const rdli_frame *end,
             return false;
         double half = 0.5 * (free + right);
         if (outcome == TOUCHED) {
-            ends[0] = aim(&s, free, half, middle, &hi);
+            double before = (free > 0 ? distance_at(&s, free, &nearest) : distance) - gap;
+            ends[0] = aim(&s, free, before, half, middle, &hi);
             top = 0;
             if (ends[0] <= free)
                 break;

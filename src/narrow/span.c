@@ -151,31 +151,35 @@ static bool inner_segment_keeps(const line *w, const line *u, const line *far, c
 typedef struct lines {
     line w, u, v, difference[3], across;
     int differences;
+    double n[3][3], square[5]; /* u x v and its square */
 } lines;
 
-static lines lines_of(int kind, const rdli_span *span)
+static void set_vectors(const rdli_span *span, lines *l)
 {
-    lines l;
     for (int end = 0; end < 2; end++) {
-        memcpy(l.w.at[end], span->at[end].w, sizeof span->at[end].w);
-        memcpy(l.u.at[end], span->at[end].u, sizeof span->at[end].u);
-        memcpy(l.v.at[end], span->at[end].v, sizeof span->at[end].v);
+        rdli_copy(span->at[end].w, l->w.at[end]);
+        rdli_copy(span->at[end].u, l->u.at[end]);
+        rdli_copy(span->at[end].v, l->v.at[end]);
     }
-    set_square(&l.w);
-    set_square(&l.u);
-    set_square(&l.v);
-    l.difference[0] = combination(&l.w, -1, &l.u);
+    set_square(&l->w);
+    set_square(&l->u);
+    set_square(&l->v);
+    cross_of(&l->u, &l->v, l->n);
+    product_of((const double (*)[3])l->n, (const double (*)[3])l->n, l->square);
+}
+
+static void set_differences(int kind, lines *l)
+{
+    l->difference[0] = combination(&l->w, -1, &l->u);
     if (kind == RDL_POINT_TRIANGLE) {
-        l.difference[1] = combination(&l.w, -1, &l.v);
-        l.across = combination(&l.v, -1, &l.u);
-        l.differences = 2;
+        l->difference[1] = combination(&l->w, -1, &l->v);
+        l->across = combination(&l->v, -1, &l->u);
+        l->differences = 2;
     } else {
-        l.difference[1] = combination(&l.w, 1, &l.v);
-        l.difference[2] = combination(&l.difference[1], -1, &l.u);
-        l.across = l.u;
-        l.differences = 3;
+        l->difference[1] = combination(&l->w, 1, &l->v);
+        l->difference[2] = combination(&l->difference[1], -1, &l->u);
+        l->differences = 3;
     }
-    return l;
 }
 
 static line reversed(const line *a)
@@ -205,9 +209,11 @@ static bool boundary_keeps(int kind, const lines *l, const double *level, int *o
            inner_segment_keeps(&side, &l->v, &l->difference[2], level, order);
 }
 
-/* The squared height, degree 6, less level times the squared normal. */
-static bool height_keeps(const lines *l, const double n[3][3], const double square[5], double level)
+/* The squared height, degree 6, less level times the squared normal: where it stays positive the normal does not vanish
+ * and two parallel planes that hold the features stay further apart than the level. */
+static bool height_keeps(const lines *l, double level)
 {
+    const double (*n)[3] = l->n, *square = l->square;
     double h[4] = {0, 0, 0, 0}, r[7], e[7];
     for (int k = 0; k < 3; k++) {
         double w0 = l->w.at[0][k], w1 = l->w.at[1][k];
@@ -235,23 +241,20 @@ static bool height_keeps(const lines *l, const double n[3][3], const double squa
     return all_at_least(r, 7, 128 * unit * (l->w.square + level) * l->u.square * l->v.square + RDLI_UNDERFLOW);
 }
 
-/* No common normal through the inside of both features, or a long one; or the normal all but vanishes and the boundary
- * covers. */
+/* No common normal through the inside of both features; or the normal all but vanishes and the boundary covers. */
 static bool inside_keeps(int kind, const lines *l, const double *level, int *order)
 {
-    double n[3][3], c[3][3], square[5], first[5], second[5], rest[5];
+    const double (*n)[3] = l->n, *square = l->square;
+    double c[3][3], first[5], second[5], rest[5];
     double nu = sqrt(l->u.square), nv = sqrt(l->v.square), nw = sqrt(l->w.square), uv = nu * nv;
     double bound_first = 64 * unit * nw * nv * uv + RDLI_UNDERFLOW, bound_second = 64 * unit * nw * nu * uv + RDLI_UNDERFLOW;
     double bound_square = 64 * unit * uv * uv + RDLI_UNDERFLOW;
-    *order = *order < 4 ? 4 : *order;
-    cross_of(&l->u, &l->v, n);
-    product_of((const double (*)[3])n, (const double (*)[3])n, square);
     cross_of(&l->w, &l->v, c);
-    product_of((const double (*)[3])c, (const double (*)[3])n, first);
+    product_of((const double (*)[3])c, n, first);
     if (all_at_most(first, 5, -bound_first))
         return true;
     cross_of(&l->w, &l->u, c);
-    product_of((const double (*)[3])c, (const double (*)[3])n, second);
+    product_of((const double (*)[3])c, n, second);
     double sign = kind == RDL_POINT_TRIANGLE ? -1 : 1;
     for (int i = 0; i < 5; i++)
         second[i] *= sign;
@@ -264,9 +267,6 @@ static bool inside_keeps(int kind, const lines *l, const double *level, int *ord
     for (int i = 0; i < 5; i++)
         rest[i] = square[i] - second[i];
     if (sign > 0 && all_at_most(rest, 5, -2 * (bound_square + bound_second)))
-        return true;
-    *order = 6;
-    if (height_keeps(l, (const double (*)[3])n, square, level[0]))
         return true;
     double u[3], v[3], raised[5];
     dot_of(&l->u, &l->u, u);
@@ -284,7 +284,11 @@ static bool inside_keeps(int kind, const lines *l, const double *level, int *ord
 
 bool rdli_span_keeps(int kind, const rdli_span *span, const rdli_margin *margin, int *order)
 {
-    lines l = lines_of(kind, span);
-    *order = *order < 2 ? 2 : *order;
+    lines l;
+    set_vectors(span, &l);
+    *order = 6;
+    if (height_keeps(&l, margin->free[0]))
+        return true;
+    set_differences(kind, &l);
     return boundary_keeps(kind, &l, margin->free, order) && inside_keeps(kind, &l, margin->free, order);
 }
