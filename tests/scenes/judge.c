@@ -126,6 +126,28 @@ static void judge_tangle_names(judge *j, const judge_step *step)
                         j->pierces[i].second);
 }
 
+/* What is named in contact at the start has a start distance of exactly 0. */
+static void judge_contact_names(judge *j, const judge_step *step)
+{
+    mpq_t square;
+    mpq_init(square);
+    for (size_t i = 0; i < step->report->named_count; i++) {
+        const rdl_named_pair *row = &step->report->named[i];
+        uint32_t vertex[4];
+        double x[4][3];
+        if (row->why != RDL_WHY_CONTACT_AT_START)
+            continue;
+        judge_vertices(j, row->kind, row->first, row->second, vertex);
+        for (int k = 0; k < 4; k++)
+            memcpy(x[k], step->start[vertex[k]], sizeof x[k]);
+        oracle_rest_distance2((int)row->kind, (const double(*)[3])x, square);
+        if (mpq_sgn(square) != 0)
+            judge_fault(j, step->number, "named in contact at the start, but apart: kind %u, %u %u", row->kind, row->first,
+                        row->second);
+    }
+    mpq_clear(square);
+}
+
 static void judge_verdict(judge *j, const judge_step *step)
 {
     const rdl_report *r = step->report;
@@ -141,6 +163,7 @@ static void judge_verdict(judge *j, const judge_step *step)
     if ((step->verdicts >> r->verdict & 1u) == 0)
         judge_fault(j, step->number, "verdict %d is not one of this scene (%zu named)", (int)r->verdict, r->named_count);
     judge_tangle_names(j, step);
+    judge_contact_names(j, step);
     if (r->verdict == RDL_RESOLVED && moved && !judge_proposal_fails(j, step))
         judge_fault(j, step->number, "something was moved, but all proposed pairs are apart");
 }

@@ -15,7 +15,8 @@ enum { /* further variants of a scene */
     ALSO_FLOAT32 = 1,
     ALSO_SMALL = 2,   /* lengths x 2^-27: DNA */
     ALSO_LARGE = 4,   /* lengths x 2^10: cables */
-    PLATES = 8        /* may hold vertices: left out of the sum of held ones */
+    PLATES = 8,       /* may hold vertices: left out of the sum of held ones */
+    QUICK = 16        /* also in the short run, for builds with sanitizers */
 };
 
 typedef struct scene {

@@ -112,6 +112,46 @@ void finish_tangled(judge *j, unsigned steps, const uint64_t verdicts[4])
         judge_fault(j, steps, "only %zu tangles are left: the scene was to keep them", j->pierce_count);
 }
 
+/* A tent whose middle vertex stands exactly on a face of another sheet, at distance 0, and flies on into it; in the tenth step
+ * it is pulled back. Coordinates are multiples of 2^-8: the contact is exact. */
+void build_touching(world *w)
+{
+    const double corner[3] = {-0.140625, -0.1328125, 0.0}, u[3] = {0.25, 0.0, 0.0}, v[3] = {0.0, 0.25, 0.0};
+    const double tent[3] = {-0.125, -0.125, 0.0};
+    world_part(w, "ground", RDL_CLOTH, 0.002);
+    world_sheet(w, corner, u, v, 4, 4, 0.001);
+    world_part(w, "tent", RDL_CLOTH, 0.002);
+    uint32_t first = (uint32_t)w->vertex_count;
+    world_sheet(w, tent, u, v, 4, 4, 0.001);
+    for (uint32_t i = 0; i < 25; i++) {
+        uint32_t a = i / 5, b = i % 5;
+        w->home[first + i][2] = ((a < 2 ? 2 - a : a - 2) + (b < 2 ? 2 - b : b - 2)) * 0x1p-6;
+        w->v[first + i][2] = -0.5;
+    }
+    w->relax_passes = 0;
+}
+
+void dictate_touching(const world *w, unsigned step, double (*proposed)[3])
+{
+    for (uint32_t v = w->part_first[1]; v < w->vertex_count && step == 9; v++)
+        proposed[v][2] = w->x[v][2] + 0.03 * w->scale;
+}
+
+/* The pair is named in the first step, and it is no tangle; in the end the sheets are apart and nothing was cut. */
+void inspect_touching(judge *j, const judge_step *step)
+{
+    size_t named = 0;
+    for (size_t i = 0; i < step->report->named_count; i++)
+        named += step->report->named[i].why == RDL_WHY_CONTACT_AT_START;
+    if (step->number == 0 && named == 0)
+        judge_fault(j, 0, "the contact at the start is not named");
+}
+
+void finish_touching(judge *j, unsigned steps, const uint64_t verdicts[4])
+{
+    expect_action(j, steps, verdicts, 1);
+}
+
 /* Sheets and strands that never come near each other: falling, turning, bending. */
 void build_free(world *w)
 {

@@ -1,5 +1,5 @@
 /* Multi-step scenes, each judged after every step without the library. Without arguments all of them run, with one line of
- * results for each; `--scene NAME [--verbose] [--float32] [--scale POWER_OF_TWO] [--threads N] [--portable]
+ * results for each, with `--short` the quick ones; `--scene NAME [--verbose] [--float32] [--scale POWER_OF_TWO] [--threads N] [--portable]
  * [--saboteur start|proposed]` plays one; with `--compare` it plays in all the ways that must give the same bits. */
 #include <check.h>
 #include <math.h>
@@ -9,20 +9,36 @@
 
 #include "saboteurs.h"
 
+/* Scenes of a group of tests: those that have a flag, in a short run only the quick ones. */
+typedef struct group {
+    int index[40], count;
+} group;
+
+static group judged, narrow, scaled, again;
+
+static void choose(group *g, unsigned flags, bool quick_only)
+{
+    g->count = 0;
+    for (int i = 0; i < scene_count; i++)
+        if ((flags == 0 || (scenes[i].flags & flags) != 0) && (!quick_only || (scenes[i].flags & QUICK) != 0))
+            g->index[g->count++] = i;
+}
+
 static uint64_t frozen, counted; /* held or rigid vertex-steps of all; the tests run in one process, in order */
 
 START_TEST(plays_well)
 {
+    const scene *s = &scenes[judged.index[_i]];
     play_options options = play_defaults();
     play_result result;
-    play(&scenes[_i], &options, &result);
-    play_print(scenes[_i].name, &result);
-    if ((scenes[_i].flags & PLATES) == 0) {
+    play(s, &options, &result);
+    play_print(s->name, &result);
+    if ((s->flags & PLATES) == 0) {
         frozen += result.held + result.rigid;
         counted += result.vertex_steps;
     }
     play_release(&result);
-    ck_assert_msg(result.faults == 0, "%s: %zu faults, first %s", scenes[_i].name, result.faults, result.first_fault);
+    ck_assert_msg(result.faults == 0, "%s: %zu faults, first %s", s->name, result.faults, result.first_fault);
 }
 END_TEST
 
@@ -97,15 +113,16 @@ static bool same_bits_in(const scene *s, size_t from, size_t to)
 /* The engine on more threads, and without vector instructions, delivers the same bits. */
 START_TEST(same_bits)
 {
-    ck_assert_msg(same_bits_in(&scenes[_i], 0, 3), "%s: other bits", scenes[_i].name);
+    const scene *s = &scenes[again.index[_i]];
+    ck_assert_msg(same_bits_in(s, 0, 3), "%s: other bits", s->name);
 }
 END_TEST
 
 /* Lengths times a power of two: the same verdicts and the same bits, multiplied. */
 START_TEST(scale_free)
 {
-    if (scenes[_i].flags & (ALSO_SMALL | ALSO_LARGE))
-        ck_assert_msg(same_bits_in(&scenes[_i], 3, 5), "%s: other bits at another scale", scenes[_i].name);
+    const scene *s = &scenes[scaled.index[_i]];
+    ck_assert_msg(same_bits_in(s, 3, 5), "%s: other bits at another scale", s->name);
 }
 END_TEST
 
@@ -113,12 +130,11 @@ START_TEST(float32_host)
 {
     play_options options = play_defaults();
     play_result result;
+    const scene *s = &scenes[narrow.index[_i]];
     char name[40];
-    if ((scenes[_i].flags & ALSO_FLOAT32) == 0)
-        return;
     options.format = RDL_FLOAT32;
-    play(&scenes[_i], &options, &result);
-    (void)snprintf(name, sizeof name, "%s/f32", scenes[_i].name);
+    play(s, &options, &result);
+    (void)snprintf(name, sizeof name, "%s/f32", s->name);
     play_print(name, &result);
     play_release(&result);
     ck_assert_msg(result.faults == 0, "%s: %zu faults, first %s", name, result.faults, result.first_fault);
@@ -193,8 +209,13 @@ static int play_one(int argc, char **argv)
 
 int main(int argc, char **argv)
 {
-    if (argc > 1)
+    bool quick_only = argc == 2 && strcmp(argv[1], "--short") == 0;
+    if (argc > 1 && !quick_only)
         return play_one(argc, argv);
+    choose(&judged, 0, quick_only);
+    choose(&narrow, ALSO_FLOAT32, quick_only);
+    choose(&again, 0, quick_only);
+    choose(&scaled, ALSO_SMALL | ALSO_LARGE, quick_only);
     Suite *suite = suite_create("scenes");
     static const char *const names[5] = {"judged", "float32", "bits", "scale", "saboteurs"};
     TCase *cases[5];
@@ -202,11 +223,11 @@ int main(int argc, char **argv)
         cases[i] = tcase_create(names[i]); /* CK_RUN_CASE=judged runs one of them */
         suite_add_tcase(suite, cases[i]);
     }
-    tcase_add_loop_test(cases[0], plays_well, 0, scene_count);
+    tcase_add_loop_test(cases[0], plays_well, 0, judged.count);
     tcase_add_test(cases[0], little_is_frozen);
-    tcase_add_loop_test(cases[1], float32_host, 0, scene_count);
-    tcase_add_loop_test(cases[2], same_bits, 0, scene_count);
-    tcase_add_loop_test(cases[3], scale_free, 0, scene_count);
+    tcase_add_loop_test(cases[1], float32_host, 0, narrow.count);
+    tcase_add_loop_test(cases[2], same_bits, 0, again.count);
+    tcase_add_loop_test(cases[3], scale_free, 0, scaled.count);
     tcase_add_test(cases[4], freezing_does_not_pass);
     tcase_add_test(cases[4], ignoring_does_not_pass);
     SRunner *runner = srunner_create(suite);
