@@ -8,7 +8,7 @@
 #include "narrow/narrow.h"
 #include "oracle.h"
 
-enum { MEMBERS = 400 };
+enum { MEMBERS = 120 };
 
 typedef struct bench {
     int kind;
@@ -162,13 +162,13 @@ static void over_members(int family, int scarce, check_pair *check)
 
 START_TEST(closest_points_at_rest)
 {
-    over_members(_i, 100, closest);
+    over_members(_i, 20, closest);
 }
 END_TEST
 
 START_TEST(end_floors)
 {
-    over_members(_i, 50, end_floor);
+    over_members(_i, 20, end_floor);
 }
 END_TEST
 

@@ -21,6 +21,8 @@ enum { WORKERS = 8 };
 static void gather(void *user, unsigned worker, const uint32_t (*pairs)[2], size_t count)
 {
     basket *b = (basket *)user + worker;
+    if (count == 0)
+        return;
     if (b->count + count > b->room) {
         b->room = 2 * (b->count + count);
         b->items = realloc(b->items, b->room * sizeof *b->items);
@@ -53,7 +55,8 @@ static basket tree_pairs(const rdl_tree *tree, const uint32_t *corners, bool *ca
     for (size_t i = 1; i < all.count; i++)
         if (compare_pairs(all.items[i - 1], all.items[i]) >= 0)
             *came_sorted = false;
-    qsort(all.items, all.count, sizeof *all.items, compare_pairs);
+    if (all.count > 0)
+        qsort(all.items, all.count, sizeof *all.items, compare_pairs);
     return all;
 }
 
