@@ -309,7 +309,8 @@ static bool touches(const scene *s, int kind, const uint32_t vertices[4], double
     return touch.touches;
 }
 
-/* Counts the pairs of `all` that touch; each must be in `near`, which must be a part of `all`. Both are sorted. */
+/* Counts the pairs of `all` that touch; each must be in `near`, which must be a part of `all`. Both are sorted. Of very
+ * long lists only some of the pairs that were left out are examined. */
 static size_t check_near(const scene *s, int kind, const rdli_pair *all, size_t all_count, const rdli_pair *near,
                          size_t near_count)
 {
@@ -328,6 +329,8 @@ static size_t check_near(const scene *s, int kind, const rdli_pair *all, size_t 
         }
         bool found = at < near_count && near[at].first == all[i].first && near[at].second == all[i].second;
         at += found;
+        if (!found && all_count > 20000 && i % 16 != 0)
+            continue;
         if (touches(s, kind, vertices, gap)) {
             touching++;
             ck_assert(found);
