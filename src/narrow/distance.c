@@ -164,7 +164,8 @@ void rdli_examine_open(int kind, const rdl_motion *motion, double gap, double sh
     rdli_closest start, end;
     rdli_sized sized;
     rdli_sized_of(motion, &sized);
-    rdli_frame first = rdli_frame_of(kind, sized.motion.start), last = rdli_frame_of(kind, sized.motion.end);
+    rdli_frame first = rdli_frame_of(kind, (const double (*)[3])sized.motion.start);
+    rdli_frame last = rdli_frame_of(kind, (const double (*)[3])sized.motion.end);
     double apart = rdli_frames_apart(kind, &first, &last); /* in units of the scaled motion */
     *examined = (rdli_examined){.quiet = apart > ldexp(gap, sized.shift)};
     if (examined->quiet)
