@@ -18,7 +18,7 @@ typedef struct cut { /* how finely the poncho is made */
 static const cut FINE = {104, 18, 0.006, 24, 0.005, 4};
 static const cut COARSE = {26, 4, 0.024, 6, 0.02, 2};
 
-static const host_fabric FABRIC = {.mass_per_area = 0.25, .stretch = 400, .shear = 40, .bending = 1e-5,
+static const host_fabric FABRIC = {.mass_per_area = 0.25, .stretch = 400, .shear = 40, .bending = 3.3e-6,
                                    .half_thickness = 0.75e-3, .friction = 0.3};
 static const host_yarn YARN = {.mass_per_length = 4.5e-4, .stretch = 1.0, .bending = 2e-9, .radius = 0.6e-3,
                                .friction = 0.3};

@@ -148,32 +148,6 @@ static int invert_positive(const double m[9], double out[9])
     return 1;
 }
 
-/* Factors of the preconditioner P = (E + L) E^-1 (E + L^T), L the strict lower half of A and E block-diagonal with
- * E_j = D_j - sum_i L_ji E_i^-1 L_ji^T: P equals A on the diagonal, and on a chain without bending everywhere (Pommerell
- * 1992 calls it D-ILU). Where a block would cease to be positive definite, D_j itself serves: P stays positive definite
- * with any such E. Rows without a free motion are cut
- * off. */
-static void factor(host_solver *solver, const host_matrix *a, const host_scalars *b, double scale)
-{
-    for (size_t i = 0; i < a->pattern.rows; i++) {
-        memcpy(solver->pivot[i], a->diagonal[i], sizeof solver->pivot[i]);
-        for (int k = 0; k < 9; k += 4)
-            solver->pivot[i][k] += scale * b->diagonal[i];
-    }
-    for (size_t i = 0; i < a->pattern.rows; i++) {
-        if (!invert_positive(solver->pivot[i], solver->inverse[i])) {
-            memcpy(solver->pivot[i], a->diagonal[i], sizeof solver->pivot[i]);
-            for (int k = 0; k < 9; k += 4)
-                solver->pivot[i][k] += scale * b->diagonal[i];
-            invert_positive(solver->pivot[i], solver->inverse[i]);
-        }
-        if (solver->filter[i].count == 3)
-            continue;
-        for (size_t e = a->pattern.first[i]; e < a->pattern.first[i + 1]; e++)
-            subtract_sandwich(a->block[e], solver->inverse[i], solver->pivot[a->pattern.column[e]]);
-    }
-}
-
 static void keep_free(const host_filter *filter, double v[3])
 {
     if (filter->count == 0)
@@ -183,35 +157,86 @@ static void keep_free(const host_filter *filter, double v[3])
         v[k] = filter->count == 3 ? 0 : v[k] - along * filter->along[k];
 }
 
-/* z = F P^-1 F r with the filter F; returns r . z. */
-static double precondition(const host_solver *solver, const host_matrix *a, const double (*r)[3], double (*z)[3])
+/* m := F m G with the filters of its row and its column. */
+static void keep_free_block(const host_filter *row, const host_filter *column, double m[9])
 {
-    size_t rows = a->pattern.rows;
+    for (int c = 0; c < 3 && row->count; c++) {
+        double v[3] = {m[c], m[3 + c], m[6 + c]};
+        keep_free(row, v);
+        for (int r = 0; r < 3; r++)
+            m[3 * r + c] = v[r];
+    }
+    for (int r = 0; r < 3 && column->count; r++)
+        keep_free(column, &m[3 * r]);
+}
+
+/* Diagonal block of F (A + scale B) F, with the old value along filtered directions so that it has an inverse. */
+static void filtered_diagonal(const host_solver *solver, const host_matrix *a, const host_scalars *b, double scale,
+                              size_t i, double out[9])
+{
+    const host_filter *filter = &solver->filter[i];
+    double along = a->diagonal[i][0] + scale * b->diagonal[i];
+    memcpy(out, a->diagonal[i], 9 * sizeof *out);
+    for (int k = 0; k < 9; k += 4)
+        out[k] += scale * b->diagonal[i];
+    keep_free_block(filter, filter, out);
+    for (int r = 0; r < 3; r++)
+        for (int c = 0; c < 3; c++)
+            if (filter->count == 1)
+                out[3 * r + c] += along * filter->along[r] * filter->along[c];
+            else if (filter->count == 3)
+                out[3 * r + c] = r == c ? along : 0;
+}
+
+/* Factors of the preconditioner P = (E + L) E^-1 (E + L^T) of F A F, L its strict lower half and E block-diagonal with
+ * E_j = D_j - sum_i L_ji E_i^-1 L_ji^T: P equals the filtered A on the diagonal, and on a chain without bending everywhere
+ * (Pommerell 1992 calls it D-ILU). Where a block would cease to be positive definite, D_j itself serves: P stays
+ * positive definite with any such E. */
+static void factor(host_solver *solver, const host_matrix *a, const host_scalars *b, double scale)
+{
+    for (size_t i = 0; i < a->pattern.rows; i++) {
+        filtered_diagonal(solver, a, b, scale, i, solver->pivot[i]);
+        for (size_t e = a->pattern.first[i]; e < a->pattern.first[i + 1]; e++) {
+            memcpy(solver->upper[e], a->block[e], sizeof solver->upper[e]);
+            keep_free_block(&solver->filter[i], &solver->filter[a->pattern.column[e]], solver->upper[e]);
+        }
+    }
+    for (size_t i = 0; i < a->pattern.rows; i++) {
+        if (!invert_positive(solver->pivot[i], solver->inverse[i])) {
+            filtered_diagonal(solver, a, b, scale, i, solver->pivot[i]);
+            invert_positive(solver->pivot[i], solver->inverse[i]);
+        }
+        for (size_t e = a->pattern.first[i]; e < a->pattern.first[i + 1]; e++)
+            subtract_sandwich(solver->upper[e], solver->inverse[i], solver->pivot[a->pattern.column[e]]);
+    }
+}
+
+/* z = F P^-1 F r with the filter F; returns r . z. */
+static double precondition(const host_solver *solver, const host_pattern *pattern, const double (*r)[3],
+                           double (*z)[3])
+{
     double dot = 0;
-    for (size_t i = 0; i < rows; i++) {
+    for (size_t i = 0; i < pattern->rows; i++) {
         memcpy(z[i], r[i], sizeof z[i]);
         keep_free(&solver->filter[i], z[i]);
     }
-    for (size_t i = 0; i < rows; i++) { /* z := (E + L)^-1 r */
+    for (size_t i = 0; i < pattern->rows; i++) { /* z := (E + L)^-1 z */
         double own[3] = {0, 0, 0};
-        if (solver->filter[i].count < 3)
-            add_block(solver->inverse[i], z[i], own);
+        add_block(solver->inverse[i], z[i], own);
         memcpy(z[i], own, sizeof own);
-        for (size_t e = a->pattern.first[i]; e < a->pattern.first[i + 1]; e++)
-            subtract_transposed(a->block[e], own, z[a->pattern.column[e]]);
+        for (size_t e = pattern->first[i]; e < pattern->first[i + 1]; e++)
+            subtract_transposed(solver->upper[e], own, z[pattern->column[e]]);
     }
-    for (size_t i = rows; i-- > 0;) { /* z := (I + E^-1 L^T)^-1 z */
+    for (size_t i = pattern->rows; i-- > 0;) { /* z := (I + E^-1 L^T)^-1 z */
         double sum[3] = {0, 0, 0}, own[3] = {0, 0, 0};
-        if (solver->filter[i].count == 3)
-            continue;
-        for (size_t e = a->pattern.first[i]; e < a->pattern.first[i + 1]; e++)
-            add_block(a->block[e], z[a->pattern.column[e]], sum);
+        for (size_t e = pattern->first[i]; e < pattern->first[i + 1]; e++)
+            add_block(solver->upper[e], z[pattern->column[e]], sum);
         add_block(solver->inverse[i], sum, own);
         for (int k = 0; k < 3; k++)
             z[i][k] -= own[k];
     }
-    for (size_t i = 0; i < rows; i++) {
-        keep_free(&solver->filter[i], z[i]);
+    for (size_t i = 0; i < pattern->rows; i++) {
+        keep_free(&solver->filter[i], z[i]); /* what rounding has left there */
         dot += r[i][0] * z[i][0] + r[i][1] * z[i][1] + r[i][2] * z[i][2];
     }
     return dot;
@@ -223,12 +248,12 @@ size_t host_solve(host_solver *solver, const host_matrix *a, const host_scalars 
     size_t rows = a->pattern.rows, used = 0;
     double (*r)[3] = solver->residual, (*p)[3] = solver->direction, (*q)[3] = solver->image, (*z)[3] = solver->scaled;
     factor(solver, a, b, scale);
-    double aim = precondition(solver, a, rhs, z) * tolerance * tolerance;
+    double aim = precondition(solver, &a->pattern, rhs, z) * tolerance * tolerance;
     host_multiply(a, b, scale, (const double (*)[3])x, q);
     for (size_t i = 0; i < rows; i++)
         for (int k = 0; k < 3; k++)
             r[i][k] = rhs[i][k] - q[i][k];
-    double size = precondition(solver, a, (const double (*)[3])r, z);
+    double size = precondition(solver, &a->pattern, (const double (*)[3])r, z);
     memcpy(p, z, rows * sizeof *p);
     while (size > aim && used < limit) {
         host_multiply(a, b, scale, (const double (*)[3])p, q);
@@ -241,7 +266,7 @@ size_t host_solve(host_solver *solver, const host_matrix *a, const host_scalars 
                 x[i][k] += step * p[i][k];
                 r[i][k] -= step * q[i][k];
             }
-        double next = precondition(solver, a, (const double (*)[3])r, z);
+        double next = precondition(solver, &a->pattern, (const double (*)[3])r, z);
         double turn = next / size;
         for (size_t i = 0; i < rows; i++)
             for (int k = 0; k < 3; k++)

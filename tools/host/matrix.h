@@ -39,7 +39,7 @@ typedef struct host_filter {
 
 typedef struct host_solver {
     host_filter *filter;
-    double (*pivot)[9], (*inverse)[9]; /* the preconditioner's diagonal blocks, see factor() in matrix.c */
+    double (*pivot)[9], (*inverse)[9], (*upper)[9]; /* the preconditioner, see factor() in matrix.c */
     double (*residual)[3], (*direction)[3], (*image)[3], (*scaled)[3];
 } host_solver;
 

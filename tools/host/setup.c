@@ -69,17 +69,19 @@ static int build_bending(host *h)
 
 static int build_solver(host *h)
 {
-    size_t rows = h->soft_count + 1;
+    size_t rows = h->soft_count + 1, entries = h->matrix.pattern.first[h->soft_count] + 1;
+    host_solver *s = &h->solver;
     h->force = malloc(rows * sizeof *h->force);
-    h->solver.pivot = malloc(rows * sizeof *h->solver.pivot);
-    h->solver.inverse = malloc(rows * sizeof *h->solver.inverse);
-    h->solver.residual = malloc(rows * sizeof *h->solver.residual);
-    h->solver.direction = malloc(rows * sizeof *h->solver.direction);
-    h->solver.image = malloc(rows * sizeof *h->solver.image);
-    h->solver.scaled = malloc(rows * sizeof *h->solver.scaled);
-    h->solver.filter = malloc(rows * sizeof *h->solver.filter);
-    return h->solver.filter && h->force && h->solver.pivot && h->solver.inverse && h->solver.residual && h->solver.direction && h->solver.image &&
-           h->solver.scaled;
+    s->filter = malloc(rows * sizeof *s->filter);
+    s->upper = malloc(entries * sizeof *s->upper);
+    s->pivot = malloc(rows * sizeof *s->pivot);
+    s->inverse = malloc(rows * sizeof *s->inverse);
+    s->residual = malloc(rows * sizeof *s->residual);
+    s->direction = malloc(rows * sizeof *s->direction);
+    s->image = malloc(rows * sizeof *s->image);
+    s->scaled = malloc(rows * sizeof *s->scaled);
+    return h->force && s->filter && s->upper && s->pivot && s->inverse && s->residual && s->direction && s->image &&
+           s->scaled;
 }
 
 int host_finish(host *h)

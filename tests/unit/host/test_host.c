@@ -307,6 +307,39 @@ START_TEST(accept_takes_impulses_and_positions)
 }
 END_TEST
 
+/* A square on a frictionless incline of supports slides down it by g sin(angle), keeps exactly to the given speed across
+ * it, is borne, and where it is pulled off it says so. */
+START_TEST(supports_bear_and_let_go)
+{
+    size_t first;
+    const double h_step = 1.0 / 96, slope[3] = {0.6, 0.0, 0.8};
+    host *h = make_host(0);
+    add_square(h, 1.0, &first);
+    ck_assert_int_eq(host_finish(h), 1);
+    for (size_t i = 0; i < h->vertex_count; i++) {
+        h->support[i] = (host_support){{0, 0, 0}, -0.02, 1, 0};
+        memcpy(h->support[i].normal, slope, sizeof slope);
+    }
+    host_propose(h, h_step);
+    for (size_t i = 0; i < h->vertex_count; i++) {
+        const double *v = h->proposed_velocity[i], *n = h->support[i].normal;
+        ck_assert_double_eq_tol(v[0] * n[0] + v[1] * n[1] + v[2] * n[2], -0.02, 1e-12);
+        ck_assert_double_eq_tol(0.8 * v[0] - 0.6 * v[2], 0.6 * 9.81 * h_step, 1e-10);
+        ck_assert(!h->support[i].pulls);
+    }
+    h->gravity[2] = 9.81;
+    host_propose(h, h_step);
+    for (size_t i = 0; i < h->vertex_count; i++)
+        ck_assert(h->support[i].pulls);
+    host_clear_supports(h);
+    h->gravity[2] = -9.81;
+    host_propose(h, h_step);
+    for (size_t i = 0; i < h->vertex_count; i++)
+        ck_assert_double_eq_tol(h->proposed_velocity[i][2], -9.81 * h_step, 1e-10);
+    host_destroy(h);
+}
+END_TEST
+
 START_TEST(two_runs_give_the_same_bits)
 {
     double last[SIDE * SIDE + 20][3];
@@ -366,6 +399,7 @@ int main(void)
     tcase_add_test(group, driven_vertices_go_exactly_where_told);
     tcase_add_test(group, hands_have_limited_force);
     tcase_add_test(group, accept_takes_impulses_and_positions);
+    tcase_add_test(group, supports_bear_and_let_go);
     tcase_add_test(group, two_runs_give_the_same_bits);
     tcase_add_test(group, bending_energy_is_that_of_a_cylinder);
     suite_add_tcase(suite, group);
