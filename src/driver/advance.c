@@ -6,9 +6,14 @@
  * only to find the pairs that come near. Directions from the start are of little use against vertices that are driven far:
  * such zones end the piece after half of the passes, and a shorter piece is tried, as long as there is one. */
 static const double fence_share = 0.3, rigid_share = 0.75, shorten_share = 0.5;
+/* Until then a zone that breaks in refinement is mended; afterwards what was certified stands. */
+static const double restore_share = 0.2;
 /* Certified zones are refined towards the nearest point this often at most. */
 enum { REFINEMENTS = 6 };
 enum { DIVERGES_AFTER = 3 };
+/* A zone of so many contacts that goes deeper than so many floors is worth a shorter piece before any solve. */
+enum { DEEP_CONTACTS = 256 };
+static const double deep_floors = 4.0;
 
 static bool all_settled(const rdl_engine *engine)
 {
@@ -67,6 +72,8 @@ static bool wants_refinement(rdl_engine *engine, const rdli_piece *piece, rdli_z
         memcpy(certified[vertices[i]], piece->trial[vertices[i]], sizeof certified[0]);
     for (uint32_t i = 0; i < zone->contact_count; i++) {
         rdli_contact *contact = &contacts[order[i]];
+        memcpy(contact->saved, contact->plane, sizeof contact->saved);
+        contact->saved_count = contact->plane_count;
         contact->clean = (uint8_t)(contact->clean + (contact->clean < UINT8_MAX));
         contact->ahead = shorter_lead(contact->ahead, contact->floor);
         least = contact->clean < least ? contact->clean : least;
@@ -97,8 +104,12 @@ static bool restore_zone(rdl_engine *engine, const rdli_piece *piece, const rdli
     }
     if (!was_clean)
         return false;
-    for (uint32_t i = 0; i < zone->contact_count; i++)
-        contacts[order[i]].frozen = 1;
+    for (uint32_t i = 0; i < zone->contact_count; i++) {
+        rdli_contact *contact = &contacts[order[i]];
+        contact->frozen = 1;
+        memcpy(contact->plane, contact->saved, sizeof contact->plane);
+        contact->plane_count = contact->saved_count; /* none where the contact is new: it carried nothing */
+    }
     uint8_t *awake = engine->awake.data;
     for (uint32_t i = 0; i < zone->vertex_count; i++) {
         memcpy(piece->trial[vertices[i]], certified[vertices[i]], sizeof certified[0]);
@@ -119,6 +130,22 @@ static uint8_t next_level(const rdli_piece *piece, const rdli_zone *zone, double
     return level;
 }
 
+/* Many contacts, and a motion of many floors into each other: planes taken along such paths contradict each other, and
+ * layers meet layers that are not their neighbours. */
+static bool goes_deep(const rdl_engine *engine)
+{
+    const rdli_zone *zones = engine->response.zones.data;
+    const uint32_t *order = engine->response.zone_contacts.data;
+    const rdli_contact *contacts = engine->contacts.data;
+    for (uint32_t z = 0; z < engine->response.zone_count; z++)
+        for (uint32_t i = 0; zones[z].contact_count >= DEEP_CONTACTS && i < zones[z].contact_count; i++) {
+            const rdli_contact *contact = &contacts[order[zones[z].contact_first + i]];
+            if (contact->depth > deep_floors * contact->floor)
+                return true;
+        }
+    return false;
+}
+
 /* False when a zone asks for a shorter piece. */
 static bool choose_levels(rdl_engine *engine, const rdli_piece *piece, double share, bool diverges)
 {
@@ -133,11 +160,13 @@ static bool choose_levels(rdl_engine *engine, const rdli_piece *piece, double sh
                 settle_zone(engine, zone);
             continue;
         }
-        if (restore_zone(engine, piece, zone)) {
+        if (share >= restore_share && restore_zone(engine, piece, zone)) {
             zone->settled = 1; /* nothing to solve; the next detection judges */
             continue;
         }
-        hopeful = hopeful && !(zone->driven && !piece->shortest && (share >= shorten_share || diverges));
+        /* The shortest piece is given twice as long to show that there is room. */
+        bool lost = piece->shortest ? diverges && share >= fence_share : share >= shorten_share || diverges;
+        hopeful = hopeful && !(zone->driven && lost);
         uint8_t level = next_level(piece, zone, share);
         if (level > RDL_LEVEL_INEQUALITY)
             mark_zone(engine, zone, level);
@@ -197,6 +226,8 @@ rdl_status rdli_advance(rdl_engine *engine, const rdli_piece *piece, bool first_
             status = rdli_zones_gather(&engine->response, piece, engine->contacts.data, engine->contact_count);
         if (status != RDL_OK || pass == passes_max || !hopeful)
             return status;
+        if (pass == 0 && piece->long_piece && goes_deep(engine))
+            return RDL_OK;
         memset(awake, 0, piece->vertex_count);
         if (!choose_levels(engine, piece, (double)pass / (double)passes_max, diverges))
             return RDL_OK;

@@ -92,6 +92,13 @@ static void examine(const sweep *s, uint32_t kind, const uint32_t vertex[4], dou
     rdli_closest_points((int)kind, (const double (*)[3])begin, &closest);
     double floor_distance[2] = { closest.distance_lo * squeeze, closest.distance_hi * squeeze };
     rdli_examine((int)kind, &motion, gap * squeeze, share, floor_distance, examined);
+    if (squeeze == 1.0 && examined->below_end) {
+        /* The enclosure's upper end is a little above the exact floor: what did not move at all must not fail by that. */
+        rdl_motion whole;
+        memcpy(whole.start, begin, sizeof whole.start);
+        memcpy(whole.end, motion.end, sizeof whole.end);
+        examined->below_end = !rdli_end_keeps_floor((int)kind, &whole, gap);
+    }
 }
 
 static bool look_at(const sweep *s, size_t index, rdli_examined *examined, uint32_t *kind, rdli_pair *pair,
@@ -208,7 +215,7 @@ rdl_status rdli_detect(rdl_engine *engine, const rdli_look *look)
     rdli_bounds_fill(&mesh, &motion, engine->workers, &engine->boxes);
     double boxed = rdli_now();
     sweep s = { .engine = engine, .look = look };
-    rdl_status status = rdli_broad_pairs(engine->broad, &mesh, &engine->boxes, look->awake, &s.pairs);
+    rdl_status status = rdli_broad_near_pairs(engine->broad, &mesh, &motion, &engine->boxes, &s.pairs);
     double paired = rdli_now();
     s.total = s.pairs.point_triangle_count + s.pairs.edge_edge_count;
     if (status == RDL_OK && s.total > UINT32_MAX)

@@ -8,6 +8,8 @@
 /* The shortest piece. Below 1/64 of a step a piece moves driven vertices so little that a zone fails for want of room, not
  * for want of time resolution (common practice: hosts take 1 to 10 steps a picture). */
 static const double piece_min = 0x1p-6;
+/* Pieces above this length are cut when they go deep (advance.c): eight of them cost less than one deep tangle of planes. */
+static const double long_piece = 0x1p-3;
 /* Where there is no room floors shrink by this factor at a time, down to piece-wise hold. */
 static const double squeeze_factor = 0.25, squeeze_min = 0x1p-10;
 
@@ -50,24 +52,66 @@ static rdl_status keep_waypoint(rdl_engine *engine, double time)
     return RDL_OK;
 }
 
-/* Acts on the zones that the last piece could not settle: less room for their pairs, or none at all. */
-static void give_way(rdl_engine *engine, bool hold_now)
+static bool must_give_way(const rdli_zone *zone)
+{
+    return zone->violated || zone->infeasible;
+}
+
+enum { PUT_BACK = 1, SQUEEZED = 2 };
+
+/* Puts the vertices of the unsettled zones back to the start of the piece and looks again. marks: PUT_BACK, or SQUEEZED for
+ * those of a pair that would not keep its floor against driven or held vertices even so. Pairs with vertices that still
+ * move are no reason: they will have to give way to what is held. */
+static rdl_status find_squeezed(rdl_engine *engine, const rdli_piece *piece, bool first, uint8_t *marks)
 {
     const rdli_zone *zones = engine->response.zones.data;
     const uint32_t *vertices = engine->response.zone_vertices.data;
-    double *squeeze = engine->squeeze.data;
-    uint8_t *fixed = engine->fixed.data;
-    for (uint32_t z = 0; z < engine->response.zone_count; z++) {
-        if (!zones[z].violated && !zones[z].infeasible)
-            continue;
-        for (uint32_t i = 0; i < zones[z].vertex_count; i++) {
+    memset(marks, 0, piece->vertex_count);
+    for (uint32_t z = 0; z < engine->response.zone_count; z++)
+        for (uint32_t i = 0; must_give_way(&zones[z]) && i < zones[z].vertex_count; i++) {
             uint32_t v = vertices[zones[z].vertex_first + i];
-            squeeze[v] *= squeeze_factor;
-            /* Zones without driven vertices have room: holding them gives up time, not thickness. */
-            if (hold_now || !zones[z].driven || squeeze[v] < squeeze_min)
-                fixed[v] = 1;
+            memcpy(piece->trial[v], piece->start[v], sizeof piece->trial[v]);
+            marks[v] = PUT_BACK;
+        }
+    rdli_look look = { .from = piece->start, .to = (const double (*)[3])piece->trial, .awake = marks,
+        .fixed = piece->fixed, .squeeze = engine->squeeze.data, .first_piece = first };
+    rdl_status status = rdli_detect(engine, &look);
+    const rdli_hit *hits = engine->hits.data;
+    for (size_t h = 0; status == RDL_OK && h < engine->hit_count; h++) {
+        bool stands = !hits[h].contact_at_start;
+        for (int k = 0; k < 4; k++)
+            stands = stands && (piece->fixed[hits[h].vertex[k]] || marks[hits[h].vertex[k]] != 0);
+        for (int k = 0; stands && k < 4; k++)
+            if (!piece->fixed[hits[h].vertex[k]])
+                marks[hits[h].vertex[k]] = SQUEEZED;
+    }
+    return status;
+}
+
+/* Acts on the zones that the last piece could not settle. Where holding them at the start of the piece keeps every floor,
+ * they are held: that gives up time, not thickness. Otherwise driven vertices press on them, and there is less room for
+ * their pairs, or none at all. */
+static rdl_status give_way(rdl_engine *engine, const rdli_piece *piece, bool first, bool hold_now)
+{
+    uint8_t *marks = engine->awake.data, *fixed = engine->fixed.data;
+    double *squeeze = engine->squeeze.data;
+    rdl_status status = find_squeezed(engine, piece, first, marks);
+    const rdli_zone *zones = engine->response.zones.data;
+    const uint32_t *vertices = engine->response.zone_vertices.data;
+    for (uint32_t z = 0; status == RDL_OK && z < engine->response.zone_count; z++) {
+        const uint32_t *mine = vertices + zones[z].vertex_first;
+        bool squeezed = false;
+        if (!must_give_way(&zones[z]))
+            continue;
+        for (uint32_t i = 0; i < zones[z].vertex_count; i++)
+            squeezed = squeezed || marks[mine[i]] == SQUEEZED;
+        for (uint32_t i = 0; i < zones[z].vertex_count; i++) {
+            squeeze[mine[i]] *= squeezed ? squeeze_factor : 1.0;
+            if (!squeezed || hold_now || squeeze[mine[i]] < squeeze_min)
+                fixed[mine[i]] = 1;
         }
     }
+    return status;
 }
 
 static void hold_everything(rdl_engine *engine)
@@ -91,18 +135,18 @@ static rdl_status accept_piece(rdl_engine *engine, course *c, const rdli_piece *
     return RDL_OK;
 }
 
-static void retreat(rdl_engine *engine, course *c, uint64_t budget)
+static rdl_status retreat(rdl_engine *engine, course *c, const rdli_piece *piece, uint64_t budget)
 {
     c->failures++;
     bool spent = engine->attempts >= budget;
     if (!spent && c->length > piece_min) {
         c->length *= 0.5;
-        return;
+        return RDL_OK;
     }
-    if (engine->attempts >= 2 * budget + 16)
-        hold_everything(engine);
-    else
-        give_way(engine, spent);
+    if (engine->attempts < 2 * budget + 16)
+        return give_way(engine, piece, c->first, spent);
+    hold_everything(engine);
+    return RDL_OK;
 }
 
 static uint64_t passes_left(const rdl_engine *engine, const rdl_step *step, double begun)
@@ -142,15 +186,16 @@ static rdl_status run_pieces(rdl_engine *engine, const rdl_step *step)
         memcpy(engine->trial.data, engine->target.data, n * 3 * sizeof(double));
         uint64_t limit = passes_left(engine, step, begun);
         piece.shortest = c.length <= piece_min || engine->attempts >= (uint64_t)engine->settings.substeps_max;
+        piece.long_piece = c.length > long_piece && limit > 1;
         bool apart;
         rdl_status status = rdli_advance(engine, &piece, c.first, limit, &apart);
         engine->attempts++;
         if (status == RDL_OK && apart)
             status = accept_piece(engine, &c, &piece);
         else if (status == RDL_OK && limit == 0)
-            give_way(engine, true); /* out of budget: straight to the safe level */
+            status = give_way(engine, &piece, c.first, true); /* out of budget: straight to the safe level */
         else if (status == RDL_OK)
-            retreat(engine, &c, (uint64_t)engine->settings.substeps_max);
+            status = retreat(engine, &c, &piece, (uint64_t)engine->settings.substeps_max);
         if (status != RDL_OK)
             return status;
     }

@@ -28,7 +28,8 @@ typedef struct rdli_contact {
     rdli_plane plane[RDLI_PLANES];
     double fence[3];          /* separating direction at the start of the piece, unit */
     double fence_load[4];
-    uint8_t plane_count;
+    rdli_plane saved[RDLI_PLANES]; /* the planes and loads of the last certified answer */
+    uint8_t plane_count, saved_count;
     uint8_t nearest;          /* which plane is at the closest points */
     uint8_t violated;         /* in the last detection */
     uint8_t blocks;           /* how often the path was found blocked, saturating; see kept */

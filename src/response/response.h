@@ -27,6 +27,7 @@ typedef struct rdli_piece {
     int format;                 /* RDL_FLOAT32 or RDL_FLOAT64 */
     double aim_margin;
     bool shortest;              /* no shorter piece will be tried */
+    bool long_piece;            /* worth cutting before it is solved, if it goes deep */
     uint32_t sweeps_max;
 } rdli_piece;
 

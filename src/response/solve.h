@@ -10,6 +10,7 @@ typedef struct rdli_row {
     uint32_t vertex[4];   /* local vertex numbers; unused entries have weight 0 and vertex 0 */
     double weight[4], normal[3];
     double bound;         /* m, less what unmovable vertices contribute */
+    double share;         /* how much of the contact can move, (0, 1] */
     double tolerance;     /* m, allowed violation */
     uint32_t origin;      /* row number before idle rows were left out; the solve does not look at it */
     double scale;         /* 1 / sqrt(A_rr), filled by the solve; 0 = nothing in this row can move */
@@ -37,7 +38,7 @@ typedef struct rdli_solved {
  *   minimise 1/2 l' A l - l' r,  l >= 0,  A = J M^-1 J',  r = bound - J target,  x = target + M^-1 J' l,
  * by modified proportioning with reduced gradient projections (Dostal & Schoeberl 2005, algorithm 1), which is monotone,
  * keeps l feasible, needs no matrix and copes with dependent rows. Departures from the paper: rows are scaled to unit
- * diagonal; a few projected Gauss-Seidel sweeps come first; the stopping test is per row in metres; directions of zero curvature end the solve as infeasible, since then
+ * diagonal; projected over-relaxation comes first, and last where rows are degenerate; the stopping test is per row in metres; directions of zero curvature end the solve as infeasible, since then
  * the dual is unbounded and the half spaces have no common point.
  * Serial; the order of all sums is that of rows and vertices. No allocation. */
 rdli_solved rdli_solve(rdli_problem *problem);

@@ -29,9 +29,21 @@ static uint32_t rows_of(const rdli_contact *contact, bool fenced)
     return contact->plane_count;
 }
 
-/* What rounding to the host's format may take from normal . sum weight x: every coordinate moves by at most half a unit
- * in the last place, and the weights of each feature sum to one. Positions of the answer are not known yet: a quarter
- * more than the largest coordinate of start and target. */
+/* How much of a contact can give way: the larger of its features' movable shares. Where both features are almost at
+ * driven vertices, aiming above the floor would ask for absurd moves of what little can move. */
+static double movable_share(const rdli_piece *piece, const rdli_contact *contact, const double weight[4])
+{
+    int split = contact->kind == RDL_POINT_TRIANGLE ? 1 : 2;
+    double share[2] = { 0.0, 0.0 };
+    for (int k = 0; k < 4; k++)
+        if (!piece->fixed[contact->vertex[k]])
+            share[k >= split] += fabs(weight[k]);
+    return fmin(fmax(share[0], share[1]), 1.0);
+}
+
+/* What rounding to the host's format may take from normal . sum weight x: every coordinate that moves does so by at most
+ * half a unit in the last place, and the weights of each feature sum to one. Positions of the answer are not known yet: a
+ * quarter more than the largest coordinate of start and target. */
 static double rounding_allowance(const rdli_piece *piece, const rdli_contact *contact, const double normal[3])
 {
     double largest = 0.0;
@@ -41,16 +53,9 @@ static double rounding_allowance(const rdli_piece *piece, const rdli_contact *co
             largest = fmax(largest, fmax(fabs(piece->start[v][k]), fabs(piece->target[v][k])));
         }
     double spread = (fabs(normal[0]) + fabs(normal[1])) + fabs(normal[2]);
-    return 2.0 * spread * (1.25 * largest) * rdli_half_unit(piece->format);
-}
-
-/* Where a row must end at least: the floor, what rounding may take of it, and the lead over curvature. Fixed directions
- * certify the whole piece: no curvature to be ahead of. */
-static double least_end(const rdli_piece *piece, const rdli_contact *contact, const double normal[3], bool fenced)
-{
     /* The rounding of our own sums is a few units of the double format; it matters where the host's is double too. */
     double own = piece->format == RDL_FLOAT64 ? 4.0 : 1.0;
-    return contact->floor + (fenced ? 0.0 : contact->ahead) + own * rounding_allowance(piece, contact, normal);
+    return own * 2.0 * spread * (1.25 * largest) * rdli_half_unit(piece->format);
 }
 
 static void set_row(rdli_row *row, const job *j, const rdli_contact *contact, const double normal[3],
@@ -60,7 +65,10 @@ static void set_row(rdli_row *row, const job *j, const rdli_contact *contact, co
     const uint32_t *local = j->response->local.data;
     memset(row, 0, sizeof *row);
     rdli_copy(normal, row->normal);
-    row->bound = least_end(piece, contact, normal, fenced);
+    /* Fixed directions certify the whole piece: no curvature to be ahead of. */
+    double ahead = fenced ? 0.0 : contact->ahead;
+    row->share = movable_share(piece, contact, weight);
+    row->bound = contact->floor + row->share * (ahead + rounding_allowance(piece, contact, normal));
     for (int k = 0; k < 4; k++) {
         uint32_t v = contact->vertex[k];
         if (weight[k] == 0.0)
@@ -148,7 +156,7 @@ static double zone_slop(const job *j, const rdli_zone *zone, size_t rows, double
     if (rows <= FEW_ROWS)
         slop = 0.0;
     else if (zone->violated)
-        slop = fmin(fmax(again ? slop_growth * slop : slop, slop_share * correction), slop_most * floor);
+        slop = fmin(slop == 0.0 ? slop_share * correction : again ? slop_growth * slop : slop, slop_most * floor);
     else
         slop *= slop_kept;
     for (uint32_t i = 0; i < zone->contact_count; i++)
@@ -170,11 +178,13 @@ static void set_tolerances(const job *j, const rdli_zone *zone, rdli_problem *pr
         for (int k = 0; k < 3; k++)
             largest = fmax(largest, fabs(problem->target[i][k]));
     }
+    double fine = problem->row_count <= FEW_ROWS ? 1e-12 : 2e-8;
     double resolved = largest * 0x1p-50, slop = zone_slop(j, zone, problem->row_count, correction);
     for (size_t r = 0; r < problem->row_count; r++) {
         double margin = fmin(problem->rows[r].tolerance, 0.5 * correction) + 2.0 * resolved;
-        problem->rows[r].bound += margin + slop;
-        problem->rows[r].tolerance = fmax(fmax(fmin(0.5 * margin, 2e-8 * correction), 0.5 * slop), resolved);
+        rdli_row *row = &problem->rows[r];
+        row->bound += row->share * (margin + slop);
+        row->tolerance = fmax(row->share * fmax(fmin(0.5 * margin, fine * correction), 0.5 * slop), resolved);
     }
 }
 
@@ -235,8 +245,8 @@ void rdli_zone_energies(const rdli_response *response, const rdli_piece *piece, 
     zone->energy_after = 0.5 * (after - frame_after);
 }
 
-/* Writes the rounded answer. Without a violation before the solve, an answer that differs by less than a third of a millionth of
- * the correction is not written: the certified bits stay, and the zone is settled. */
+/* Writes the rounded answer. Without a violation before the solve, an answer that differs by a negligible part of the
+ * correction is not written: the certified bits stay, and the zone is settled. */
 static void write_back(const job *j, rdli_zone *zone, const double (*solution)[3])
 {
     const rdli_piece *piece = j->piece;
@@ -248,7 +258,8 @@ static void write_back(const job *j, rdli_zone *zone, const double (*solution)[3
             change = fmax(change, fabs(rdli_round_to(piece->format, solution[i][k]) - piece->trial[v][k]));
             correction = fmax(correction, fabs(solution[i][k] - piece->target[v][k]));
         }
-    if (!zone->violated && change <= 3e-7 * correction) {
+    double enough = zone->row_count <= FEW_ROWS ? 1e-11 : 3e-7;
+    if (!zone->violated && change <= enough * correction) {
         zone->settled = 1;
         return;
     }
