@@ -45,13 +45,6 @@ static void settle_zone(rdl_engine *engine, rdli_zone *zone)
         contacts[order[i]].settled = 1;
 }
 
-/* More energy than the host proposed, beyond rounding: never delivered by a zone that no driven vertex feeds. */
-static bool gains_energy(rdl_engine *engine, const rdli_piece *piece, rdli_zone *zone)
-{
-    rdli_zone_energies(&engine->response, piece, zone);
-    return !zone->driven && zone->energy_after > zone->energy_before * (1.0 + 1e-12);
-}
-
 /* What a clean pass leaves of the lead over the floor (contacts.c). Planes taken at a certified answer err by the square of
  * the next move over the floor, so that the lead may shrink as fast. */
 static double shorter_lead(double lead, double floor)
@@ -79,7 +72,7 @@ static bool wants_refinement(rdl_engine *engine, const rdli_piece *piece, rdli_z
         least = contact->clean < least ? contact->clean : least;
         frozen = frozen || contact->frozen;
     }
-    if (gains_energy(engine, piece, zone) && zone->level < RDL_LEVEL_RIGID) {
+    if (zone->level < RDL_LEVEL_RIGID && rdli_zone_gains_energy(&engine->response, piece, contacts, zone)) {
         zone->level++;
         mark_zone(engine, zone, zone->level);
         return true;

@@ -240,14 +240,6 @@ rdl_status rdli_contacts_merge(rdl_engine *engine, const rdli_piece *piece)
     return RDL_OK;
 }
 
-static bool carries_load(const rdli_contact *contact)
-{
-    for (uint8_t i = 0; i < contact->plane_count; i++)
-        if (contact->plane[i].load > 0.0)
-            return true;
-    return false;
-}
-
 static bool is_far(const rdli_piece *piece, const rdli_contact *contact, const rdli_plane *plane)
 {
     double distance = 0.0;
@@ -272,7 +264,7 @@ static void expand_chunk(void *data, size_t chunk, unsigned worker)
             continue;
         /* A pair that is far and pushes nothing keeps its old planes: they guard the path by which it came, and looking
          * at it from where it is now would open that path again. */
-        if (!j->all && !carries_load(contact) && is_far(j->piece, contact, &plane))
+        if (!j->all && !rdli_carries_load(contact) && is_far(j->piece, contact, &plane))
             continue;
         contact->time = 1.0;
         turn_planes(j->piece, contact);

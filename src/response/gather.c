@@ -12,7 +12,7 @@ void rdli_response_release(rdli_response *response)
 {
     rdli_room *rooms[] = { &response->parent, &response->stamp, &response->local, &response->zones,
         &response->zone_contacts, &response->zone_vertices, &response->rows, &response->loads, &response->all_loads, &response->row_work,
-        &response->inverse_mass, &response->targets, &response->solutions, &response->scratch };
+        &response->inverse_mass, &response->targets, &response->solutions, &response->scratch, &response->sums };
     for (size_t k = 0; k < sizeof rooms / sizeof rooms[0]; k++)
         rdli_room_release(response->memory, rooms[k]);
 }
@@ -91,6 +91,80 @@ static void add_to_zone(rdli_zone *zone, const rdli_piece *piece, const rdli_con
         zone->level = level;
 }
 
+bool rdli_carries_load(const rdli_contact *contact)
+{
+    double load = 0.0;
+    for (uint8_t i = 0; i < contact->plane_count; i++)
+        load += contact->plane[i].load;
+    for (int d = 0; d < 4; d++)
+        load += contact->fence_load[d];
+    return load > 0.0;
+}
+
+/* Joins the vertices of loaded contacts; marks groups that touch fixed vertices. */
+static void join_loaded(rdli_response *response, const rdli_piece *piece, const rdli_contact *contacts,
+                        const rdli_zone *zone, rdli_group_sums *sums)
+{
+    const uint32_t *order = (const uint32_t *)response->zone_contacts.data + zone->contact_first;
+    const uint32_t *vertices = (const uint32_t *)response->zone_vertices.data + zone->vertex_first;
+    uint32_t *parent = response->parent.data;
+    const uint32_t *local = response->local.data;
+    for (uint32_t i = 0; i < zone->vertex_count; i++)
+        parent[vertices[i]] = vertices[i];
+    for (int round = 0; round < 2; round++)
+        for (uint32_t i = 0; i < zone->contact_count; i++) {
+            const rdli_contact *contact = &contacts[order[i]];
+            uint32_t seen = UINT32_MAX;
+            bool fed = false;
+            for (int k = 0; rdli_carries_load(contact) && k < 4; k++) {
+                uint32_t v = contact->vertex[k];
+                fed = fed || piece->fixed[v];
+                if (!piece->fixed[v] && round == 0 && seen != UINT32_MAX)
+                    join(parent, seen, v);
+                seen = piece->fixed[v] ? seen : v;
+            }
+            if (round == 1 && fed)
+                sums[local[find_root(parent, seen)]].fed = true;
+        }
+}
+
+bool rdli_zone_gains_energy(rdli_response *response, const rdli_piece *piece, const rdli_contact *contacts,
+                            const rdli_zone *zone)
+{
+    const uint32_t *vertices = (const uint32_t *)response->zone_vertices.data + zone->vertex_first;
+    const uint32_t *local = response->local.data;
+    rdli_group_sums *sums = (rdli_group_sums *)response->sums.data + zone->vertex_first;
+    memset(sums, 0, zone->vertex_count * sizeof *sums);
+    join_loaded(response, piece, contacts, zone, sums);
+    for (uint32_t i = 0; i < zone->vertex_count; i++) {
+        uint32_t v = vertices[i];
+        double mass = piece->mass[v];
+        rdli_group_sums *sum = &sums[local[find_root(response->parent.data, v)]];
+        sum->mass += mass;
+        for (int k = 0; k < 3; k++) {
+            double moved = piece->trial[v][k] - piece->start[v][k], meant = piece->target[v][k] - piece->start[v][k];
+            sum->moved[k] += mass * moved;
+            sum->meant[k] += mass * meant;
+            sum->after += mass * (moved * moved);
+            sum->before += mass * (meant * meant);
+        }
+    }
+    for (uint32_t i = 0; i < zone->vertex_count; i++) {
+        const rdli_group_sums *sum = &sums[i];
+        if (sum->mass == 0.0 || sum->fed)
+            continue;
+        double after = sum->after, before = sum->before;
+        for (int k = 0; k < 3; k++) {
+            after -= sum->moved[k] * sum->moved[k] / sum->mass;
+            before -= sum->meant[k] * sum->meant[k] / sum->mass;
+        }
+        /* The subtraction of the common motion cancels: its rounding is a share of the whole. */
+        if (after - before > 1e-12 * before + 16.0 * 0x1p-53 * (sum->after + sum->before))
+            return true;
+    }
+    return false;
+}
+
 static void number_vertices(rdli_response *response, const rdli_piece *piece, const rdli_contact *contacts)
 {
     rdli_zone *zones = response->zones.data;
@@ -123,7 +197,8 @@ rdl_status rdli_zones_gather(rdli_response *response, const rdli_piece *piece, r
     if (!reserve_marks(response, piece->vertex_count)
         || !rdli_room_reserve(response->memory, &response->zones, count, sizeof(rdli_zone), false)
         || !rdli_room_reserve(response->memory, &response->zone_contacts, count, sizeof(uint32_t), false)
-        || !rdli_room_reserve(response->memory, &response->zone_vertices, 4 * count, sizeof(uint32_t), false))
+        || !rdli_room_reserve(response->memory, &response->zone_vertices, 4 * count, sizeof(uint32_t), false)
+        || !rdli_room_reserve(response->memory, &response->sums, 4 * count, sizeof(rdli_group_sums), false))
         return RDL_NO_MEMORY;
     join_contacts(response, piece, contacts, count);
     rdli_zone *zones = response->zones.data;

@@ -5,13 +5,19 @@
 #include "base/workers.h"
 #include "flow/contacts.h"
 
+/* Sums over a group of vertices: see rdli_zone_gains_energy. */
+typedef struct rdli_group_sums {
+    double mass, moved[3], meant[3], after, before;
+    bool fed;
+} rdli_group_sums;
+
 typedef struct rdli_response {
     rdli_memory *memory;
     rdli_workers *workers;
     rdli_room parent, stamp, local;      /* per vertex: union-find, pass in which it was last seen, number in its zone */
     uint32_t pass_stamp;
     rdli_room zones, zone_contacts, zone_vertices;
-    rdli_room rows, loads, all_loads, row_work, inverse_mass, targets, solutions, scratch;
+    rdli_room rows, loads, all_loads, row_work, inverse_mass, targets, solutions, scratch, sums;
     uint32_t zone_count;
     size_t row_total, vertex_total;
 } rdli_response;
@@ -43,9 +49,18 @@ rdl_status rdli_zones_gather(rdli_response *response, const rdli_piece *piece, r
  * contacts. */
 rdl_status rdli_zones_solve(rdli_response *response, const rdli_piece *piece, rdli_contact *contacts, uint8_t *awake);
 
+/* Any plane or fixed direction of the contact has a multiplier above zero. */
+bool rdli_carries_load(const rdli_contact *contact);
+
 /* Kinetic energies of the zone as the displacements of the piece tell them, kg m^2: wanted and delivered; without driven
  * vertices in the frame of the zone's centre of mass. */
 void rdli_zone_energies(const rdli_response *response, const rdli_piece *piece, rdli_zone *zone);
+
+/* Whether a group of the zone that no driven vertex feeds has more kinetic energy than was wanted, in the frame of its own
+ * centre of mass and beyond rounding. A group is what contacts that carry load join: contacts that carry none pass no
+ * impulse on, so that energy may not pass either. */
+bool rdli_zone_gains_energy(rdli_response *response, const rdli_piece *piece, const rdli_contact *contacts,
+                            const rdli_zone *zone);
 
 /* Makes room for row_total rows and vertex_total vertices. */
 rdl_status rdli_response_reserve(rdli_response *response);
