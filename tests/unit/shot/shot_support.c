@@ -176,3 +176,14 @@ int file_exists(const char *path)
     struct stat info;
     return lstat(path, &info) == 0;
 }
+
+void expect_open(const char *path, rdl_status status, const char *field, uint64_t index)
+{
+    rdl_shot *shot = NULL;
+    rdl_fault fault = {0, ""};
+    rdl_status got = rdl_shot_open(path, &shot, &fault);
+    ck_assert_msg(got == status && strcmp(fault.field, field) == 0 && fault.index == index,
+                  "got %d at %s %llu, wanted %d at %s %llu", got, fault.field, (unsigned long long)fault.index, status,
+                  field, (unsigned long long)index);
+    rdl_shot_close(shot);
+}

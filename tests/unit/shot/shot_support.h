@@ -30,5 +30,7 @@ int file_exists(const char *path);
 /* The whole file; *bytes is its length. The caller frees it. */
 unsigned char *load(const char *path, size_t *bytes);
 void store(const char *path, const void *data, size_t bytes);
+/* Opening PATH ends with that status and names that offender. */
+void expect_open(const char *path, rdl_status status, const char *field, uint64_t index);
 
 #endif

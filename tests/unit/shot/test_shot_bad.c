@@ -12,6 +12,13 @@
 
 enum { FRAMES = 4 };
 
+/* For the leak checker: HDF5 1.10 loses some of its own memory over broken files. */
+const char *__lsan_default_suppressions(void);
+const char *__lsan_default_suppressions(void)
+{
+    return "leak:libhdf5\n";
+}
+
 /* Opens a copy of a good shot for changes. */
 static hid_t begin_change(const char *path)
 {
@@ -43,17 +50,6 @@ static void put_reals(hid_t file, const char *name, int rank, const hsize_t dims
 static void put_whole(hid_t file, const char *name, int rank, const hsize_t dims[3], const int64_t *data)
 {
     put(file, name, H5T_STD_I64LE, H5T_NATIVE_INT64, rank, dims, data);
-}
-
-static void expect_open(const char *path, rdl_status status, const char *field, uint64_t index)
-{
-    rdl_shot *shot = NULL;
-    rdl_fault fault = {0, ""};
-    rdl_status got = rdl_shot_open(path, &shot, &fault);
-    ck_assert_msg(got == status && strcmp(fault.field, field) == 0 && fault.index == index,
-                  "got %d at %s %llu, wanted %d at %s %llu", got, fault.field, (unsigned long long)fault.index, status,
-                  field, (unsigned long long)index);
-    rdl_shot_close(shot);
 }
 
 #define CHANGED(path, change, status, field, index)  \
@@ -559,6 +555,7 @@ START_TEST(flipped_bits_do_no_harm)
 {
     const char *path = scratch("straight.h5"), *bent = scratch("bent.h5");
     size_t bytes = 0, noticed = 0, tried = 0;
+    H5Eset_auto2(H5E_DEFAULT, NULL, NULL); /* else HDF5 1.10 complains at exit, after some of these files */
     write_shot(path, 2, 64, 1);
     unsigned char *data = load(path, &bytes);
     for (size_t k = (size_t)_i; k < bytes; k += k < 4096 ? 5 : 13) {
