@@ -8,7 +8,7 @@
  * the feature, asked for a little more than the gap, covers its inside (docs/method/narrow.md, "Covering"). */
 #include "narrow/exact_pair.h"
 
-enum { FINE_GAP = 100, PAD = 6, SLACK_BITS = 21, ALARM_BITS = 19, WIDTH_BITS = 21, HI_BUDGET = 64 };
+enum { FINE_GAP = 100, PAD = 6, SLACK_BITS = 21, ALARM_BITS = 19, WIDTH_BITS = 21, HI_BUDGET = 64, MOST_SPLITS = 8 };
 
 typedef struct levels {
     rdli_int free[3];   /* squared: the gap with PAD; each next one (1 + 2^-21) times the one before */
@@ -246,6 +246,43 @@ static enum nearness middle_of(rdli_arena *arena, const moving *motion, const no
     return near;
 }
 
+/* Whether [from, to] / 2^WIDTH_BITS is certified free. */
+static bool cells_keep(rdli_arena *arena, const moving *motion, uint64_t from, uint64_t to, const levels *level)
+{
+    size_t mark = arena->used;
+    rdli_exact_pair local = {.kind = motion->pair->kind};
+    place_at(arena, motion, rdli_int_of_word(arena, from), WIDTH_BITS, 0, &local);
+    place_at(arena, motion, rdli_int_of_word(arena, to), WIDTH_BITS, 1, &local);
+    bool keeps = interval_keeps(arena, &local, level);
+    arena->used = mark;
+    return keeps;
+}
+
+/* A meeting at gap 0 before `meeting` is also a touch at the gap: what is left is to certify the time up to just before
+ * it. False where an earlier touch is not excluded. */
+static bool free_before(rdli_arena *arena, const moving *motion, const levels *level, double meeting, rdl_touch *touch)
+{
+    uint64_t ends[WIDTH_BITS + 1], free = 0, cell = (uint64_t)(meeting * (double)(1 << WIDTH_BITS));
+    int top = 0, depth = 0;
+    ends[0] = cell > 0 ? cell - 1 : 0;
+    while (top >= 0 && free < ends[0]) {
+        if (cells_keep(arena, motion, free, ends[top], level)) {
+            free = ends[top--];
+            continue;
+        }
+        uint64_t half = free + (ends[top] - free) / 2;
+        if (half == free || top == MOST_SPLITS)
+            return false;
+        ends[++top] = half;
+        depth = top > depth ? top : depth;
+    }
+    touch->time_lo = ldexp((double)free, -WIDTH_BITS);
+    touch->time_hi = meeting;
+    touch->touches = 1;
+    touch->depth = (uint8_t)depth;
+    return true;
+}
+
 static bool node_keeps(rdli_arena *arena, const moving *motion, const node *at, const levels *level)
 {
     size_t mark = arena->used;
@@ -335,7 +372,7 @@ static void search(rdli_arena *arena, const moving *motion, const levels *level,
     touch->depth = (uint8_t)(depth < 255 ? depth : 255);
 }
 
-void rdli_exact_gap(rdli_arena *arena, int kind, const rdl_motion *motion, double gap, rdl_touch *touch)
+void rdli_exact_gap(rdli_arena *arena, int kind, const rdl_motion *motion, double gap, double meeting, rdl_touch *touch)
 {
     *touch = (rdl_touch){.stage = RDL_STAGE_EXACT, .order = 6};
     if (rdli_exact_against_gap(arena, kind, motion, gap, 0) <= 0) {
@@ -350,6 +387,8 @@ void rdli_exact_gap(rdli_arena *arena, int kind, const rdl_motion *motion, doubl
     rdli_exact_pair_of(arena, kind, motion, rdli_common_unit(motion, 0), &pair);
     moving scene = {&pair, (int64_t)exponent - 1 - FINE_GAP};
     levels level = levels_of(arena, gap, scene.unit);
+    if (meeting <= 1 && free_before(arena, &scene, &level, meeting, touch))
+        return;
     int64_t widest = 0;
     for (int end = 0; end < 2; end++)
         for (int k = 0; k < 3; k++) {

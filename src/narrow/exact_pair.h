@@ -41,8 +41,9 @@ void rdli_exact_zero(rdli_arena *arena, int kind, const rdl_motion *motion, cons
 bool rdli_exact_meets(rdli_arena *arena, const rdli_exact_pair *pair, int end);
 /* Sign of (distance at `end`)^2 - gap^2. */
 int rdli_exact_against_gap(rdli_arena *arena, int kind, const rdl_motion *motion, double gap, int end);
-/* Gap > 0, in fixed-point arithmetic fine enough for the gap. */
-void rdli_exact_gap(rdli_arena *arena, int kind, const rdl_motion *motion, double gap, rdl_touch *touch);
+/* Gap > 0, in fixed-point arithmetic fine enough for the gap. meeting: a time before which the pair is known to meet at
+ * gap 0, or more than 1. */
+void rdli_exact_gap(rdli_arena *arena, int kind, const rdl_motion *motion, double gap, double meeting, rdl_touch *touch);
 
 /* Room for numbers of ordinary range, and for any finite doubles; see docs/method/narrow.md. */
 enum { RDLI_SMALL_ROOM = 6144, RDLI_LARGE_ROOM = 49152 };

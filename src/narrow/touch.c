@@ -8,6 +8,7 @@ typedef struct question {
     int kind;
     const rdl_motion *motion;
     double gap;
+    double meeting;        /* gap > 0: the time by which the pair meets at gap 0; more than 1 when it does not */
     rdli_frame start, end; /* of ordinary size */
 } question;
 
@@ -15,7 +16,7 @@ static bool exact_touch(mp_limb_t *limbs, size_t room, const question *q, rdl_to
 {
     rdli_arena arena = {limbs, 0, room, false};
     if (q->gap > 0) {
-        rdli_exact_gap(&arena, q->kind, q->motion, q->gap, touch);
+        rdli_exact_gap(&arena, q->kind, q->motion, q->gap, q->meeting, touch);
     } else {
         rdli_cubic doubles = rdli_cubic_of(q->kind, &q->start, &q->end);
         rdli_exact_zero(&arena, q->kind, q->motion, &doubles, touch);
@@ -53,11 +54,16 @@ static double sized_gap(const rdli_sized *sized, double gap)
 void rdli_find_open_touch(int kind, const rdl_motion *motion, const rdli_sized *sized, double gap, rdl_touch *touch)
 {
     double own_gap = sized_gap(sized, gap);
-    question q = {kind, motion, gap, rdli_frame_of(kind, sized->motion.start), rdli_frame_of(kind, sized->motion.end)};
+    question q = {kind, motion, gap, 2, rdli_frame_of(kind, sized->motion.start), rdli_frame_of(kind, sized->motion.end)};
     if (gap > 0 && isnormal(own_gap) && rdli_series_touch(kind, &q.start, &q.end, own_gap, touch))
         return;
     if (gap == 0 && rdli_roots_touch(kind, &q.start, &q.end, touch))
         return;
+    if (gap > 0) {
+        rdl_touch at_zero;
+        rdli_find_open_touch(kind, motion, sized, 0, &at_zero);
+        q.meeting = at_zero.touches ? at_zero.time_hi : 2;
+    }
     certain_touch(&q, touch);
 }
 
