@@ -6,9 +6,12 @@ static const double unit = 0x1p-52;
 
 int rdli_scale_points(const double *x, size_t count, double *scaled)
 {
-    double largest = 0;
-    for (size_t i = 0; i < count; i++)
-        largest = fabs(x[i]) > largest ? fabs(x[i]) : largest;
+    double four[4] = {0, 0, 0, 0}; /* four chains instead of one long one; count is a multiple of 4 */
+    for (size_t i = 0; i < count; i += 4)
+        for (size_t j = 0; j < 4; j++)
+            four[j] = fabs(x[i + j]) > four[j] ? fabs(x[i + j]) : four[j];
+    double left = four[0] > four[1] ? four[0] : four[1], right = four[2] > four[3] ? four[2] : four[3];
+    double largest = left > right ? left : right;
     if (largest == 0 || (largest > 0x1p-20 && largest < 0x1p20)) {
         memcpy(scaled, x, count * sizeof *x);
         return 0;

@@ -12,7 +12,7 @@ typedef struct rdli_frame {
 } rdli_frame;
 
 /* x multiplied by 2^shift, where the largest coordinate needs it to stay far from overflow and underflow; returns the
- * shift (0 for ordinary sizes, and then x is only copied). */
+ * shift (0 for ordinary sizes, and then x is only copied). count is a multiple of 4. */
 int rdli_scale_points(const double *x, size_t count, double *scaled);
 
 rdli_frame rdli_frame_of(int kind, const double x[4][3]);
