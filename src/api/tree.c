@@ -3,24 +3,6 @@
 
 static const size_t COUNT_MAX = 0x7FFFFFFF;
 
-/* Names the first box that is not finite or has lo > hi. */
-static rdl_status check_boxes(const rdl_box *boxes, size_t count, rdl_fault *fault)
-{
-    for (size_t i = 0; i < count; i++) {
-        const rdl_box *box = &boxes[i];
-        bool finite = true, ordered = true;
-        for (unsigned k = 0; k < 3; k++) {
-            finite &= isfinite(box->lo[k]) && isfinite(box->hi[k]);
-            ordered &= box->lo[k] <= box->hi[k];
-        }
-        if (!finite)
-            return rdli_fault_set(fault, RDL_NOT_FINITE, "boxes", i);
-        if (!ordered)
-            return rdli_fault_set(fault, RDL_BAD_BOX, "boxes", i);
-    }
-    return RDL_OK;
-}
-
 rdl_status rdl_tree_create(const rdl_box boxes[], size_t count, const rdl_host *host, rdl_tree **tree, rdl_fault *fault)
 {
     if (tree == NULL)
@@ -29,24 +11,16 @@ rdl_status rdl_tree_create(const rdl_box boxes[], size_t count, const rdl_host *
         return rdli_fault_set(fault, RDL_BAD_ARGUMENT, "boxes", 0);
     if (count > COUNT_MAX)
         return rdli_fault_set(fault, RDL_TOO_LARGE, "count", count);
-    rdl_status status = check_boxes(boxes, count, fault);
-    if (status != RDL_OK)
-        return status;
-    status = rdli_boxtree_create(host, boxes, (uint32_t)count, tree);
-    return status == RDL_OK ? RDL_OK : rdli_fault_set(fault, status, status == RDL_BAD_ARGUMENT ? "host" : "tree", 0);
+    return rdli_boxtree_create(host, boxes, (uint32_t)count, tree, fault);
 }
 
 rdl_status rdl_tree_update(rdl_tree *tree, const rdl_box boxes[], rdl_fault *fault)
 {
     if (tree == NULL)
         return rdli_fault_set(fault, RDL_BAD_ARGUMENT, "tree", 0);
-    size_t count = rdli_boxtree_count(tree);
-    if (boxes == NULL && count != 0)
+    if (boxes == NULL && rdli_boxtree_count(tree) != 0)
         return rdli_fault_set(fault, RDL_BAD_ARGUMENT, "boxes", 0);
-    rdl_status status = check_boxes(boxes, count, fault);
-    if (status == RDL_OK)
-        rdli_boxtree_update(tree, boxes);
-    return status;
+    return rdli_boxtree_update(tree, boxes, fault);
 }
 
 rdl_status rdl_tree_self_pairs(const rdl_tree *tree, const uint32_t *corners, rdl_emit_pairs *emit, void *user)

@@ -71,7 +71,8 @@ static rdl_status open_scratch(rdli_memory *memory, rdli_query *query, unsigned 
 /* Forgets what was found. */
 static rdl_status open_rows(rdli_memory *memory, rdli_query *query, unsigned workers, size_t pairs)
 {
-    rdl_status status = rdli_rows_open(memory, &query->rows, query->a.tree->count, workers, pairs);
+    const uint32_t rows = query->emit == NULL ? query->a.tree->count : 0;
+    rdl_status status = rdli_rows_open(memory, &query->rows, rows, workers, pairs);
     if (status != RDL_OK)
         return status;
     memset(query->portions, 0, workers * sizeof(rdli_portion));

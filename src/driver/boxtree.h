@@ -5,10 +5,11 @@
 #include "base/memory.h"
 #include "raddle/tree.h"
 
-/* boxes are valid. Errors: RDL_BAD_ARGUMENT (host), RDL_NO_MEMORY. */
-rdl_status rdli_boxtree_create(const rdl_host *host, const rdl_box *boxes, uint32_t count, rdl_tree **tree);
+/* The box checks of raddle/tree.h are made here, where there are workers for them; all other arguments are valid. */
+rdl_status rdli_boxtree_create(const rdl_host *host, const rdl_box *boxes, uint32_t count, rdl_tree **tree,
+                               rdl_fault *fault);
 uint32_t rdli_boxtree_count(const rdl_tree *tree);
-void rdli_boxtree_update(rdl_tree *tree, const rdl_box *boxes);
+rdl_status rdli_boxtree_update(rdl_tree *tree, const rdl_box *boxes, rdl_fault *fault);
 rdl_status rdli_boxtree_self_pairs(rdl_tree *tree, const uint32_t *corners, rdl_emit_pairs *emit, void *user);
 /* For tests: portable code only, and how many pairs may be kept at once. The pairs stay the same. */
 void rdli_boxtree_use_vector(rdl_tree *tree, bool vector);
