@@ -96,14 +96,15 @@ void finish_funnel(judge *j, unsigned steps, const uint64_t verdicts[4])
         judge_fault(j, steps, "only %zu vertices fell into the spout", through);
 }
 
-/* A cloth of 5 mm mesh and a strand of 5 mm pieces, both 6 mm half thick, hang from driven ends and swing. */
+/* A cloth of 5 mm mesh and a strand of 5 mm pieces, both 6 mm half thick, hang from a driven border
+ * and a driven end, and swing. */
 void build_dense(world *w)
 {
     const double corner[3] = {0.0, 0.0, 0.0}, u[3] = {0.04, 0.0, 0.0}, v[3] = {0.0, 0.0, -0.04};
     const double a[3] = {0.1, 0.0, 0.0}, b[3] = {0.16, 0.0, -0.06};
     world_part(w, "thick cloth", RDL_CLOTH, 0.006);
     uint32_t first = world_sheet(w, corner, u, v, 8, 8, 0.001);
-    for (uint32_t i = 0; i <= 8; i += 4)
+    for (uint32_t i = 0; i <= 8; i++)
         world_set_driven(w, first + i * 9);
     world_part(w, "thick strand", RDL_STRANDS, 0.006);
     first = world_line(w, a, b, 17, 0.001);
