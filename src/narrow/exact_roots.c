@@ -1,14 +1,15 @@
 /* narrow/exact_roots.c: real roots in (0, 1) of polynomials with integer coefficients, and signs there.
  *
  * In x = t / (1 - t) the scaled Bernstein coefficients are power-basis coefficients and (0, 1) is (0, infinity). Distinct
- * roots are isolated by Sturm's theorem. The sign of q at the only root of f in (a, b) is an exact Tarski query (Basu,
- * Pollack, Roy 2006, ch. 2): the difference of the sign variations at a and b of the signed remainder sequence of f and
- * f' q. */
+ * roots are isolated by Sturm's theorem. The sign of q at the only root of f in (a, b) is read from q on (a, b), after
+ * that has been narrowed; whether it is 0, from the greatest common divisor; and where neither helps, it is an exact Tarski
+ * query (Basu, Pollack, Roy 2006, ch. 2): the difference of the sign variations at a and b of the signed remainder
+ * sequence of f and f' q. */
 #include "narrow/exact_roots.h"
 
-/* Intervals of roots are 2^-FINE wide, well below the promised 1e-6; a sign that is not clear on one of 2^-SHARP is most
- * likely 0, and worth a query. */
-enum { FINE = 24, SHARP = 72 };
+/* Intervals of roots are 2^-FINE wide, well below the promised 1e-6. A sign that is not clear on one of 2^-SHARP is most
+ * likely 0, and worth the question whether it is; SHARPEST + 16 is what fits into an instant's own limbs. */
+enum { FINE = 24, SHARP = 56, SHARPEST = 104 };
 
 /* t : 1 - t, both >= 0 */
 typedef struct proportion {
@@ -239,11 +240,26 @@ static int sign_by_query(rdli_arena *arena, const rdli_instant *at, const rdli_p
     return variations(arena, &s, a) - variations(arena, &s, b);
 }
 
+/* Whether q vanishes at the root, by Euclid's algorithm: 1 yes, 0 no, -1 where the common factor has more than one root. */
+static int shares_root(rdli_arena *arena, const rdli_instant *at, const rdli_poly *q, proportion a, proportion b)
+{
+    rdli_poly first = *at->whole, second = *q;
+    drop_leading_zeros(&second);
+    while (!rdli_poly_is_zero(&second) && !arena->overflow) {
+        rdli_poly rest = remainder_of(arena, first, &second, NULL);
+        first = second;
+        second = rest;
+    }
+    if (first.degree != 1)
+        return first.degree == 0 ? 0 : -1;
+    return sign_at_proportion(arena, &first, a) * sign_at_proportion(arena, &first, b) < 0;
+}
+
 int rdli_instant_sign(rdli_arena *arena, rdli_instant *at, const rdli_poly *q)
 {
     if (rdli_poly_is_zero(q))
         return 0;
-    for (;;) {
+    for (bool not_zero = false;;) {
         size_t mark = arena->used;
         proportion a = proportion_of(arena, at->k, at->m, false);
         int sign;
@@ -253,12 +269,19 @@ int rdli_instant_sign(rdli_arena *arena, rdli_instant *at, const rdli_poly *q)
             return sign;
         }
         proportion b = proportion_of(arena, at->k, at->m, true);
+        bool done = false;
         sign = sign_over(arena, q, a, b);
-        bool sharp = at->m >= SHARP;
-        if (sign == 0 && sharp)
+        if (sign == 0 && at->m >= SHARP && !not_zero) {
+            int shares = shares_root(arena, at, q, a, b);
+            not_zero = shares == 0;
+            done = shares == 1;
+        }
+        if (sign == 0 && !done && at->m >= SHARP && (!not_zero || at->m >= SHARPEST)) {
             sign = sign_by_query(arena, at, q, a, b);
+            done = true;
+        }
         arena->used = mark;
-        if (sign || sharp)
+        if (sign || done || arena->overflow)
             return sign;
         sharpen(arena, at);
     }
