@@ -36,7 +36,7 @@ typedef struct rdl_named_pair {
     uint32_t kind, first, second, why;
 } rdl_named_pair;
 
-enum { /* how far a zone had to go */
+enum { /* how far a zone had to go; a rigid zone in a shorter piece counts as rigid */
     RDL_LEVEL_INEQUALITY = 0, /* one-sided zone solve */
     RDL_LEVEL_FENCE = 1,      /* one-sided zone solve against separating planes fixed at the start */
     RDL_LEVEL_RIGID = 2,      /* the zone moved as one rigid body */

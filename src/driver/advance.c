@@ -175,6 +175,10 @@ static bool react(rdl_engine *engine, const rdli_piece *piece)
     bool hopeless = false;
     for (uint32_t z = 0; z < engine->response.zone_count; z++) {
         rdli_zone *zone = &zones[z];
+        /* The last solve may have parted groups that were one when the zone was judged. */
+        if (zone->settled && zone->level < RDL_LEVEL_RIGID
+            && rdli_zone_gains_energy(&engine->response, piece, engine->contacts.data, zone))
+            mark_zone(engine, zone, (uint8_t)(zone->level + 1));
         if (!zone->infeasible && !zone->exhausted)
             continue;
         if (zone->driven && !piece->shortest)

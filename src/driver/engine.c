@@ -18,6 +18,7 @@ static rdl_status reserve_all(rdl_engine *engine)
         { &engine->driven, n, 1 },
         { &engine->fixed, n, 1 },
         { &engine->awake, n, 1 },
+        { &engine->touched, n, 1 },
         { &engine->released, n, 1 },
         { &engine->moved, n, 1 },
         { &engine->squeeze, n, sizeof(double) },
@@ -81,7 +82,7 @@ void rdli_engine_destroy(rdl_engine *engine)
 {
     rdli_memory *memory = &engine->memory;
     rdli_room *rooms[] = { &engine->box_room[0], &engine->box_room[1], &engine->box_room[2], &engine->muted, &engine->mass,
-        &engine->driven, &engine->fixed, &engine->awake, &engine->released, &engine->moved, &engine->squeeze,
+        &engine->driven, &engine->fixed, &engine->awake, &engine->touched, &engine->released, &engine->moved, &engine->squeeze,
         &engine->start, &engine->proposed, &engine->piece_start, &engine->target, &engine->trial, &engine->certified, &engine->velocity,
         &engine->impulses, &engine->last, &engine->flags, &engine->indices, &engine->hits, &engine->chunk_counts,
         &engine->contacts, &engine->merged, &engine->waypoint_times, &engine->waypoint_positions, &engine->out_contacts,

@@ -45,6 +45,7 @@ struct rdl_engine {
     rdli_room box_room[3];
     rdli_room muted;           /* this step's muting */
     rdli_room mass, driven, fixed, awake, squeeze, released;
+    rdli_room touched;         /* N: moved off its proposed path in an earlier piece of this step */
     rdli_room start, proposed, piece_start, target, trial, certified, velocity; /* N x 3 doubles */
     rdli_room flags, indices, hits, chunk_counts;
     size_t hit_count;

@@ -56,7 +56,7 @@ static void book_zone(rdl_engine *engine, const rdli_piece *piece, rdli_zone *zo
     memset(row, 0, sizeof *row);
     row->vertex_count = zone->vertex_count;
     row->contact_count = loaded;
-    row->level = length < 1.0 ? RDL_LEVEL_SUBSTEP : zone->level;
+    row->level = length < 1.0 && zone->level < RDL_LEVEL_RIGID ? RDL_LEVEL_SUBSTEP : zone->level;
     row->passes = (uint32_t)engine->passes;
     row->touches_driven = zone->driven;
     row->worst_correction = worst_correction(engine, piece, zone);

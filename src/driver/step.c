@@ -19,25 +19,37 @@ typedef struct course {
     bool first;
 } course;
 
+/* Where the piece is to end. Vertices on their proposed path stay on it. One that was moved off goes on with the velocity that
+ * the impulses left it: heading back for its proposed end would feed energy that the contact had taken (the mean of
+ * velocities that only lose energy has no more of it than the first). */
 static void aim_piece(rdl_engine *engine, const course *c)
 {
     const double (*start)[3] = engine->start.data, (*proposed)[3] = engine->proposed.data;
-    const double (*from)[3] = engine->piece_start.data;
+    const double (*from)[3] = engine->piece_start.data, (*velocity)[3] = engine->velocity.data;
     double (*target)[3] = engine->target.data;
-    const uint8_t *driven = engine->driven.data, *fixed = engine->fixed.data;
-    double left = 1.0 - c->reached, end = c->reached + c->length;
-    bool last = c->length >= left;
+    const uint8_t *driven = engine->driven.data, *fixed = engine->fixed.data, *touched = engine->touched.data;
+    double end = c->reached + c->length;
+    bool last = end >= 1.0;
     for (uint32_t v = 0; v < engine->mesh.vertex_count; v++)
         for (int k = 0; k < 3; k++) {
             double x = proposed[v][k];
             if (fixed[v] && !driven[v])
                 x = from[v][k];
-            else if (!last && driven[v])
-                x = start[v][k] + end * (proposed[v][k] - start[v][k]);
+            else if (touched[v])
+                x = from[v][k] + c->length * velocity[v][k];
             else if (!last)
-                x = from[v][k] + c->length / left * (proposed[v][k] - from[v][k]);
+                x = start[v][k] + end * (proposed[v][k] - start[v][k]);
             target[v][k] = rdli_round_to(engine->format, x);
         }
+}
+
+static void mark_touched(rdl_engine *engine)
+{
+    const double (*target)[3] = engine->target.data, (*trial)[3] = engine->trial.data;
+    uint8_t *touched = engine->touched.data;
+    for (uint32_t v = 0; v < engine->mesh.vertex_count; v++)
+        if (memcmp(target[v], trial[v], sizeof target[v]) != 0)
+            touched[v] = 1;
 }
 
 static rdl_status keep_waypoint(rdl_engine *engine, double time)
@@ -127,6 +139,7 @@ static rdl_status accept_piece(rdl_engine *engine, course *c, const rdli_piece *
         status = keep_waypoint(engine, end);
     if (status != RDL_OK)
         return status;
+    mark_touched(engine);
     c->reached = end;
     c->first = false;
     c->length = fmin(2.0 * c->length, 1.0 - end);
@@ -166,6 +179,7 @@ static void load_step(rdl_engine *engine)
     size_t n = engine->mesh.vertex_count;
     double *squeeze = engine->squeeze.data;
     memcpy(engine->fixed.data, engine->driven.data, n);
+    memset(engine->touched.data, 0, n);
     memcpy(engine->piece_start.data, engine->start.data, n * 3 * sizeof(double));
     for (size_t v = 0; v < n; v++)
         squeeze[v] = 1.0;

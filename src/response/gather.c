@@ -12,7 +12,7 @@ void rdli_response_release(rdli_response *response)
 {
     rdli_room *rooms[] = { &response->parent, &response->stamp, &response->local, &response->zones,
         &response->zone_contacts, &response->zone_vertices, &response->rows, &response->loads, &response->all_loads, &response->row_work,
-        &response->inverse_mass, &response->targets, &response->solutions, &response->scratch, &response->sums };
+        &response->inverse_mass, &response->targets, &response->solutions, &response->scratch, &response->sums, &response->dense };
     for (size_t k = 0; k < sizeof rooms / sizeof rooms[0]; k++)
         rdli_room_release(response->memory, rooms[k]);
 }

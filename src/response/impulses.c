@@ -21,13 +21,14 @@ static double approach(const rdli_contact *contact, const rdli_plane *plane, con
     return sum;
 }
 
-/* The planes of a contact that pushed; one that fell back to fixed directions counts with its closest points. */
+/* The planes of a contact that pushed; one that fell back to fixed directions, or to a
+ * rigid zone, counts with its closest points. */
 static bool carries_load(const rdli_contact *contact, uint8_t plane)
 {
     double fenced = 0.0;
     for (int d = 0; d < 4; d++)
         fenced += contact->fence_load[d];
-    return contact->plane[plane].load > 0.0 || (fenced > 0.0 && plane == contact->nearest);
+    return contact->plane[plane].load > 0.0 || ((fenced > 0.0 || contact->rigid) && plane == contact->nearest);
 }
 
 static void set_row(const job *j, const rdli_contact *contact, const rdli_plane *plane, rdli_row *row)
@@ -81,7 +82,7 @@ static void solve_zone(void *data, size_t index, unsigned worker)
         rows[k].tolerance = fmax(rows[k].tolerance, fastest * 0x1p-48);
     rdli_problem problem = { zone->vertex_count, row, inverse, (const double (*)[3])target, rows, load,
         (double (*)[3])r->solutions.data + zone->vertex_first, (double (*)[3])r->scratch.data + zone->vertex_first,
-        (double *)r->row_work.data + 4 * (size_t)zone->row_first, j->piece->sweeps_max };
+        (double *)r->row_work.data + 4 * (size_t)zone->row_first, NULL, j->piece->sweeps_max };
     rdli_solve(&problem);
     row = 0;
     for (uint32_t i = 0; i < zone->contact_count; i++)

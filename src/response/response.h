@@ -17,9 +17,9 @@ typedef struct rdli_response {
     rdli_room parent, stamp, local;      /* per vertex: union-find, pass in which it was last seen, number in its zone */
     uint32_t pass_stamp;
     rdli_room zones, zone_contacts, zone_vertices;
-    rdli_room rows, loads, all_loads, row_work, inverse_mass, targets, solutions, scratch, sums;
+    rdli_room rows, loads, all_loads, row_work, inverse_mass, targets, solutions, scratch, sums, dense;
     uint32_t zone_count;
-    size_t row_total, vertex_total;
+    size_t row_total, vertex_total, dense_each; /* dense_each: doubles of dense work space per worker */
 } rdli_response;
 
 /* What the zones need to know about one piece of a step. */

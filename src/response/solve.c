@@ -2,6 +2,7 @@
 #include "response/solve.h"
 
 #include "base/vector.h"
+#include "response/dense.h"
 
 typedef struct state {
     rdli_problem *problem;
@@ -297,6 +298,12 @@ rdli_solved rdli_solve(rdli_problem *problem)
         solved.converged = descend(&s, &solved, conjugate);
     if (!solved.converged && !solved.infeasible)
         solved.converged = relax_until(&s, &solved, most);
+    if (!solved.converged && problem->dense_work != NULL && rdli_solve_dense(problem, problem->dense_work)) {
+        solved.converged = true;
+        solved.infeasible = false;
+        solved.worst_after = 0.0;
+        return solved;
+    }
     for (size_t r = 0; r < n; r++)
         problem->load[r] = s.scaled[r] * problem->rows[r].scale;
     solved.worst_after = refresh(&s);

@@ -25,6 +25,7 @@ typedef struct rdli_problem {
     double (*solution)[3];          /* out */
     double (*scratch)[3];           /* vertex_count */
     double *work;                   /* 4 * row_count */
+    double *dense_work;             /* room for rdli_solve_dense, or NULL */
     uint32_t sweeps_max;
 } rdli_problem;
 

@@ -3,8 +3,8 @@
 #include "base/vector.h"
 #include "raddle/query.h"
 #include "raddle/report.h"
+#include "response/dense.h"
 #include "response/response.h"
-#include "response/solve.h"
 
 typedef struct job {
     rdli_response *response;
@@ -138,6 +138,7 @@ static double worst_violation(const rdli_problem *problem, const double (*x)[3])
 
 /* Zones of few rows are solved exactly at once. */
 enum { FEW_ROWS = 64 };
+enum { REFINING_SWEEPS = 128 };
 /* A large violated zone is solved to a twentieth of its violation and aims as much above, so that every row ends above
  * its floor although the solve is quick; each clean pass takes four fifths of that back. */
 static const double slop_share = 0.05, slop_growth = 1.5, slop_kept = 0.2, slop_most = 0.5;
@@ -280,7 +281,7 @@ static void write_back(const job *j, rdli_zone *zone, const double (*solution)[3
         j->awake[vertices[i]] = 1;
 }
 
-static rdli_problem problem_of(const job *j, const rdli_zone *zone)
+static rdli_problem problem_of(const job *j, const rdli_zone *zone, unsigned worker)
 {
     rdli_response *r = j->response;
     rdli_problem problem;
@@ -293,7 +294,11 @@ static rdli_problem problem_of(const job *j, const rdli_zone *zone)
     problem.solution = (double (*)[3])r->solutions.data + zone->vertex_first;
     problem.scratch = (double (*)[3])r->scratch.data + zone->vertex_first;
     problem.work = (double *)r->row_work.data + 4 * (size_t)zone->row_first;
-    problem.sweeps_max = j->piece->sweeps_max;
+    /* A clean zone is only refined: not at any price. */
+    bool dense = zone->violated && zone->vertex_count <= RDLI_DENSE_VERTICES;
+    problem.dense_work = dense ? (double *)r->dense.data + worker * r->dense_each : NULL;
+    uint32_t sweeps = j->piece->sweeps_max;
+    problem.sweeps_max = zone->violated || sweeps < REFINING_SWEEPS ? sweeps : REFINING_SWEEPS;
     return problem;
 }
 
@@ -320,14 +325,13 @@ static double smallest_floor(const job *j, const rdli_zone *zone)
 
 static void solve_zone(void *data, size_t index, unsigned worker)
 {
-    (void)worker;
     const job *j = data;
     rdli_response *r = j->response;
     rdli_zone *zone = (rdli_zone *)r->zones.data + index;
     if (zone->settled)
         return;
     const uint32_t *order = (const uint32_t *)r->zone_contacts.data + zone->contact_first;
-    rdli_problem problem = problem_of(j, zone);
+    rdli_problem problem = problem_of(j, zone, worker);
     load_vertices(j, zone, j->piece->target);
     if (zone->level == RDL_LEVEL_RIGID && !zone->driven) {
         const uint32_t *vertices = (const uint32_t *)r->zone_vertices.data + zone->vertex_first;
@@ -387,7 +391,14 @@ rdl_status rdli_zones_solve(rdli_response *r, const rdli_piece *piece, rdli_cont
             zones[z].row_count += rows_of(&contacts[order[zones[z].contact_first + i]], zones[z].level >= RDL_LEVEL_FENCE);
         r->row_total += zones[z].row_count;
     }
-    if (rdli_response_reserve(r) != RDL_OK)
+    r->dense_each = 0;
+    for (uint32_t z = 0; z < r->zone_count; z++) {
+        size_t work = rdli_dense_work(zones[z].vertex_count, zones[z].row_count);
+        bool used = !zones[z].settled && zones[z].vertex_count <= RDLI_DENSE_VERTICES;
+        r->dense_each = used && work > r->dense_each ? work : r->dense_each;
+    }
+    if (rdli_response_reserve(r) != RDL_OK
+        || !rdli_room_reserve(r->memory, &r->dense, rdli_workers_count(r->workers) * r->dense_each, sizeof(double), false))
         return RDL_NO_MEMORY;
     job j = { r, piece, contacts, awake };
     rdli_parallel_for(r->workers, r->zone_count, solve_zone, &j);
