@@ -3,7 +3,7 @@
 #include "scenes.h"
 
 const scene scenes[] = {
-    {"stack", 50, ALSO_FLOAT32 | ALSO_LARGE, build_stack, NULL, NULL, accept_free, NULL, finish_stack},
+    {"stack", 40, ALSO_FLOAT32, build_stack, NULL, NULL, accept_free, NULL, finish_stack},
     {"rest", 60, ALSO_LARGE, build_rest, NULL, NULL, accept_free, NULL, finish_rest},
     {"slide", 20, ALSO_FLOAT32 | QUICK, build_slide, NULL, NULL, accept_free, inspect_slide, finish_slide},
     {"funnel", 60, 0, build_funnel, drive_funnel, NULL, accept_free, NULL, finish_funnel},

@@ -22,7 +22,7 @@ void build_stack(world *w)
         double u[3] = {c, d, 0.0}, v[3] = {-d, c, 0.002 * s};
         double corner[3] = {-0.5 * (c - d), -0.5 * (d + c), z};
         world_part(w, "sheet", RDL_CLOTH, 0.002);
-        world_sheet(w, corner, u, v, 8, 8, 0.001);
+        world_sheet(w, corner, u, v, 6, 6, 0.001);
     }
     w->gravity[2] = -9.81;
     w->drag = 0.02;

@@ -24,6 +24,7 @@ static void choose(group *g, unsigned flags, bool quick_only)
             g->index[g->count++] = i;
 }
 
+static play_result plain[40]; /* what the judged plays delivered, per scene, for comparison with other ways */
 static uint64_t frozen, counted; /* held or rigid vertex-steps of all; the tests run in one process, in order */
 
 START_TEST(plays_well)
@@ -37,7 +38,8 @@ START_TEST(plays_well)
         frozen += result.held + result.rigid;
         counted += result.vertex_steps;
     }
-    play_release(&result);
+    play_release(&plain[judged.index[_i]]);
+    plain[judged.index[_i]] = result;
     ck_assert_msg(result.faults == 0, "%s: %zu faults, first %s", s->name, result.faults, result.first_fault);
 }
 END_TEST
@@ -92,10 +94,11 @@ static const way ways[] = {
 static bool same_bits_in(const scene *s, size_t from, size_t to)
 {
     play_options options = play_defaults();
-    play_result base, other;
+    play_result *base = &plain[s - scenes], other;
     bool same = true;
     options.judged = false;
-    play(s, &options, &base);
+    if (base->track == NULL)
+        play(s, &options, base);
     for (size_t i = from; i < to; i++) {
         if (ways[i].flag != 0 && (s->flags & ways[i].flag) == 0)
             continue;
@@ -103,10 +106,9 @@ static bool same_bits_in(const scene *s, size_t from, size_t to)
         options.vector = ways[i].vector;
         options.scale = ways[i].scale;
         play(s, &options, &other);
-        same = same_track(s->name, &base, &other, ways[i].scale, ways[i].how) && same;
+        same = same_track(s->name, base, &other, ways[i].scale, ways[i].how) && same;
         play_release(&other);
     }
-    play_release(&base);
     return same;
 }
 
@@ -234,6 +236,8 @@ int main(int argc, char **argv)
     srunner_set_fork_status(runner, CK_NOFORK); /* sums over scenes */
     srunner_run_all(runner, CK_NORMAL);
     int failed = srunner_ntests_failed(runner);
+    for (int i = 0; i < scene_count; i++)
+        play_release(&plain[i]);
     srunner_free(runner);
     return failed == 0 ? EXIT_SUCCESS : EXIT_FAILURE;
 }
