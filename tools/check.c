@@ -15,13 +15,17 @@ static const cli_option options[] = {
 };
 
 static const cli_spec spec = {
-    .verb = "check", .operands = "SHOT",
+    .verb = "check",
+    .operands = "SHOT",
     .summary = "Looks for tangles at rest in every delivered state and for crossings along every path: from start by\n"
                "way of the way-points to delivered, and from delivered to the next start where the host moved it.\n"
                "Exact for the recorded numbers, and independent of the resolver.",
     .notes = "Without delivered positions the proposed ones are judged; a shot of poses alone is judged from pose to\n"
              "pose. Motion between recorded states is taken as straight.",
-    .options = options, .option_count = sizeof options / sizeof options[0], .operands_min = 1, .operands_max = 1};
+    .options = options,
+    .option_count = sizeof options / sizeof options[0],
+    .operands_min = 1,
+    .operands_max = 1};
 
 /* What a piece of path is. */
 typedef enum stretch { STRETCH_REST, STRETCH_STEP, STRETCH_HOST, STRETCH_POSES, STRETCHES } stretch;
@@ -35,9 +39,9 @@ typedef struct checker {
     const rdl_scene *scene;
     const rdl_shot_info *about;
     judge *judge;
-    unsigned from, to;       /* which positions a step starts and ends with; from 0: poses */
-    double *start, *end;     /* of the frame at hand */
-    double *last;            /* end of the frame before */
+    unsigned from, to;   /* which positions a step starts and ends with; from 0: poses */
+    double *start, *end; /* of the frame at hand */
+    double *last;        /* end of the frame before */
     size_t frame, most, printed, named, frames_done, bad_frames;
     long long first_bad;
     bool bodies, json, frame_is_bad;
@@ -57,12 +61,16 @@ static void list_finding(checker *c, const judge_finding *found, stretch where, 
     uint32_t a = point ? found->first : edges[found->first][0];
     uint32_t b = tangle || point ? c->scene->triangles[found->second][0] : edges[found->second][0];
     json_t *row = json_pack("{s:I, s:s, s:s, s:I, s:I, s:s, s:s, s:b}", "frame", (json_int_t)c->frame, "kind",
-                            tangle ? "tangle" : point ? "pt" : "ee", "where", stretch_keys[tangle ? STRETCH_REST : where],
-                            "first", (json_int_t)found->first, "second", (json_int_t)found->second, "first_part",
-                            part_of(c, a), "second_part", part_of(c, b), "driven", (int)found->driven);
+                            tangle  ? "tangle"
+                            : point ? "pt"
+                                    : "ee",
+                            "where", stretch_keys[tangle ? STRETCH_REST : where], "first", (json_int_t)found->first,
+                            "second", (json_int_t)found->second, "first_part", part_of(c, a), "second_part",
+                            part_of(c, b), "driven", (int)found->driven);
     if (!point)
-        json_object_set_new(row, "first_vertices", json_pack("[I, I]", (json_int_t)edges[found->first][0],
-                                                             (json_int_t)edges[found->first][1]));
+        json_object_set_new(
+            row, "first_vertices",
+            json_pack("[I, I]", (json_int_t)edges[found->first][0], (json_int_t)edges[found->first][1]));
     if (!tangle)
         json_object_set_new(row, "time", json_pack("[f, f]", lo, hi));
     json_array_append_new(c->list, row);
@@ -126,7 +134,8 @@ static size_t state_bytes(const checker *c)
     return 3 * c->scene->vertex_count * sizeof(double);
 }
 
-/* From start through the way-points to the end; at rest only the end is judged, since that is what the host is given. */
+/* From start through the way-points to the end; at rest only the end is judged, since that is what the host is given.
+ */
 static rdl_status look_at_step(checker *c, rdl_fault *fault)
 {
     rdl_shot_frame frame = {0};
@@ -225,7 +234,8 @@ static void print_text(const checker *c)
         printf("... and %zu more (--most prints them)\n", c->named - c->printed);
     printf("%s: %zu frames, %s judged%s\n", cli_clean(c->path), c->frames_done, judged(c),
            c->about->complete ? "" : " (an unfinished recording)");
-    printf("%" PRIu64 " tangles at rest, %" PRIu64 " crossings in steps, %" PRIu64 " crossings where the host moved it\n",
+    printf("%" PRIu64 " tangles at rest, %" PRIu64 " crossings in steps, %" PRIu64
+           " crossings where the host moved it\n",
            c->tangles, c->crossings[STRETCH_STEP] + c->crossings[STRETCH_POSES], c->crossings[STRETCH_HOST]);
     bool hidden = !c->bodies && c->driven_tangles + c->driven_crossings > 0;
     printf("bodies: %" PRIu64 " tangles, %" PRIu64 " crossings among driven vertices%s\n", c->driven_tangles,

@@ -11,10 +11,10 @@
 #include <raddle/shot.h>
 
 enum {
-    CLI_DONE = 0,          /* done, nothing wrong */
-    CLI_FINDINGS = 1,      /* done, with findings */
-    CLI_BAD_INPUT = 2,     /* bad usage or input */
-    CLI_NOT_FINISHED = 3,  /* memory, disk, something not checked */
+    CLI_DONE = 0,         /* done, nothing wrong */
+    CLI_FINDINGS = 1,     /* done, with findings */
+    CLI_BAD_INPUT = 2,    /* bad usage or input */
+    CLI_NOT_FINISHED = 3, /* memory, disk, something not checked */
     CLI_INTERRUPTED = 130
 };
 

@@ -125,8 +125,8 @@ bool cli_output_end(cli_output *output, const char *verb, int *code)
     output->file = NULL;
     bool named = false;
     if (written)
-        named = output->force ? rename(output->temporary, output->path) == 0
-                              : link(output->temporary, output->path) == 0;
+        named =
+            output->force ? rename(output->temporary, output->path) == 0 : link(output->temporary, output->path) == 0;
     if (written && !named)
         why = errno;
     if (!named || !output->force)

@@ -17,10 +17,16 @@ static const cli_option options[] = {
 };
 
 static const cli_spec spec = {
-    .verb = "export", .operands = "SHOT", .summary = "Writes frames of a shot as a numbered sequence of mesh files, for viewers and other tools.",
-    .notes = "Parts become groups (OBJ) or a property of each face and edge (PLY); strands become lines (OBJ) or edges (PLY).\n"
+    .verb = "export",
+    .operands = "SHOT",
+    .summary = "Writes frames of a shot as a numbered sequence of mesh files, for viewers and other tools.",
+    .notes = "Parts become groups (OBJ) or a property of each face and edge (PLY); strands become lines (OBJ) or edges "
+             "(PLY).\n"
              "Numbers are written so that they read back as the same doubles.",
-    .options = options, .option_count = sizeof options / sizeof options[0], .operands_min = 1, .operands_max = 1};
+    .options = options,
+    .option_count = sizeof options / sizeof options[0],
+    .operands_min = 1,
+    .operands_max = 1};
 
 typedef struct exporter {
     const char *path, *prefix, *extension;
@@ -71,7 +77,8 @@ static void write_ply(const exporter *e, FILE *out)
     for (size_t p = 0; p < scene->part_count; p++)
         fprintf(out, "comment part %zu %s\n", p, cli_clean(scene->parts[p].name));
     fprintf(out, "element vertex %zu\nproperty double x\nproperty double y\nproperty double z\n", scene->vertex_count);
-    fprintf(out, "element face %zu\nproperty list uchar int vertex_indices\nproperty int part\n", scene->triangle_count);
+    fprintf(out, "element face %zu\nproperty list uchar int vertex_indices\nproperty int part\n",
+            scene->triangle_count);
     if (scene->segment_count > 0)
         fprintf(out, "element edge %zu\nproperty int vertex1\nproperty int vertex2\nproperty int part\n",
                 scene->segment_count);

@@ -27,11 +27,17 @@ static const cli_option options[] = {
 };
 
 static const cli_spec spec = {
-    .verb = "import", .operands = "MESH",
-    .summary = "Turns a mesh file (OBJ, PLY, OFF, STL, glTF) into a shot of one pose: polygons become triangles, points with\n"
-               "the same bits are joined, holes and flipped faces are named.",
-    .notes = "Findings (exit code 1): holes in a body, edges of more than two faces, faces that run against a neighbour.",
-    .options = options, .option_count = sizeof options / sizeof options[0], .operands_min = 1, .operands_max = 1};
+    .verb = "import",
+    .operands = "MESH",
+    .summary =
+        "Turns a mesh file (OBJ, PLY, OFF, STL, glTF) into a shot of one pose: polygons become triangles, points with\n"
+        "the same bits are joined, holes and flipped faces are named.",
+    .notes =
+        "Findings (exit code 1): holes in a body, edges of more than two faces, faces that run against a neighbour.",
+    .options = options,
+    .option_count = sizeof options / sizeof options[0],
+    .operands_min = 1,
+    .operands_max = 1};
 
 enum { NODES_DEEP = 500 };
 
@@ -72,12 +78,14 @@ typedef double frame_matrix[3][4];
 
 static void combine(const frame_matrix outer, const struct aiMatrix4x4 *inner, frame_matrix out)
 {
-    const double in[4][4] = {{inner->a1, inner->a2, inner->a3, inner->a4}, {inner->b1, inner->b2, inner->b3, inner->b4},
-                             {inner->c1, inner->c2, inner->c3, inner->c4}, {inner->d1, inner->d2, inner->d3, inner->d4}};
+    const double in[4][4] = {{inner->a1, inner->a2, inner->a3, inner->a4},
+                             {inner->b1, inner->b2, inner->b3, inner->b4},
+                             {inner->c1, inner->c2, inner->c3, inner->c4},
+                             {inner->d1, inner->d2, inner->d3, inner->d4}};
     for (size_t r = 0; r < 3; r++)
         for (size_t c = 0; c < 4; c++)
-            out[r][c] = outer[r][0] * in[0][c] + outer[r][1] * in[1][c] + outer[r][2] * in[2][c] +
-                        outer[r][3] * in[3][c];
+            out[r][c] =
+                outer[r][0] * in[0][c] + outer[r][1] * in[1][c] + outer[r][2] * in[2][c] + outer[r][3] * in[3][c];
 }
 
 static bool add_mesh(importer *im, const struct aiMesh *source, const frame_matrix place)
@@ -187,9 +195,14 @@ static int write_shot(importer *im)
     if (status == RDL_OK)
         fill_mass(im, mass);
     const rdl_part described = {im->part, im->cloth ? RDL_CLOTH : RDL_BODY, im->half_thickness, im->friction};
-    const rdl_scene scene = {.size = sizeof scene, .part_count = 1, .parts = &described,
-                             .vertex_count = m->point_count, .vertex_part = part, .mass = mass,
-                             .triangle_count = m->face_count, .triangles = (const uint32_t(*)[3])m->faces};
+    const rdl_scene scene = {.size = sizeof scene,
+                             .part_count = 1,
+                             .parts = &described,
+                             .vertex_count = m->point_count,
+                             .vertex_part = part,
+                             .mass = mass,
+                             .triangle_count = m->face_count,
+                             .triangles = (const uint32_t(*)[3])m->faces};
     rdl_shot_options_default(&shot);
     shot.contents = RDL_SHOT_DELIVERED;
     shot.overwrite = im->force;
@@ -218,15 +231,15 @@ static json_t *make_json(const importer *im, bool closed)
                                                (json_int_t)im->faults.holes[i].edges));
     for (size_t i = 0; i < im->faults.flipped_count && i < im->most; i++)
         json_array_append_new(flipped, json_integer((json_int_t)im->faults.flipped[i]));
-    return json_pack("{s:o, s:o, s:o, s:s, s:I, s:I, s:I, s:I, s:I, s:I, s:I, s:b, s:I, s:I, s:I, s:I, s:o, s:o}", "file",
-                     cli_json_text(im->path), "output", cli_json_text(im->out), "part", cli_json_text(im->part), "kind",
-                     im->cloth ? "cloth" : "body", "vertices", (json_int_t)m->point_count, "triangles",
+    return json_pack("{s:o, s:o, s:o, s:s, s:I, s:I, s:I, s:I, s:I, s:I, s:I, s:b, s:I, s:I, s:I, s:I, s:o, s:o}",
+                     "file", cli_json_text(im->path), "output", cli_json_text(im->out), "part", cli_json_text(im->part),
+                     "kind", im->cloth ? "cloth" : "body", "vertices", (json_int_t)m->point_count, "triangles",
                      (json_int_t)m->face_count, "welded", (json_int_t)m->welded, "unused", (json_int_t)m->unused,
-                     "dropped_triangles", (json_int_t)m->dropped_faces, "double_triangles",
-                     (json_int_t)m->double_faces, "skipped", (json_int_t)m->skipped_lines, "closed", (int)closed,
-                     "open_edges", (json_int_t)im->faults.open_edges, "branched_edges",
-                     (json_int_t)im->faults.branched_edges, "hole_count", (json_int_t)im->faults.hole_count,
-                     "flipped_count", (json_int_t)im->faults.flipped_count, "holes", holes, "flipped", flipped);
+                     "dropped_triangles", (json_int_t)m->dropped_faces, "double_triangles", (json_int_t)m->double_faces,
+                     "skipped", (json_int_t)m->skipped_lines, "closed", (int)closed, "open_edges",
+                     (json_int_t)im->faults.open_edges, "branched_edges", (json_int_t)im->faults.branched_edges,
+                     "hole_count", (json_int_t)im->faults.hole_count, "flipped_count",
+                     (json_int_t)im->faults.flipped_count, "holes", holes, "flipped", flipped);
 }
 
 static void print_text(const importer *im, bool closed)
@@ -304,7 +317,8 @@ static bool take_options(importer *im, const cli_line *line)
         return false;
     }
     if (!take_number(line, "half-thickness", 0, 1e6, &im->half_thickness) ||
-        !take_number(line, "friction", 0, 1e6, &im->friction) || !take_number(line, "density", 1e-12, 1e12, &im->density) ||
+        !take_number(line, "friction", 0, 1e6, &im->friction) ||
+        !take_number(line, "density", 1e-12, 1e12, &im->density) ||
         !take_number(line, "scale", 1e-12, 1e12, &im->scale) || !take_number(line, "most", 0, 1e9, &most))
         return false;
     im->most = (size_t)most;

@@ -13,9 +13,13 @@ static const cli_option options[] = {
     {"json", NULL, "print one JSON object"},
 };
 
-static const cli_spec spec = {
-    .verb = "info", .operands = "SHOT", .summary = "Says what a shot holds: parts, counts, frames, verdicts, settings, sizes.",
-    .options = options, .option_count = sizeof options / sizeof options[0], .operands_min = 1, .operands_max = 1};
+static const cli_spec spec = {.verb = "info",
+                              .operands = "SHOT",
+                              .summary = "Says what a shot holds: parts, counts, frames, verdicts, settings, sizes.",
+                              .options = options,
+                              .option_count = sizeof options / sizeof options[0],
+                              .operands_min = 1,
+                              .operands_max = 1};
 
 static const char *const kinds[] = {"strands", "cloth", "body"};
 static const char *const verdicts[] = {"clear", "resolved", "pinched", "tangled"};
@@ -24,7 +28,7 @@ static const struct {
     unsigned bit;
     const char *name;
 } contents[] = {
-    {RDL_SHOT_START, "start"}, {RDL_SHOT_PROPOSED, "proposed"}, {RDL_SHOT_DELIVERED, "delivered"},
+    {RDL_SHOT_START, "start"},     {RDL_SHOT_PROPOSED, "proposed"},   {RDL_SHOT_DELIVERED, "delivered"},
     {RDL_SHOT_VERDICT, "verdict"}, {RDL_SHOT_WAYPOINTS, "waypoints"}, {RDL_SHOT_MEMORY, "memory"},
     {RDL_SHOT_PICTURE, "picture"},
 };
@@ -124,8 +128,9 @@ static void print_text(const summary *s)
     for (size_t p = 0; p < scene->part_count; p++)
         printf("part %zu \"%s\": %s, %zu vertices (%zu driven), %zu segments, %zu triangles, half-thickness %.9g m, "
                "friction %.9g\n",
-               p, cli_clean(scene->parts[p].name), kinds[scene->parts[p].kind], s->parts[p].vertices, s->parts[p].driven,
-               s->parts[p].segments, s->parts[p].triangles, scene->parts[p].half_thickness, scene->parts[p].friction);
+               p, cli_clean(scene->parts[p].name), kinds[scene->parts[p].kind], s->parts[p].vertices,
+               s->parts[p].driven, s->parts[p].segments, s->parts[p].triangles, scene->parts[p].half_thickness,
+               scene->parts[p].friction);
     if ((about->contents & RDL_SHOT_VERDICT) != 0)
         printf("verdicts: %zu clear, %zu resolved, %zu pinched, %zu tangled\n", s->verdict_frames[0],
                s->verdict_frames[1], s->verdict_frames[2], s->verdict_frames[3]);
@@ -165,12 +170,11 @@ static json_t *make_json(const summary *s)
     json_t *parts = json_array(), *held = json_array();
     for (size_t p = 0; p < s->scene->part_count; p++) {
         const rdl_part *part = &s->scene->parts[p];
-        json_array_append_new(parts, json_pack("{s:s, s:s, s:f, s:f, s:I, s:I, s:I, s:I}", "name", part->name, "kind",
-                                               kinds[part->kind], "half_thickness_m", part->half_thickness, "friction",
-                                               part->friction, "vertices", (json_int_t)s->parts[p].vertices, "driven",
-                                               (json_int_t)s->parts[p].driven, "segments",
-                                               (json_int_t)s->parts[p].segments, "triangles",
-                                               (json_int_t)s->parts[p].triangles));
+        json_array_append_new(
+            parts, json_pack("{s:s, s:s, s:f, s:f, s:I, s:I, s:I, s:I}", "name", part->name, "kind", kinds[part->kind],
+                             "half_thickness_m", part->half_thickness, "friction", part->friction, "vertices",
+                             (json_int_t)s->parts[p].vertices, "driven", (json_int_t)s->parts[p].driven, "segments",
+                             (json_int_t)s->parts[p].segments, "triangles", (json_int_t)s->parts[p].triangles));
     }
     for (size_t i = 0; i < CONTENTS; i++)
         if ((about->contents & contents[i].bit) != 0)
@@ -181,8 +185,8 @@ static json_t *make_json(const summary *s)
         about->created_by, "frames", (json_int_t)about->frame_count, "vertices", (json_int_t)s->scene->vertex_count,
         "host_bits", about->host_bits, "first_time_s", s->first_time, "last_time_s", s->last_time, "has_mass",
         about->has_mass, "holds", held, "parts", parts, "muted_parts", (json_int_t)s->scene->muted_count, "attachments",
-        (json_int_t)s->scene->attachment_count, "pair_frictions", (json_int_t)s->scene->pair_friction_count, "waypoints",
-        (json_int_t)s->waypoints, "memory_bytes", (json_int_t)s->memory_bytes);
+        (json_int_t)s->scene->attachment_count, "pair_frictions", (json_int_t)s->scene->pair_friction_count,
+        "waypoints", (json_int_t)s->waypoints, "memory_bytes", (json_int_t)s->memory_bytes);
     if ((about->contents & RDL_SHOT_VERDICT) != 0)
         for (size_t i = 0; i < 4; i++)
             json_object_set_new(object, verdicts[i], json_integer((json_int_t)s->verdict_frames[i]));

@@ -27,7 +27,7 @@ struct judge {
     uint32_t (*corners)[4];
     rdl_box *boxes;
     rdl_tree *tree;
-    uint8_t *muted;          /* part_count x part_count */
+    uint8_t *muted; /* part_count x part_count */
     uint32_t *attached_first, *attached;
     worker *workers;
     size_t worker_count;
@@ -89,9 +89,9 @@ static rdl_status make_corners(judge *j)
     if (j->corners == NULL || j->boxes == NULL)
         return RDL_NO_MEMORY;
     for (size_t i = 0; i < count; i++) {
-        const uint32_t *of = i < j->vertices               ? NULL
+        const uint32_t *of = i < j->vertices              ? NULL
                              : i < j->vertices + j->edges ? j->edge[i - j->vertices]
-                                                           : j->scene->triangles[i - j->vertices - j->edges];
+                                                          : j->scene->triangles[i - j->vertices - j->edges];
         size_t number = i < j->vertices ? 1 : i < j->vertices + j->edges ? 2 : 3;
         for (size_t k = 0; k < 4; k++)
             j->corners[i][k] = of == NULL ? (uint32_t)i : of[k < number ? k : 0];
@@ -293,8 +293,8 @@ static void settle(judge *j, worker *w, int kind)
         bool point = kind == RDL_POINT_TRIANGLE;
         const uint32_t *a = point ? &id[0] : j->edge[id[0]];
         const uint32_t *b = point ? j->scene->triangles[id[1]] : j->edge[id[1]];
-        judge_finding finding = {touches[i].time_lo, touches[i].time_hi,
-                                 point ? JUDGE_CROSSING_PT : JUDGE_CROSSING_EE, id[0], id[1], 0};
+        judge_finding finding = {
+            touches[i].time_lo, touches[i].time_hi, point ? JUDGE_CROSSING_PT : JUDGE_CROSSING_EE, id[0], id[1], 0};
         finding.driven = all_driven(j, a, point ? 1 : 2, b, point ? 3 : 2);
         if (finding.driven)
             w->counts.driven_crossings++;

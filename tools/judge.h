@@ -1,5 +1,6 @@
-/* judge.h: tangles at rest and crossings along straight paths, found with the public queries alone: candidate pairs from
- * rdl_tree, touches at gap 0 from rdl_find_touches, piercing edges from rdl_edge_against_triangle. No engine takes part. */
+/* judge.h: tangles at rest and crossings along straight paths, found with the public queries alone: candidate pairs
+ * from rdl_tree, touches at gap 0 from rdl_find_touches, piercing edges from rdl_edge_against_triangle. No engine takes
+ * part. */
 #ifndef RADDLE_TOOLS_JUDGE_H
 #define RADDLE_TOOLS_JUDGE_H
 
@@ -10,7 +11,7 @@
 typedef struct judge judge;
 
 typedef enum judge_kind {
-    JUDGE_TANGLE,   /* an edge pierces a triangle at rest: first = edge, second = triangle */
+    JUDGE_TANGLE,      /* an edge pierces a triangle at rest: first = edge, second = triangle */
     JUDGE_CROSSING_PT, /* vertex, triangle */
     JUDGE_CROSSING_EE, /* lower edge, higher edge */
     JUDGE_KINDS
@@ -29,14 +30,14 @@ typedef struct judge_counts {
     uint64_t pairs;                            /* candidate pairs looked at */
 } judge_counts;
 
-/* scene must outlive the judge. threads 0: all processors. list_driven: whether findings among driven vertices alone are
- * listed; they are counted either way. */
+/* scene must outlive the judge. threads 0: all processors. list_driven: whether findings among driven vertices alone
+ * are listed; they are counted either way. */
 rdl_status judge_create(const rdl_scene *scene, unsigned threads, bool list_driven, judge **made);
 void judge_destroy(judge *j);
 
 /* Looks at the straight motion from -> to (N x 3 each). path: crossings on the way; end: tangles at rest in `to`.
- * Counts are full; *findings holds the first `most` in order of (driven, kind, first, second), owned by the judge until its next
- * call. The result does not depend on the threads. */
+ * Counts are full; *findings holds the first `most` in order of (driven, kind, first, second), owned by the judge until
+ * its next call. The result does not depend on the threads. */
 rdl_status judge_piece(judge *j, const double *from, const double *to, bool path, bool end, size_t most,
                        judge_counts *counts, const judge_finding **findings, size_t *finding_count, rdl_fault *fault);
 

@@ -1,7 +1,7 @@
 /* main.c: the raddle program: a table of verbs, and a parent process that outlives a crash.
- * Files may come from anywhere, and the libraries that read them (HDF5, assimp) have crashed on broken ones before. So a
- * verb runs in a child process; if that dies of a signal, the parent says so in one line, removes the unfinished output
- * file, and ends with the exit code for work that could not be finished. */
+ * Files may come from anywhere, and the libraries that read them (HDF5, assimp) have crashed on broken ones before. So
+ * a verb runs in a child process; if that dies of a signal, the parent says so in one line, removes the unfinished
+ * output file, and ends with the exit code for work that could not be finished. */
 #define _DEFAULT_SOURCE /* MAP_ANONYMOUS */
 #include <signal.h>
 #include <stdlib.h>
@@ -37,7 +37,7 @@ enum { VERBS = sizeof verbs / sizeof verbs[0] };
 /* The name of the file being written, where parent and child both see it. */
 static struct pending {
     char path[4200];
-} *pending;
+} * pending;
 
 /* Set in the parent only, so that its signal handler can pass a signal on. */
 static volatile pid_t child_id;

@@ -193,7 +193,8 @@ static bool gather_holes(const mesh *m, const side *sides, size_t count, mesh_fa
         parent[v] = v;
     for (size_t pass = 0; done && pass < 2; pass++)
         for (size_t i = 0; i < count; i++) {
-            if ((i > 0 && same_edge(&sides[i - 1], &sides[i])) || (i + 1 < count && same_edge(&sides[i], &sides[i + 1])))
+            if ((i > 0 && same_edge(&sides[i - 1], &sides[i])) ||
+                (i + 1 < count && same_edge(&sides[i], &sides[i + 1])))
                 continue;
             uint32_t a = find_root(parent, sides[i].low), b = find_root(parent, sides[i].high);
             if (pass == 0)

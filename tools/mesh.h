@@ -26,8 +26,8 @@ typedef struct mesh_faults {
     size_t flipped_count;
 } mesh_faults;
 
-/* Joins points with equal bits (-0 counts as 0), drops faces that name a point twice, faces given twice, and points that
- * no face uses. Order is kept. False: no memory. */
+/* Joins points with equal bits (-0 counts as 0), drops faces that name a point twice, faces given twice, and points
+ * that no face uses. Order is kept. False: no memory. */
 bool mesh_weld(mesh *m);
 /* Finds borders, edges of more than two faces, and faces that run against their neighbours. False: no memory. */
 bool mesh_inspect(const mesh *m, mesh_faults *faults);

@@ -17,11 +17,15 @@ static const cli_option options[] = {
 };
 
 static const cli_spec spec = {
-    .verb = "resolve", .operands = "SHOT",
+    .verb = "resolve",
+    .operands = "SHOT",
     .summary = "Resolves every frame of a shot that has start and proposed positions, each from its own start, and\n"
                "writes a complete shot: delivered positions, verdicts, way-points, the engine's memory, digests.",
     .notes = "While it runs, the frames so far are in FILE.part, which every verb reads. An interrupt keeps them.",
-    .options = options, .option_count = sizeof options / sizeof options[0], .operands_min = 1, .operands_max = 1,
+    .options = options,
+    .option_count = sizeof options / sizeof options[0],
+    .operands_min = 1,
+    .operands_max = 1,
     .settings = true};
 
 typedef struct resolver {
@@ -151,8 +155,8 @@ static rdl_status do_step(resolver *r, double duration, rdl_report *report, rdl_
     rdl_step step = {.size = sizeof step, .duration = duration};
     step.start = (rdl_view){r->start, 0, RDL_FLOAT64};
     step.proposed = (rdl_view){r->proposed, 0, RDL_FLOAT64};
-    step.delivered = narrow ? (rdl_output_view){r->narrow, 0, RDL_FLOAT32}
-                            : (rdl_output_view){r->delivered, 0, RDL_FLOAT64};
+    step.delivered =
+        narrow ? (rdl_output_view){r->narrow, 0, RDL_FLOAT32} : (rdl_output_view){r->delivered, 0, RDL_FLOAT64};
     *report = (rdl_report){.size = sizeof *report};
     rdl_status status = rdl_engine_step(r->engine, &step, report, fault);
     for (size_t i = 0; narrow && status == RDL_OK && i < 3 * r->scene->vertex_count; i++)
@@ -174,10 +178,14 @@ static rdl_status do_frame(resolver *r, size_t k, const char **file, rdl_fault *
         status = rdl_shot_read_frame(r->shot, k, &frame, fault);
     if (status != RDL_OK)
         return status;
-    rdl_shot_frame out = {.time = frame.time, .picture = frame.picture, .start = r->start, .proposed = r->proposed,
+    rdl_shot_frame out = {.time = frame.time,
+                          .picture = frame.picture,
+                          .start = r->start,
+                          .proposed = r->proposed,
                           .delivered = r->delivered};
     status = find_duration(r, k, frame.time, &duration, fault);
-    if (status == RDL_OK && (k == 0 || memcmp(r->start, r->delivered, 3 * r->scene->vertex_count * sizeof(double)) != 0))
+    if (status == RDL_OK &&
+        (k == 0 || memcmp(r->start, r->delivered, 3 * r->scene->vertex_count * sizeof(double)) != 0))
         status = rdl_engine_reset(r->engine);
     if (status == RDL_OK)
         status = read_memory(r, &out.memory_bytes);

@@ -18,8 +18,8 @@ const rdli_set_plan rdli_set_plans[RDLI_SET_COUNT] = {
     [RDLI_SET_WAYPOINT_POSITION] = {"waypoint_position", "frames/waypoint_position", RDL_SHOT_WAYPOINTS,
                                     RDLI_ROWS_WAYPOINTS, RDLI_ITEM_F64, 3},
     [RDLI_SET_MEMORY] = {"memory", "frames/memory", RDL_SHOT_MEMORY, RDLI_ROWS_FRAMES, RDLI_ITEM_SPAN, 1},
-    [RDLI_SET_MEMORY_BYTES] = {"memory_bytes", "frames/memory_bytes", RDL_SHOT_MEMORY, RDLI_ROWS_BYTES,
-                               RDLI_ITEM_BYTE, 1},
+    [RDLI_SET_MEMORY_BYTES] = {"memory_bytes", "frames/memory_bytes", RDL_SHOT_MEMORY, RDLI_ROWS_BYTES, RDLI_ITEM_BYTE,
+                               1},
 };
 
 static hid_t span_type(hid_t number)

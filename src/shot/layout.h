@@ -28,7 +28,14 @@ typedef enum rdli_set {
 /* How many rows a dataset has: one per frame, one per frame and one more, one per way-point, one per byte. */
 typedef enum rdli_rows { RDLI_ROWS_FRAMES, RDLI_ROWS_FENCES, RDLI_ROWS_WAYPOINTS, RDLI_ROWS_BYTES } rdli_rows;
 
-typedef enum rdli_item { RDLI_ITEM_F64, RDLI_ITEM_U8, RDLI_ITEM_U32, RDLI_ITEM_U64, RDLI_ITEM_SPAN, RDLI_ITEM_BYTE } rdli_item;
+typedef enum rdli_item {
+    RDLI_ITEM_F64,
+    RDLI_ITEM_U8,
+    RDLI_ITEM_U32,
+    RDLI_ITEM_U64,
+    RDLI_ITEM_SPAN,
+    RDLI_ITEM_BYTE
+} rdli_item;
 
 /* Where a frame's memory lies among the memory bytes. */
 typedef struct rdli_span {
@@ -41,7 +48,7 @@ typedef struct rdli_set_plan {
     unsigned content;  /* the RDL_SHOT_... bit that asks for it; 0: always there */
     rdli_rows rows;
     rdli_item item;
-    int rank;          /* 1: (rows), 2: (rows, 32), 3: (rows, N, 3) */
+    int rank; /* 1: (rows), 2: (rows, 32), 3: (rows, N, 3) */
 } rdli_set_plan;
 
 extern const rdli_set_plan rdli_set_plans[RDLI_SET_COUNT];

@@ -14,9 +14,7 @@ rdl_status rdli_publish_claim(const char *path, bool replace)
         return errno == ENOTDIR ? RDL_NO_FILE : RDL_WRITE_FAILED;
     int file = open(path, O_RDWR | O_CREAT | O_EXCL | O_CLOEXEC, 0666);
     if (file < 0)
-        return errno == EEXIST                       ? RDL_FILE_EXISTS
-               : errno == ENOENT || errno == ENOTDIR ? RDL_NO_FILE
-                                                     : RDL_WRITE_FAILED;
+        return errno == EEXIST ? RDL_FILE_EXISTS : errno == ENOENT || errno == ENOTDIR ? RDL_NO_FILE : RDL_WRITE_FAILED;
     close(file);
     return RDL_OK;
 }

@@ -9,29 +9,29 @@
 #include "shot/layout.h"
 
 enum { /* what a shot keeps in memory */
-    RDLI_ROOM_PARTS,
-    RDLI_ROOM_NAMES,
-    RDLI_ROOM_VERTEX_PART,
-    RDLI_ROOM_MASS,
-    RDLI_ROOM_HALF_THICKNESS,
-    RDLI_ROOM_SEGMENTS,
-    RDLI_ROOM_TRIANGLES,
-    RDLI_ROOM_MUTED,
-    RDLI_ROOM_ATTACHMENTS,
-    RDLI_ROOM_PAIR_FRICTION,
-    RDLI_ROOM_SCRATCH,
-    RDLI_ROOM_WAYPOINT_TIMES,
-    RDLI_ROOM_WAYPOINT_POSITIONS,
-    RDLI_ROOM_MEMORY,
-    RDLI_ROOM_CREATED_BY,
-    RDLI_ROOM_ENGINE_VERSION,
-    RDLI_ROOM_UNKNOWN_SETTING,
-    RDLI_ROOM_COUNT
+       RDLI_ROOM_PARTS,
+       RDLI_ROOM_NAMES,
+       RDLI_ROOM_VERTEX_PART,
+       RDLI_ROOM_MASS,
+       RDLI_ROOM_HALF_THICKNESS,
+       RDLI_ROOM_SEGMENTS,
+       RDLI_ROOM_TRIANGLES,
+       RDLI_ROOM_MUTED,
+       RDLI_ROOM_ATTACHMENTS,
+       RDLI_ROOM_PAIR_FRICTION,
+       RDLI_ROOM_SCRATCH,
+       RDLI_ROOM_WAYPOINT_TIMES,
+       RDLI_ROOM_WAYPOINT_POSITIONS,
+       RDLI_ROOM_MEMORY,
+       RDLI_ROOM_CREATED_BY,
+       RDLI_ROOM_ENGINE_VERSION,
+       RDLI_ROOM_UNKNOWN_SETTING,
+       RDLI_ROOM_COUNT
 };
 
 typedef enum rdli_memory_form {
-    RDLI_MEMORY_SPANS, /* what our writer makes: rows of (first, bytes) into memory_bytes */
-    RDLI_MEMORY_FIXED, /* one opaque item of the same size per frame */
+    RDLI_MEMORY_SPANS,  /* what our writer makes: rows of (first, bytes) into memory_bytes */
+    RDLI_MEMORY_FIXED,  /* one opaque item of the same size per frame */
     RDLI_MEMORY_VARYING /* one sequence of bytes per frame */
 } rdli_memory_form;
 
@@ -53,9 +53,9 @@ typedef struct rdli_table {
     uint64_t rows;
 } rdli_table;
 
-/* Opens GROUP/NAME and checks all that can be checked without reading it: hard links only, type class (H5T_NO_CLASS: any), rank, the second
- * and third extents (tail[i] = 0: any), storage inside the file, standard filters, a size that the file's own size makes
- * plausible. A missing table is RDL_OK with a negative id. field names it in faults. */
+/* Opens GROUP/NAME and checks all that can be checked without reading it: hard links only, type class (H5T_NO_CLASS:
+ * any), rank, the second and third extents (tail[i] = 0: any), storage inside the file, standard filters, a size that
+ * the file's own size makes plausible. A missing table is RDL_OK with a negative id. field names it in faults. */
 rdl_status rdli_table_open(rdl_shot *shot, const char *group, const char *name, const char *field, H5T_class_t class,
                            int rank, const uint64_t tail[2], rdli_table *table, rdl_fault *fault);
 void rdli_table_close(rdli_table *table);
@@ -69,8 +69,10 @@ uint64_t rdli_extent(hid_t set, int axis);
  * most 4095 bytes of it. A wrong class or shape is RDL_BAD_FILE. */
 rdl_status rdli_number_read(hid_t object, const char *name, const char *field, double *value, bool *found,
                             rdl_fault *fault);
-rdl_status rdli_text_read(rdl_shot *shot, hid_t object, const char *name, int room, const char **text, rdl_fault *fault);
-/* The object of that name if it is there, by a hard link, and of that kind; else negative. *present tells the two apart. */
+rdl_status rdli_text_read(rdl_shot *shot, hid_t object, const char *name, int room, const char **text,
+                          rdl_fault *fault);
+/* The object of that name if it is there, by a hard link, and of that kind; else negative. *present tells the two
+ * apart. */
 hid_t rdli_object_open(hid_t parent, const char *name, H5I_type_t kind, bool *present);
 
 /* Whether all bytes form well-formed UTF-8 (Unicode 15, table 3-7). */

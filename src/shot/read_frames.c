@@ -19,8 +19,8 @@ static rdl_status open_set(rdl_shot *shot, size_t which, rdl_fault *fault)
     const rdli_set_plan *set = &rdli_set_plans[which];
     uint64_t tail[2] = {set->rank == 2 ? 32 : set->rank == 3 ? shot->scene.vertex_count : 0, set->rank == 3 ? 3 : 0};
     rdli_table table;
-    rdl_status status = rdli_table_open(shot, "frames", set->name, set->field, item_class(set->item), set->rank, tail,
-                                        &table, fault);
+    rdl_status status =
+        rdli_table_open(shot, "frames", set->name, set->field, item_class(set->item), set->rank, tail, &table, fault);
     if (status != RDL_OK || table.id < 0)
         return status;
     shot->sets[which] = table.id; /* from here on closed with the shot */
@@ -144,7 +144,8 @@ static rdl_status read_waypoints(rdl_shot *shot, size_t frame, rdl_shot_frame *o
     if (status == RDL_OK)
         status = read_item(shot, RDLI_SET_WAYPOINT_POSITION, fence[0], count, places->data, fault);
     if (status == RDL_OK)
-        status = check_finite(places->data, shot->scene.vertex_count * (size_t)count, "frames/waypoint_position", fault);
+        status =
+            check_finite(places->data, shot->scene.vertex_count * (size_t)count, "frames/waypoint_position", fault);
     const double *time = times->data;
     for (size_t w = 0; status == RDL_OK && w < count; w++)
         if (!(time[w] > (w > 0 ? time[w - 1] : 0) && time[w] < 1))

@@ -1,5 +1,5 @@
-/* shot/read_memory.c: the engine's memory of each frame. The writer stores spans of one dataset of bytes (see writer.c);
- * other programs may find one opaque item, or one sequence of bytes, per frame more convenient. */
+/* shot/read_memory.c: the engine's memory of each frame. The writer stores spans of one dataset of bytes (see
+ * writer.c); other programs may find one opaque item, or one sequence of bytes, per frame more convenient. */
 #include "shot/read.h"
 
 enum { MEMORY_MAX = 1 << 30 };
@@ -69,9 +69,9 @@ static rdl_status read_span(rdl_shot *shot, size_t frame, rdl_shot_frame *out, r
 {
     rdli_span span = {0, 0};
     hid_t row = rdli_item_memory_type(RDLI_ITEM_SPAN);
-    rdl_status status =
-        row >= 0 ? rdli_rows_read(shot->sets[RDLI_SET_MEMORY], row, frame, 1, &span, "frames/memory", fault)
-                 : RDL_NO_MEMORY;
+    rdl_status status = row >= 0
+                            ? rdli_rows_read(shot->sets[RDLI_SET_MEMORY], row, frame, 1, &span, "frames/memory", fault)
+                            : RDL_NO_MEMORY;
     if (row >= 0)
         H5Tclose(row);
     if (status != RDL_OK || span.bytes == 0)
@@ -96,7 +96,8 @@ static rdl_status read_fixed(rdl_shot *shot, size_t frame, rdl_shot_frame *out, 
     hid_t set = shot->sets[RDLI_SET_MEMORY], type = H5Dget_type(set);
     size_t bytes = H5Tget_size(type);
     void *data = room_for(shot, bytes);
-    rdl_status status = data != NULL ? rdli_rows_read(set, type, frame, 1, data, "frames/memory", fault) : RDL_NO_MEMORY;
+    rdl_status status =
+        data != NULL ? rdli_rows_read(set, type, frame, 1, data, "frames/memory", fault) : RDL_NO_MEMORY;
     H5Tclose(type);
     out->memory = data;
     out->memory_bytes = bytes;

@@ -36,8 +36,9 @@ static rdl_status read_whole(rdl_shot *shot, const char *group, const char *name
     if (status == RDL_OK && count > 0) {
         wide = room_for(shot, RDLI_ROOM_SCRATCH, *rows, width * sizeof *wide);
         narrow = room_for(shot, room, *rows, width * sizeof *narrow);
-        status = wide != NULL && narrow != NULL ? rdli_rows_read(table.id, H5T_NATIVE_INT64, 0, *rows, wide, field, fault)
-                                                : RDL_NO_MEMORY;
+        status = wide != NULL && narrow != NULL
+                     ? rdli_rows_read(table.id, H5T_NATIVE_INT64, 0, *rows, wide, field, fault)
+                     : RDL_NO_MEMORY;
     }
     for (uint64_t i = 0; status == RDL_OK && i < count; i++) {
         if (wide[i] < 0 || wide[i] > ROWS_MAX)
@@ -61,8 +62,8 @@ static rdl_status read_real(rdl_shot *shot, const char *group, const char *name,
         status = rdli_fault_set(fault, RDL_TOO_LARGE, field, *rows);
     if (status == RDL_OK && *present && *rows > 0) {
         double *data = room_for(shot, room, *rows, width * sizeof *data);
-        status = data != NULL ? rdli_rows_read(table.id, H5T_NATIVE_DOUBLE, 0, *rows, data, field, fault)
-                              : RDL_NO_MEMORY;
+        status =
+            data != NULL ? rdli_rows_read(table.id, H5T_NATIVE_DOUBLE, 0, *rows, data, field, fault) : RDL_NO_MEMORY;
     }
     rdli_table_close(&table);
     return status;
@@ -147,9 +148,8 @@ static rdl_status read_part_column(rdl_shot *shot, const char *name, const char 
     uint64_t rows = 0;
     bool present = false;
     bool whole = strcmp(name, "kind") == 0;
-    rdl_status status =
-        whole ? read_whole(shot, "parts", name, field, 1, RDLI_ROOM_MEMORY, &rows, &present, fault)
-              : read_real(shot, "parts", name, field, 1, RDLI_ROOM_MEMORY, &rows, &present, fault);
+    rdl_status status = whole ? read_whole(shot, "parts", name, field, 1, RDLI_ROOM_MEMORY, &rows, &present, fault)
+                              : read_real(shot, "parts", name, field, 1, RDLI_ROOM_MEMORY, &rows, &present, fault);
     if (status != RDL_OK || (!present && !needed))
         return status;
     if (!present || rows != shot->scene.part_count)
@@ -210,8 +210,7 @@ static rdl_status read_mesh(rdl_shot *shot, rdl_fault *fault)
     uint64_t rows = 0;
     bool present = false;
     rdl_scene *scene = &shot->scene;
-    rdl_status status =
-        read_whole(shot, "mesh", "part", "mesh/part", 1, RDLI_ROOM_VERTEX_PART, &rows, &present, fault);
+    rdl_status status = read_whole(shot, "mesh", "part", "mesh/part", 1, RDLI_ROOM_VERTEX_PART, &rows, &present, fault);
     if (status == RDL_OK && present && (status = agree(shot, "mesh/part", rows, fault)) == RDL_OK)
         scene->vertex_part = shot->rooms[RDLI_ROOM_VERTEX_PART].data;
     if (status == RDL_OK)
@@ -228,7 +227,8 @@ static rdl_status read_mesh(rdl_shot *shot, rdl_fault *fault)
     if (status == RDL_OK) {
         scene->segment_count = (size_t)rows;
         scene->segments = (const uint32_t(*)[2])shot->rooms[RDLI_ROOM_SEGMENTS].data;
-        status = read_whole(shot, "mesh", "triangles", "mesh/triangles", 3, RDLI_ROOM_TRIANGLES, &rows, &present, fault);
+        status =
+            read_whole(shot, "mesh", "triangles", "mesh/triangles", 3, RDLI_ROOM_TRIANGLES, &rows, &present, fault);
     }
     if (status == RDL_OK) {
         scene->triangle_count = (size_t)rows;
@@ -256,10 +256,10 @@ static rdl_status read_rules(rdl_shot *shot, rdl_fault *fault)
         return status;
     scene->attachment_count = (size_t)rows;
     scene->attachments = (const uint32_t(*)[2])shot->rooms[RDLI_ROOM_ATTACHMENTS].data;
-    status = read_real(shot, "rules", "pair_friction", "rules/pair_friction", 3, RDLI_ROOM_MEMORY, &rows, &present, fault);
+    status =
+        read_real(shot, "rules", "pair_friction", "rules/pair_friction", 3, RDLI_ROOM_MEMORY, &rows, &present, fault);
     rdl_pair_friction *pairs = NULL;
-    if (status == RDL_OK && rows > 0 &&
-        (pairs = room_for(shot, RDLI_ROOM_PAIR_FRICTION, rows, sizeof *pairs)) == NULL)
+    if (status == RDL_OK && rows > 0 && (pairs = room_for(shot, RDLI_ROOM_PAIR_FRICTION, rows, sizeof *pairs)) == NULL)
         status = RDL_NO_MEMORY;
     const double *numbers = shot->rooms[RDLI_ROOM_MEMORY].data;
     for (size_t k = 0; status == RDL_OK && k < rows; k++) {

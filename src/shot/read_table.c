@@ -2,9 +2,9 @@
 #include "shot/read.h"
 
 enum {
-    PACKED_MAX = 4096,  /* deflate packs at most 1032:1, so more bytes than this per byte of file are a lie */
+    PACKED_MAX = 4096,    /* deflate packs at most 1032:1, so more bytes than this per byte of file are a lie */
     SCALED_MAX = 1 << 20, /* the scale-offset filter stores a constant chunk in a few bytes */
-    SLACK = 1 << 20,    /* small tables may live in fill values alone */
+    SLACK = 1 << 20,      /* small tables may live in fill values alone */
     TEXT_MAX = 4096
 };
 
@@ -28,7 +28,8 @@ hid_t rdli_object_open(hid_t parent, const char *name, H5I_type_t kind, bool *pr
     return object;
 }
 
-/* Only filters that every HDF5 brings: others would make it look for plug-ins, that is, run code that the file names. */
+/* Only filters that every HDF5 brings: others would make it look for plug-ins, that is, run code that the file names.
+ */
 static bool filters_are_standard(hid_t plan, bool *scaled)
 {
     int count = H5Pget_nfilters(plan);
@@ -98,8 +99,8 @@ static bool type_is_sound(hid_t set, H5T_class_t class, size_t *item)
 }
 
 /* Shape and plausible size. */
-static rdl_status check_shape(rdl_shot *shot, hid_t set, const char *field, int rank, const uint64_t tail[2], size_t item,
-                              uint64_t *rows, rdl_fault *fault)
+static rdl_status check_shape(rdl_shot *shot, hid_t set, const char *field, int rank, const uint64_t tail[2],
+                              size_t item, uint64_t *rows, rdl_fault *fault)
 {
     hid_t space = H5Dget_space(set);
     hsize_t dims[H5S_MAX_RANK] = {0};

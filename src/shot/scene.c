@@ -39,8 +39,8 @@ static rdl_status check_parts(const rdl_scene *scene, rdl_fault *fault)
         if (!isfinite(part->half_thickness) || part->half_thickness < 0)
             return rdli_fault_set(fault, RDL_BAD_THICKNESS, "parts/half_thickness", p);
         if (!isfinite(part->friction) || part->friction < 0)
-            return rdli_fault_set(fault, isfinite(part->friction) ? RDL_OUT_OF_RANGE : RDL_NOT_FINITE,
-                                  "parts/friction", p);
+            return rdli_fault_set(fault, isfinite(part->friction) ? RDL_OUT_OF_RANGE : RDL_NOT_FINITE, "parts/friction",
+                                  p);
     }
     return RDL_OK;
 }

@@ -3,7 +3,8 @@
  * Why our own: the digest is all that we need of a cryptographic library, and hosts link many of those already. */
 #include "shot/sha256.h"
 
-static const uint32_t round_constants[64] = { /* [FIPS 180-4, 4.2.2] */
+static const uint32_t round_constants[64] = {
+    /* [FIPS 180-4, 4.2.2] */
     0x428a2f98, 0x71374491, 0xb5c0fbcf, 0xe9b5dba5, 0x3956c25b, 0x59f111f1, 0x923f82a4, 0xab1c5ed5,
     0xd807aa98, 0x12835b01, 0x243185be, 0x550c7dc3, 0x72be5d74, 0x80deb1fe, 0x9bdc06a7, 0xc19bf174,
     0xe49b69c1, 0xefbe4786, 0x0fc19dc6, 0x240ca1cc, 0x2de92c6f, 0x4a7484aa, 0x5cb0a9dc, 0x76f988da,
@@ -20,13 +21,13 @@ static uint32_t turn(uint32_t x, unsigned n)
 }
 
 /* One round of [FIPS 180-4, 6.2.2 step 3], with the eight working variables renamed instead of moved. */
-#define ROUND(a, b, c, d, e, f, g, h, t)                                                               \
-    do {                                                                                               \
-        uint32_t t1 = (h) + (turn(e, 6) ^ turn(e, 11) ^ turn(e, 25)) + (((e) & (f)) ^ (~(e) & (g))) + \
-                      round_constants[t] + w[t];                                                       \
-        uint32_t t2 = (turn(a, 2) ^ turn(a, 13) ^ turn(a, 22)) + (((a) & (b)) ^ ((a) & (c)) ^ ((b) & (c))); \
-        (d) += t1;                                                                                     \
-        (h) = t1 + t2;                                                                                 \
+#define ROUND(a, b, c, d, e, f, g, h, t)                                                                               \
+    do {                                                                                                               \
+        uint32_t t1 =                                                                                                  \
+            (h) + (turn(e, 6) ^ turn(e, 11) ^ turn(e, 25)) + (((e) & (f)) ^ (~(e) & (g))) + round_constants[t] + w[t]; \
+        uint32_t t2 = (turn(a, 2) ^ turn(a, 13) ^ turn(a, 22)) + (((a) & (b)) ^ ((a) & (c)) ^ ((b) & (c)));            \
+        (d) += t1;                                                                                                     \
+        (h) = t1 + t2;                                                                                                 \
     } while (0)
 
 static void take_block(uint32_t state[8], const uint8_t *block)
@@ -59,7 +60,8 @@ static void take_block(uint32_t state[8], const uint8_t *block)
 
 void rdli_sha256_begin(rdli_sha256 *hash)
 {
-    static const uint32_t first[8] = { /* [FIPS 180-4, 5.3.3] */
+    static const uint32_t first[8] = {
+        /* [FIPS 180-4, 5.3.3] */
         0x6a09e667, 0xbb67ae85, 0x3c6ef372, 0xa54ff53a, 0x510e527f, 0x9b05688c, 0x1f83d9ab, 0x5be0cd19,
     };
     memcpy(hash->state, first, sizeof first);

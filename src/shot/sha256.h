@@ -6,8 +6,8 @@
 
 typedef struct rdli_sha256 {
     uint32_t state[8];
-    uint64_t bytes;     /* taken so far */
-    uint8_t block[64];  /* the last bytes % 64 of them */
+    uint64_t bytes;    /* taken so far */
+    uint8_t block[64]; /* the last bytes % 64 of them */
 } rdli_sha256;
 
 void rdli_sha256_begin(rdli_sha256 *hash);

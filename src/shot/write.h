@@ -12,14 +12,14 @@ struct rdl_shot_writer {
     hid_t file, driver;
     hid_t sets[RDLI_SET_COUNT]; /* open datasets of /frames, or negative */
     uint64_t rows[RDLI_SET_COUNT];
-    char *path, *part;          /* NAME and NAME.part */
+    char *path, *part; /* NAME and NAME.part */
     size_t path_bytes, part_bytes;
     size_t vertex_count;
     unsigned contents;
     int host_bits, deflate;
     bool overwrite;
-    bool broken;                /* a write failed, as noted here by the driver too: the file on disk ends with the
-                                   frame before it, and nothing reaches it any more */
+    bool broken; /* a write failed, as noted here by the driver too: the file on disk ends with the
+                    frame before it, and nothing reaches it any more */
 };
 
 /* Everything but the frames' rows: root attributes, parts, mesh, rules, settings. False: HDF5 refused. */

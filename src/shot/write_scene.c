@@ -1,5 +1,5 @@
-/* shot/write_scene.c: what a shot says once: root attributes, /parts, /mesh, /rules, /settings, and the empty datasets of
- * /frames. */
+/* shot/write_scene.c: what a shot says once: root attributes, /parts, /mesh, /rules, /settings, and the empty datasets
+ * of /frames. */
 #include "raddle/version.h"
 #include "shot/write.h"
 
@@ -53,8 +53,8 @@ static hid_t new_plan(void)
 }
 
 /* One table of the scene. Tables without rows have nothing to chunk, so they are stored contiguous. */
-static bool write_table(const rdl_shot_writer *writer, hid_t group, const char *name, hid_t file_type, hid_t memory_type,
-                        int rank, const hsize_t dims[2], const void *data)
+static bool write_table(const rdl_shot_writer *writer, hid_t group, const char *name, hid_t file_type,
+                        hid_t memory_type, int rank, const hsize_t dims[2], const void *data)
 {
     hid_t plan = new_plan();
     hid_t space = H5Screate_simple(rank, dims, NULL);
@@ -155,13 +155,13 @@ static bool write_rules(rdl_shot_writer *writer, const rdl_scene *scene)
         rows[3 * k + 1] = scene->pair_friction[k].part[1];
         rows[3 * k + 2] = scene->pair_friction[k].friction;
     }
-    done = done &&
-           write_table(writer, group, "muted_parts", H5T_STD_U32LE, H5T_NATIVE_UINT32, 2,
-                       (hsize_t[2]){scene->muted_count, 2}, scene->muted_parts) &&
-           write_table(writer, group, "attachments", H5T_STD_U32LE, H5T_NATIVE_UINT32, 2,
-                       (hsize_t[2]){scene->attachment_count, 2}, scene->attachments) &&
-           write_table(writer, group, "pair_friction", H5T_IEEE_F64LE, H5T_NATIVE_DOUBLE, 2, (hsize_t[2]){count, 3},
-                       rows);
+    done =
+        done &&
+        write_table(writer, group, "muted_parts", H5T_STD_U32LE, H5T_NATIVE_UINT32, 2,
+                    (hsize_t[2]){scene->muted_count, 2}, scene->muted_parts) &&
+        write_table(writer, group, "attachments", H5T_STD_U32LE, H5T_NATIVE_UINT32, 2,
+                    (hsize_t[2]){scene->attachment_count, 2}, scene->attachments) &&
+        write_table(writer, group, "pair_friction", H5T_IEEE_F64LE, H5T_NATIVE_DOUBLE, 2, (hsize_t[2]){count, 3}, rows);
     rdli_give(&writer->memory, rows, 3 * count, sizeof *rows);
     return (group < 0 || H5Gclose(group) >= 0) && done;
 }

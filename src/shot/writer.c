@@ -1,8 +1,8 @@
 /* shot/writer.c: recording, frame by frame.
  * The file is written in HDF5's single-writer mode (superblock version 3): metadata reach the disk in an order in which
  * the file is readable at every moment, so that a host that is killed loses at most the frame it was writing. That mode
- * takes no new objects after it starts, and no variable-length data: hence all datasets are made first, and memory blocks
- * are spans of one dataset of bytes. */
+ * takes no new objects after it starts, and no variable-length data: hence all datasets are made first, and memory
+ * blocks are spans of one dataset of bytes. */
 #include <unistd.h>
 
 #include "shot/disk.h"
@@ -15,8 +15,8 @@ enum { MEMORY_ALIGNMENT = 4096 }; /* a chunk of memory_bytes: no chunk is ever w
 
 void rdl_shot_options_default(rdl_shot_options *options)
 {
-    *options = (rdl_shot_options){
-        .size = sizeof *options, .contents = RDL_SHOT_STEP, .host_bits = RDL_FLOAT64, .deflate = 1};
+    *options =
+        (rdl_shot_options){.size = sizeof *options, .contents = RDL_SHOT_STEP, .host_bits = RDL_FLOAT64, .deflate = 1};
 }
 
 static rdl_status check_options(const rdl_shot_options *options, rdl_fault *fault)
@@ -269,7 +269,8 @@ static bool write_frame(rdl_shot_writer *writer, const rdl_shot_frame *frame)
     uint64_t fence = writer->rows[RDLI_SET_WAYPOINT_TIME] + frame->waypoint_count;
     return add_rows(writer, RDLI_SET_MEMORY_BYTES, gap + span.bytes, span.bytes, frame->memory) &&
            add_rows(writer, RDLI_SET_MEMORY, 1, 1, &span) &&
-           add_rows(writer, RDLI_SET_WAYPOINT_TIME, frame->waypoint_count, frame->waypoint_count, frame->waypoint_times) &&
+           add_rows(writer, RDLI_SET_WAYPOINT_TIME, frame->waypoint_count, frame->waypoint_count,
+                    frame->waypoint_times) &&
            add_rows(writer, RDLI_SET_WAYPOINT_POSITION, frame->waypoint_count, frame->waypoint_count,
                     frame->waypoint_positions) &&
            add_rows(writer, RDLI_SET_WAYPOINT_FIRST, 1, 1, &fence) &&
@@ -277,7 +278,8 @@ static bool write_frame(rdl_shot_writer *writer, const rdl_shot_frame *frame)
            add_rows(writer, RDLI_SET_START, 1, 1, frame->start) &&
            add_rows(writer, RDLI_SET_PROPOSED, 1, 1, frame->proposed) &&
            add_rows(writer, RDLI_SET_DELIVERED, 1, 1, frame->delivered) &&
-           add_rows(writer, RDLI_SET_DIGEST, 1, 1, digest) && add_rows(writer, RDLI_SET_VERDICT, 1, 1, &frame->verdict) &&
+           add_rows(writer, RDLI_SET_DIGEST, 1, 1, digest) &&
+           add_rows(writer, RDLI_SET_VERDICT, 1, 1, &frame->verdict) &&
            add_rows(writer, RDLI_SET_TIME, 1, 1, &frame->time) && H5Fflush(writer->file, H5F_SCOPE_LOCAL) >= 0;
 }
 

@@ -1,6 +1,6 @@
 /* make_shot KIND FILE: writes one of the small shots that the command-line tests run on.
- * All have one strand segment (part "thread", vertices 0 and 1), a cloth triangle ("sheet", 2 to 4), and two driven body
- * triangles ("lower", 5 to 7, and "upper", 8 to 10). Lengths in centimetres below, stored in metres. */
+ * All have one strand segment (part "thread", vertices 0 and 1), a cloth triangle ("sheet", 2 to 4), and two driven
+ * body triangles ("lower", 5 to 7, and "upper", 8 to 10). Lengths in centimetres below, stored in metres. */
 #include <hdf5.h>
 #include <math.h>
 #include <stdio.h>
@@ -28,7 +28,7 @@ typedef struct plan {
 /* Everything well apart: the thread upright above a corner of the sheet, the bodies below and above all. */
 static void rest_state(state s)
 {
-    static const state rest = {{10, 10, 12}, {10, 10, 16}, {0, 0, 10}, {40, 0, 10}, {0, 40, 10}, {-50, -50, 0},
+    static const state rest = {{10, 10, 12}, {10, 10, 16}, {0, 0, 10},     {40, 0, 10},   {0, 40, 10},  {-50, -50, 0},
                                {90, -50, 0}, {-50, 90, 0}, {-50, -50, 30}, {90, -50, 30}, {-50, 90, 30}};
     memcpy(s, rest, sizeof rest);
 }
@@ -120,8 +120,7 @@ static int build(const char *kind, plan *p)
     else if (strcmp(kind, "long") == 0) {
         to_resolve(p);
         p->frames = 2000;
-    }
-    else if (strcmp(kind, "poses") == 0) {
+    } else if (strcmp(kind, "poses") == 0) {
         cross(p);
         p->contents = RDL_SHOT_DELIVERED;
     } else if (strcmp(kind, "muted") == 0) {
@@ -157,17 +156,29 @@ static void to_metres(double *numbers, size_t count)
 
 static rdl_status write_plan(const char *path, plan *p, rdl_fault *fault)
 {
-    const rdl_part parts[4] = {{p->thread_name, RDL_STRANDS, 0.001, 0.3}, {"sheet", RDL_CLOTH, p->sheet_half, 0.3},
-                               {"lower", RDL_BODY, 0, 0.3}, {"upper", RDL_BODY, 0, 0.3}};
+    const rdl_part parts[4] = {{p->thread_name, RDL_STRANDS, 0.001, 0.3},
+                               {"sheet", RDL_CLOTH, p->sheet_half, 0.3},
+                               {"lower", RDL_BODY, 0, 0.3},
+                               {"upper", RDL_BODY, 0, 0.3}};
     static const uint32_t part[VERTICES] = {0, 0, 1, 1, 1, 2, 2, 2, 3, 3, 3};
     static const uint32_t segments[1][2] = {{0, 1}}, triangles[3][3] = {{2, 3, 4}, {5, 6, 7}, {8, 9, 10}};
     double mass[VERTICES];
     for (size_t v = 0; v < VERTICES; v++)
         mass[v] = v < 5 ? 1e-3 : (double)INFINITY;
-    const rdl_scene scene = {.size = sizeof scene, .part_count = 4, .parts = parts, .vertex_count = VERTICES,
-        .vertex_part = part, .mass = mass, .segment_count = 1, .segments = segments, .triangle_count = 3,
-        .triangles = triangles, .muted_count = p->muted_count, .muted_parts = (const uint32_t(*)[2])p->muted,
-        .attachment_count = p->attachment_count, .attachments = (const uint32_t(*)[2])p->attachments};
+    const rdl_scene scene = {.size = sizeof scene,
+                             .part_count = 4,
+                             .parts = parts,
+                             .vertex_count = VERTICES,
+                             .vertex_part = part,
+                             .mass = mass,
+                             .segment_count = 1,
+                             .segments = segments,
+                             .triangle_count = 3,
+                             .triangles = triangles,
+                             .muted_count = p->muted_count,
+                             .muted_parts = (const uint32_t(*)[2])p->muted,
+                             .attachment_count = p->attachment_count,
+                             .attachments = (const uint32_t(*)[2])p->attachments};
     rdl_shot_options options;
     rdl_shot_writer *writer = NULL;
     rdl_shot_options_default(&options);
@@ -179,8 +190,12 @@ static rdl_status write_plan(const char *path, plan *p, rdl_fault *fault)
     for (size_t k = 0; status == RDL_OK && k < p->frames; k++) {
         const double middle = 0.5;
         size_t at = k % FRAMES;
-        rdl_shot_frame frame = {.time = 0.25 * (double)k, .picture = (uint32_t)k, .verdict = RDL_CLEAR,
-            .start = p->start[at][0], .proposed = p->proposed[at][0], .delivered = p->delivered[at][0]};
+        rdl_shot_frame frame = {.time = 0.25 * (double)k,
+                                .picture = (uint32_t)k,
+                                .verdict = RDL_CLEAR,
+                                .start = p->start[at][0],
+                                .proposed = p->proposed[at][0],
+                                .delivered = p->delivered[at][0]};
         if (p->waypoints > 0 && k == 1) {
             frame.verdict = RDL_RESOLVED;
             frame.waypoint_count = 1;

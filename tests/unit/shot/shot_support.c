@@ -21,11 +21,23 @@ const rdl_scene *small_scene(void)
     static const uint32_t muted[2][2] = {{2, 2}, {0, 2}};
     static const uint32_t attachments[1][2] = {{0, 3}};
     static const rdl_pair_friction friction[1] = {{{0, 1}, 0.125}};
-    static const rdl_scene scene = {
-        .size = sizeof(rdl_scene), .part_count = 3, .parts = parts, .vertex_count = VERTICES, .vertex_part = part,
-        .mass = mass, .half_thickness = half, .segment_count = 2, .segments = segments, .triangle_count = 2,
-        .triangles = triangles, .muted_count = 2, .muted_parts = muted, .attachment_count = 1,
-        .attachments = attachments, .pair_friction_count = 1, .pair_friction = friction};
+    static const rdl_scene scene = {.size = sizeof(rdl_scene),
+                                    .part_count = 3,
+                                    .parts = parts,
+                                    .vertex_count = VERTICES,
+                                    .vertex_part = part,
+                                    .mass = mass,
+                                    .half_thickness = half,
+                                    .segment_count = 2,
+                                    .segments = segments,
+                                    .triangle_count = 2,
+                                    .triangles = triangles,
+                                    .muted_count = 2,
+                                    .muted_parts = muted,
+                                    .attachment_count = 1,
+                                    .attachments = attachments,
+                                    .pair_friction_count = 1,
+                                    .pair_friction = friction};
     return &scene;
 }
 
@@ -49,10 +61,17 @@ void make_frame(made_frame *made, unsigned k)
     size_t bytes = (size_t)k * 2500 % MEMORY_MAX;
     for (size_t i = 0; i < bytes; i++)
         made->memory[i] = (unsigned char)(i * 31 + k);
-    made->frame = (rdl_shot_frame){.time = k / 96.0, .picture = 100 + k / 4, .verdict = (uint8_t)(k % 4),
-        .start = made->start[0], .proposed = made->proposed[0], .delivered = made->delivered[0],
-        .waypoint_count = k % 4, .waypoint_times = made->waypoint_times, .waypoint_positions = made->waypoints[0][0],
-        .memory = made->memory, .memory_bytes = bytes};
+    made->frame = (rdl_shot_frame){.time = k / 96.0,
+                                   .picture = 100 + k / 4,
+                                   .verdict = (uint8_t)(k % 4),
+                                   .start = made->start[0],
+                                   .proposed = made->proposed[0],
+                                   .delivered = made->delivered[0],
+                                   .waypoint_count = k % 4,
+                                   .waypoint_times = made->waypoint_times,
+                                   .waypoint_positions = made->waypoints[0][0],
+                                   .memory = made->memory,
+                                   .memory_bytes = bytes};
 }
 
 static void expect_state(rdl_shot *shot, size_t index, unsigned which, const double *wanted)
@@ -107,7 +126,9 @@ const char *scratch(const char *name)
     static unsigned next;
     if (folder[0] == '\0') {
         /* Thousands of small files, each brought to the disk: memory is the place for them, where there is one. */
-        const char *base = getenv("TMPDIR") != NULL ? getenv("TMPDIR") : access("/dev/shm", W_OK) == 0 ? "/dev/shm" : "/tmp";
+        const char *base = getenv("TMPDIR") != NULL        ? getenv("TMPDIR")
+                           : access("/dev/shm", W_OK) == 0 ? "/dev/shm"
+                                                           : "/tmp";
         snprintf(folder, sizeof folder, "%s/raddle-shot-XXXXXX", base);
         ck_assert_ptr_nonnull(mkdtemp(folder));
         atexit(empty_folder);

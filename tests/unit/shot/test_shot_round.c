@@ -390,7 +390,8 @@ START_TEST(a_killed_recording_is_readable)
 }
 END_TEST
 
-/* Killed at any moment, in the middle of a frame too: every frame that was flushed is there. Moments by a fixed rule. */
+/* Killed at any moment, in the middle of a frame too: every frame that was flushed is there. Moments by a fixed rule.
+ */
 START_TEST(killed_at_any_moment)
 {
     const char *path = scratch("moment.h5"), *part = scratch("moment.h5.part");
