@@ -126,8 +126,8 @@ static rdl_status play_step(player *p, double time, uint32_t picture)
         demo_stills_watch(p->stills, (const double (*)[3])p->delivered);
     begin = cli_clock();
     host_accept(h, h_step, (const double (*)[3])p->delivered, report.impulses, report.moved);
-    if (p->options->respond)
-        host_learn(h, &report, APPROACH);
+    if (p->options->respond && status == RDL_OK && !host_learn(h, &report, APPROACH))
+        status = RDL_NO_MEMORY;
     p->result->host_seconds += cli_clock() - begin;
     p->result->steps++;
     return status;

@@ -92,6 +92,7 @@ static const moment *moment_of(const demo_stills *s, size_t picture)
 typedef struct saved {
     double (*position)[3], (*velocity)[3];
     host_support *support;
+    size_t coupling_count;
 } saved;
 
 /* Runs the host without raddle from its present state, then puts everything back. */
@@ -99,13 +100,14 @@ static int run_alone(demo_stills *s, size_t picture, size_t pictures)
 {
     host *h = s->scene->h;
     size_t n = h->vertex_count, each = s->scene->steps_per_picture;
-    saved old = {malloc(n * sizeof *old.position), malloc(n * sizeof *old.velocity), malloc(n * sizeof *old.support)};
+    saved old = {malloc(n * sizeof *old.position), malloc(n * sizeof *old.velocity), malloc(n * sizeof *old.support),
+                 h->coupling_count};
     int done = old.position && old.velocity && old.support;
     if (done) {
         memcpy(old.position, h->position, n * sizeof *old.position);
         memcpy(old.velocity, h->velocity, n * sizeof *old.velocity);
         memcpy(old.support, h->support, n * sizeof *old.support);
-        host_clear_supports(h);
+        host_clear_contacts(h);
         for (size_t k = 1; k <= pictures * each; k++) {
             demo_scene_direct(s->scene, s->scene->step * (double)(picture * each + k));
             host_propose(h, s->scene->step);
@@ -115,6 +117,7 @@ static int run_alone(demo_stills *s, size_t picture, size_t pictures)
         memcpy(h->position, old.position, n * sizeof *old.position);
         memcpy(h->velocity, old.velocity, n * sizeof *old.velocity);
         memcpy(h->support, old.support, n * sizeof *old.support);
+        h->coupling_count = old.coupling_count; /* the host alone has added none */
     }
     free(old.position);
     free(old.velocity);

@@ -78,14 +78,17 @@ static void add_support(host *h, const rdl_contact *contact, const double veloci
     }
 }
 
-void host_learn(host *h, const rdl_report *report, double approach)
+/* Neither side is driven, not even in part. */
+static int is_soft(const host *h, const rdl_contact *contact)
 {
-    host_clear_supports(h);
-    for (size_t c = 0; c < report->contact_count; c++) {
-        double velocity[3];
-        if (report->contacts[c].impulse > 0 && driven_side(h, &report->contacts[c], velocity))
-            add_support(h, &report->contacts[c], velocity);
-    }
+    for (int i = 0; i < 4; i++)
+        if (h->driven[contact->vertices[i]])
+            return 0;
+    return 1;
+}
+
+static void normalize_supports(host *h, double approach)
+{
     for (size_t i = 0; i < h->soft_count; i++) {
         host_support *support = &h->support[i];
         const double *n = support->normal;
@@ -100,4 +103,27 @@ void host_learn(host *h, const rdl_report *report, double approach)
             support->normal[k] /= length;
         support->speed = support->speed / length - approach;
     }
+}
+
+int host_learn(host *h, const rdl_report *report, double approach)
+{
+    host_clear_contacts(h);
+    for (size_t c = 0; c < report->contact_count; c++) {
+        const rdl_contact *contact = &report->contacts[c];
+        double velocity[3];
+        if (!(contact->impulse > 0))
+            continue;
+        if (is_soft(h, contact)) {
+            host_coupling coupling = {.strength = 0};
+            memcpy(coupling.vertex, contact->vertices, sizeof coupling.vertex);
+            memcpy(coupling.weight, contact->weights, sizeof coupling.weight);
+            memcpy(coupling.normal, contact->normal, sizeof coupling.normal);
+            if (!host_add_coupling(h, &coupling))
+                return 0;
+        } else if (driven_side(h, contact, velocity)) {
+            add_support(h, contact, velocity);
+        }
+    }
+    normalize_supports(h, approach);
+    return 1;
 }

@@ -15,8 +15,9 @@ void host_describe(const host *h, rdl_part parts[], rdl_scene *scene);
 rdl_status host_resolve(const host *h, rdl_engine *engine, double h_step, double (*delivered)[3], rdl_report *report,
                         rdl_fault *fault);
 
-/* After host_accept: enters the supports that the report's contacts with driven vertices teach for the next step.
- * approach: speed towards the body that supports keep, m/s > 0, so that a contact that lasts is found again. */
-void host_learn(host *h, const rdl_report *report, double approach);
+/* After host_accept: enters what the report's contacts teach for the next step: supports where a side is driven, couplings
+ * where both are soft. approach: speed towards the body that supports keep, m/s > 0, so that a contact that lasts is
+ * found again. Returns 0 when memory ran out. */
+int host_learn(host *h, const rdl_report *report, double approach);
 
 #endif

@@ -109,6 +109,9 @@ typedef struct host {
     size_t solver_limit;     /* iterations */
     size_t solver_used;      /* iterations of the last step */
 
+    host_coupling *couplings;  /* soft contacts of the last step */
+    size_t coupling_count, coupling_room;
+
     host_matrix matrix;      /* M + S, assembled anew in each step */
     host_scalars bending;    /* constant stiffness of all bending */
     double (*force)[3];
@@ -147,8 +150,10 @@ void host_propose(host *h, double h_step);
  * impulses and moved may be NULL: a host without raddle passes delivered = proposed and nothing else. */
 void host_accept(host *h, double h_step, const double (*delivered)[3], const double *impulses, const uint8_t *moved);
 
-/* Forgets all supports: before those of a new step are entered, and after a cut. */
-void host_clear_supports(host *h);
+/* Forgets all supports and couplings: before those of a new step are entered, and after a cut. */
+void host_clear_contacts(host *h);
+/* Two soft sides that pushed each other in the last step (strength is set by the host). 0: no memory. */
+int host_add_coupling(host *h, const host_coupling *coupling);
 
 /* Kinetic energy of soft vertices that are not driven, and energy stored in springs, membranes and bending, J. */
 double host_kinetic_energy(const host *h);

@@ -4,7 +4,10 @@
 #include "host.h"
 
 #include <math.h>
+#include <stdlib.h>
 #include <string.h>
+
+#define COUPLING 4.0 /* times the effective mass: contacts may give way a little, and the solver stays fast */
 
 static double dot(const double a[3], const double b[3])
 {
@@ -215,6 +218,24 @@ static void guess(host *h, double h_step)
             h->proposed_velocity[i][k] = (h->target[i][k] - h->position[i][k]) / h_step;
 }
 
+/* A coupling is as strong as the vertices it joins are hard to move in an implicit step: the effective mass of the contact,
+ * 1 / sum(w^2 / m), with each mass replaced by the diagonal of M + S along the normal. */
+static void set_strengths(host *h, double scale)
+{
+    for (size_t c = 0; c < h->coupling_count; c++) {
+        host_coupling *k = &h->couplings[c];
+        double sum = 0;
+        for (int i = 0; i < 4; i++) {
+            const double *d = h->matrix.diagonal[k->vertex[i]], *n = k->normal;
+            double own = scale * h->bending.diagonal[k->vertex[i]];
+            for (int r = 0; r < 3; r++)
+                own += n[r] * (d[3 * r] * n[0] + d[3 * r + 1] * n[1] + d[3 * r + 2] * n[2]);
+            sum += k->weight[i] * k->weight[i] / own;
+        }
+        k->strength = COUPLING / sum;
+    }
+}
+
 void host_propose(host *h, double h_step)
 {
     host_assemble(h, h_step);
@@ -222,9 +243,11 @@ void host_propose(host *h, double h_step)
         for (int k = 0; k < 3; k++)
             h->force[i][k] = h->own_mass[i] * h->velocity[i][k] + h_step * h->force[i][k];
     guess(h, h_step);
-    h->solver_used = host_solve(&h->solver, &h->matrix, &h->bending, h_step * h_step + h_step * h->damping,
-                                (const double (*)[3])h->force, h->solver_tolerance, h->solver_limit,
-                                h->proposed_velocity);
+    host_system system = {&h->matrix, &h->bending, h_step * h_step + h_step * h->damping, h->couplings,
+                          h->coupling_count};
+    set_strengths(h, system.scale);
+    h->solver_used = host_solve(&h->solver, &system, (const double (*)[3])h->force, h->solver_tolerance,
+                                h->solver_limit, h->proposed_velocity);
     for (size_t i = 0; i < h->soft_count; i++) /* what is left along the normal is what the body must bear */
         h->support[i].pulls = h->support[i].active && dot(h->solver.residual[i], h->support[i].normal) > 0;
     for (size_t i = 0; i < h->vertex_count; i++)
@@ -233,8 +256,23 @@ void host_propose(host *h, double h_step)
                 h->driven[i] ? h->target[i][k] : h->position[i][k] + h_step * h->proposed_velocity[i][k];
 }
 
-void host_clear_supports(host *h)
+int host_add_coupling(host *h, const host_coupling *coupling)
 {
+    if (h->coupling_count == h->coupling_room) {
+        size_t room = 2 * h->coupling_room + 256;
+        host_coupling *moved = realloc(h->couplings, room * sizeof *moved);
+        if (!moved)
+            return 0;
+        h->couplings = moved;
+        h->coupling_room = room;
+    }
+    h->couplings[h->coupling_count++] = *coupling;
+    return 1;
+}
+
+void host_clear_contacts(host *h)
+{
+    h->coupling_count = 0;
     for (size_t i = 0; i < h->vertex_count; i++)
         h->support[i].active = 0;
 }

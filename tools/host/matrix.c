@@ -95,12 +95,28 @@ static void add_transposed(const double m[9], const double x[3], double y[3])
     y[2] += m[2] * x[0] + m[5] * x[1] + m[8] * x[2];
 }
 
-void host_multiply(const host_matrix *a, const host_scalars *b, double scale, const double (*x)[3], double (*y)[3])
+static void multiply_couplings(const host_system *system, const double (*x)[3], double (*y)[3])
 {
-    host_multiply_scalars(b, x, y);
+    for (size_t c = 0; c < system->coupling_count; c++) {
+        const host_coupling *k = &system->couplings[c];
+        double along = 0;
+        for (int i = 0; i < 4; i++) {
+            const double *v = x[k->vertex[i]];
+            along += k->weight[i] * (v[0] * k->normal[0] + v[1] * k->normal[1] + v[2] * k->normal[2]);
+        }
+        for (int i = 0; i < 4; i++)
+            for (int n = 0; n < 3; n++)
+                y[k->vertex[i]][n] += k->strength * along * k->weight[i] * k->normal[n];
+    }
+}
+
+void host_multiply(const host_system *system, const double (*x)[3], double (*y)[3])
+{
+    const host_matrix *a = system->a;
+    host_multiply_scalars(system->b, x, y);
     for (size_t i = 0; i < a->pattern.rows; i++)
         for (int k = 0; k < 3; k++)
-            y[i][k] *= scale;
+            y[i][k] *= system->scale;
     for (size_t i = 0; i < a->pattern.rows; i++) {
         double own[3] = {x[i][0], x[i][1], x[i][2]}, sum[3] = {0, 0, 0};
         add_block(a->diagonal[i], own, sum);
@@ -112,6 +128,7 @@ void host_multiply(const host_matrix *a, const host_scalars *b, double scale, co
         for (int k = 0; k < 3; k++)
             y[i][k] += sum[k];
     }
+    multiply_couplings(system, x, y);
 }
 
 static void subtract_transposed(const double m[9], const double x[3], double y[3])
@@ -170,44 +187,60 @@ static void keep_free_block(const host_filter *row, const host_filter *column, d
         keep_free(column, &m[3 * r]);
 }
 
-/* Diagonal block of F (A + scale B) F, with the old value along filtered directions so that it has an inverse. */
-static void filtered_diagonal(const host_solver *solver, const host_matrix *a, const host_scalars *b, double scale,
-                              size_t i, double out[9])
+/* Diagonal blocks of the system into solver->pivot. */
+static void collect_diagonal(host_solver *solver, const host_system *system)
 {
-    const host_filter *filter = &solver->filter[i];
-    double along = a->diagonal[i][0] + scale * b->diagonal[i];
-    memcpy(out, a->diagonal[i], 9 * sizeof *out);
-    for (int k = 0; k < 9; k += 4)
-        out[k] += scale * b->diagonal[i];
-    keep_free_block(filter, filter, out);
+    for (size_t i = 0; i < system->a->pattern.rows; i++) {
+        memcpy(solver->pivot[i], system->a->diagonal[i], sizeof solver->pivot[i]);
+        for (int k = 0; k < 9; k += 4)
+            solver->pivot[i][k] += system->scale * system->b->diagonal[i];
+    }
+    for (size_t c = 0; c < system->coupling_count; c++) {
+        const host_coupling *k = &system->couplings[c];
+        for (int i = 0; i < 4; i++)
+            for (int r = 0; r < 3; r++)
+                for (int q = 0; q < 3; q++)
+                    solver->pivot[k->vertex[i]][3 * r + q] +=
+                        k->strength * k->weight[i] * k->weight[i] * k->normal[r] * k->normal[q];
+    }
+}
+
+/* m := F m F for a diagonal block, with a positive value along filtered directions so that it has an inverse. */
+static void filter_diagonal(const host_filter *filter, double m[9])
+{
+    double along = m[0];
+    keep_free_block(filter, filter, m);
     for (int r = 0; r < 3; r++)
         for (int c = 0; c < 3; c++)
             if (filter->count == 1)
-                out[3 * r + c] += along * filter->along[r] * filter->along[c];
+                m[3 * r + c] += along * filter->along[r] * filter->along[c];
             else if (filter->count == 3)
-                out[3 * r + c] = r == c ? along : 0;
+                m[3 * r + c] = r == c ? along : 0;
 }
 
-/* Factors of the preconditioner P = (E + L) E^-1 (E + L^T) of F A F, L its strict lower half and E block-diagonal with
- * E_j = D_j - sum_i L_ji E_i^-1 L_ji^T: P equals the filtered A on the diagonal, and on a chain without bending everywhere
- * (Pommerell 1992 calls it D-ILU). Where a block would cease to be positive definite, D_j itself serves: P stays
- * positive definite with any such E. */
-static void factor(host_solver *solver, const host_matrix *a, const host_scalars *b, double scale)
+/* Factors of the preconditioner P = (E + L) E^-1 (E + L^T) of F A F, L its strict lower half (without bending and
+ * couplings) and E block-diagonal with E_j = D_j - sum_i L_ji E_i^-1 L_ji^T: P equals the filtered system on the diagonal,
+ * and on a plain chain everywhere (Pommerell 1992 calls it D-ILU). Where a block would cease to be positive definite, D_j
+ * itself serves: P stays positive definite with any such E. */
+static void factor(host_solver *solver, const host_system *system)
 {
-    for (size_t i = 0; i < a->pattern.rows; i++) {
-        filtered_diagonal(solver, a, b, scale, i, solver->pivot[i]);
-        for (size_t e = a->pattern.first[i]; e < a->pattern.first[i + 1]; e++) {
-            memcpy(solver->upper[e], a->block[e], sizeof solver->upper[e]);
-            keep_free_block(&solver->filter[i], &solver->filter[a->pattern.column[e]], solver->upper[e]);
+    const host_pattern *pattern = &system->a->pattern;
+    collect_diagonal(solver, system);
+    for (size_t i = 0; i < pattern->rows; i++) {
+        filter_diagonal(&solver->filter[i], solver->pivot[i]);
+        memcpy(solver->inverse[i], solver->pivot[i], sizeof solver->inverse[i]); /* D_i, until its turn comes */
+        for (size_t e = pattern->first[i]; e < pattern->first[i + 1]; e++) {
+            memcpy(solver->upper[e], system->a->block[e], sizeof solver->upper[e]);
+            keep_free_block(&solver->filter[i], &solver->filter[pattern->column[e]], solver->upper[e]);
         }
     }
-    for (size_t i = 0; i < a->pattern.rows; i++) {
-        if (!invert_positive(solver->pivot[i], solver->inverse[i])) {
-            filtered_diagonal(solver, a, b, scale, i, solver->pivot[i]);
-            invert_positive(solver->pivot[i], solver->inverse[i]);
-        }
-        for (size_t e = a->pattern.first[i]; e < a->pattern.first[i + 1]; e++)
-            subtract_sandwich(solver->upper[e], solver->inverse[i], solver->pivot[a->pattern.column[e]]);
+    for (size_t i = 0; i < pattern->rows; i++) {
+        double own[9];
+        memcpy(own, solver->inverse[i], sizeof own);
+        if (!invert_positive(solver->pivot[i], solver->inverse[i]))
+            invert_positive(own, solver->inverse[i]);
+        for (size_t e = pattern->first[i]; e < pattern->first[i + 1]; e++)
+            subtract_sandwich(solver->upper[e], solver->inverse[i], solver->pivot[pattern->column[e]]);
     }
 }
 
@@ -242,21 +275,22 @@ static double precondition(const host_solver *solver, const host_pattern *patter
     return dot;
 }
 
-size_t host_solve(host_solver *solver, const host_matrix *a, const host_scalars *b, double scale,
-                  const double (*rhs)[3], double tolerance, size_t limit, double (*x)[3])
+size_t host_solve(host_solver *solver, const host_system *system, const double (*rhs)[3], double tolerance,
+                  size_t limit, double (*x)[3])
 {
-    size_t rows = a->pattern.rows, used = 0;
+    const host_pattern *pattern = &system->a->pattern;
+    size_t rows = pattern->rows, used = 0;
     double (*r)[3] = solver->residual, (*p)[3] = solver->direction, (*q)[3] = solver->image, (*z)[3] = solver->scaled;
-    factor(solver, a, b, scale);
-    double aim = precondition(solver, &a->pattern, rhs, z) * tolerance * tolerance;
-    host_multiply(a, b, scale, (const double (*)[3])x, q);
+    factor(solver, system);
+    double aim = precondition(solver, pattern, rhs, z) * tolerance * tolerance;
+    host_multiply(system, (const double (*)[3])x, q);
     for (size_t i = 0; i < rows; i++)
         for (int k = 0; k < 3; k++)
             r[i][k] = rhs[i][k] - q[i][k];
-    double size = precondition(solver, &a->pattern, (const double (*)[3])r, z);
+    double size = precondition(solver, pattern, (const double (*)[3])r, z);
     memcpy(p, z, rows * sizeof *p);
     while (size > aim && used < limit) {
-        host_multiply(a, b, scale, (const double (*)[3])p, q);
+        host_multiply(system, (const double (*)[3])p, q);
         double curvature = 0;
         for (size_t i = 0; i < rows; i++)
             curvature += p[i][0] * q[i][0] + p[i][1] * q[i][1] + p[i][2] * q[i][2];
@@ -266,7 +300,7 @@ size_t host_solve(host_solver *solver, const host_matrix *a, const host_scalars 
                 x[i][k] += step * p[i][k];
                 r[i][k] -= step * q[i][k];
             }
-        double next = precondition(solver, &a->pattern, (const double (*)[3])r, z);
+        double next = precondition(solver, pattern, (const double (*)[3])r, z);
         double turn = next / size;
         for (size_t i = 0; i < rows; i++)
             for (int k = 0; k < 3; k++)

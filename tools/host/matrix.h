@@ -31,6 +31,22 @@ typedef struct host_bend {
     double weight[4], stiffness;
 } host_bend;
 
+/* Resists relative motion of up to four vertices along a direction: adds strength weight_i weight_j n n^T for each couple
+ * of them. Not in the patterns, since such contacts come and go. */
+typedef struct host_coupling {
+    uint32_t vertex[4];
+    double weight[4], normal[3], strength;
+} host_coupling;
+
+/* A linear system: the sum of its parts, A + scale B + couplings. */
+typedef struct host_system {
+    const host_matrix *a;
+    const host_scalars *b;
+    double scale;
+    const host_coupling *couplings;
+    size_t coupling_count;
+} host_system;
+
 /* Which motions of a row are free: all but those along `count` given directions; 3: none. */
 typedef struct host_filter {
     uint32_t count; /* 0, 1 or 3 */
@@ -49,14 +65,14 @@ void host_pattern_free(host_pattern *pattern);
 /* The entry of an existing pair. */
 size_t host_pattern_find(const host_pattern *pattern, uint32_t a, uint32_t b);
 
-/* y = (A + scale B) x */
-void host_multiply(const host_matrix *a, const host_scalars *b, double scale, const double (*x)[3], double (*y)[3]);
+/* y = system x */
+void host_multiply(const host_system *system, const double (*x)[3], double (*y)[3]);
 /* y = B x */
 void host_multiply_scalars(const host_scalars *b, const double (*x)[3], double (*y)[3]);
-/* Solves (A + scale B) x = rhs in the free motions of solver->filter; x holds the first guess, and keeps its given
- * values elsewhere. Ends when the preconditioned residual has fallen to tolerance times that of rhs. Returns the
- * iterations and leaves rhs - (A + scale B) x, unfiltered, in solver->residual. */
-size_t host_solve(host_solver *solver, const host_matrix *a, const host_scalars *b, double scale,
-                  const double (*rhs)[3], double tolerance, size_t limit, double (*x)[3]);
+/* Solves system x = rhs in the free motions of solver->filter; x holds the first guess, and keeps its given values
+ * elsewhere. Ends when the preconditioned residual has fallen to tolerance times that of rhs. Returns the iterations and
+ * leaves rhs - system x, unfiltered, in solver->residual. */
+size_t host_solve(host_solver *solver, const host_system *system, const double (*rhs)[3], double tolerance,
+                  size_t limit, double (*x)[3]);
 
 #endif

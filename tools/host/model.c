@@ -41,7 +41,7 @@ void host_destroy(host *h)
     void *owned[] = {h->parts, h->vertex_part, h->own_mass, h->mass, h->driven, h->position, h->velocity, h->proposed,
                      h->proposed_velocity, h->target, h->support, h->membranes, h->springs, h->pulls, h->bends,
                      h->triangles, h->segments, h->joins, h->matrix.block, h->matrix.diagonal, h->bending.value,
-                     h->bending.diagonal, h->force, h->solver.filter, h->solver.upper, h->solver.pivot,
+                     h->bending.diagonal, h->couplings, h->force, h->solver.filter, h->solver.upper, h->solver.pivot,
                      h->solver.inverse, h->solver.residual, h->solver.direction, h->solver.image, h->solver.scaled};
     for (size_t k = 0; k < sizeof owned / sizeof owned[0]; k++)
         free(owned[k]);

@@ -331,11 +331,35 @@ START_TEST(supports_bear_and_let_go)
     host_propose(h, h_step);
     for (size_t i = 0; i < h->vertex_count; i++)
         ck_assert(h->support[i].pulls);
-    host_clear_supports(h);
+    host_clear_contacts(h);
     h->gravity[2] = -9.81;
     host_propose(h, h_step);
     for (size_t i = 0; i < h->vertex_count; i++)
         ck_assert_double_eq_tol(h->proposed_velocity[i][2], -9.81 * h_step, 1e-10);
+    host_destroy(h);
+}
+END_TEST
+
+/* Two free strands of two points, one falling on the other, coupled middle to middle with four times their effective mass:
+ * the approach shrinks to a fifth, and the momentum stays. */
+START_TEST(couplings_pass_the_push_on)
+{
+    const double h_step = 1.0 / 96, place[4][3] = {{-0.01, 0, 0}, {0.01, 0, 0}, {0, -0.01, 0.002}, {0, 0.01, 0.002}};
+    const host_coupling coupling = {{0, 1, 2, 3}, {0.5, 0.5, -0.5, -0.5}, {0, 0, 1}, 0};
+    host *h = make_host(0);
+    h->gravity[2] = 0;
+    ck_assert_int_eq(host_add_strands(h, "pair", &YARN, 2, 2, place, NULL), 1);
+    ck_assert_int_eq(host_finish(h), 1);
+    ck_assert_int_eq(host_add_coupling(h, &coupling), 1);
+    h->velocity[2][2] = h->velocity[3][2] = -1.0;
+    host_propose(h, h_step);
+    for (int i = 0; i < 2; i++) {
+        ck_assert_double_eq_tol(h->proposed_velocity[i][2], -0.4, 1e-10);
+        ck_assert_double_eq_tol(h->proposed_velocity[2 + i][2], -0.6, 1e-10);
+    }
+    host_clear_contacts(h);
+    host_propose(h, h_step);
+    ck_assert_double_eq_tol(h->proposed_velocity[0][2], 0, 1e-10);
     host_destroy(h);
 }
 END_TEST
@@ -400,6 +424,7 @@ int main(void)
     tcase_add_test(group, hands_have_limited_force);
     tcase_add_test(group, accept_takes_impulses_and_positions);
     tcase_add_test(group, supports_bear_and_let_go);
+    tcase_add_test(group, couplings_pass_the_push_on);
     tcase_add_test(group, two_runs_give_the_same_bits);
     tcase_add_test(group, bending_energy_is_that_of_a_cylinder);
     suite_add_tcase(suite, group);
