@@ -1,5 +1,9 @@
 /* raddle/shot.h: shot files (HDF5), library raddle_shot. The layout is specified in docs/shot-file.md.
- * One shot object serves one call at a time. HDF5 itself is not thread-safe in most builds: use shots from one thread.
+ * Conventions are those of raddle.h; positions are N x 3 doubles in metres, vertex by vertex. One shot object serves one
+ * call at a time. HDF5 itself is not thread-safe in most builds: use shots, and HDF5, from one thread at a time. Each call
+ * leaves HDF5's error printing and error stack as they were.
+ * In faults, field "file" is the path that was given, "file.part" the unfinished file beside it; else it names a dataset
+ * ("frames/proposed") or an option, and index the row, vertex or frame.
  * Usable from C17 and C++17. */
 #ifndef RADDLE_SHOT_H
 #define RADDLE_SHOT_H
@@ -49,13 +53,19 @@ typedef struct rdl_shot_frame {
 } rdl_shot_frame;
 
 RDL_API void rdl_shot_options_default(rdl_shot_options *options);
-/* Creates PATH.part with the scene. Errors: RDL_FILE_EXISTS (PATH exists and overwrite is 0), RDL_WRITE_FAILED,
- * RDL_NO_FILE, RDL_BAD_ARGUMENT, RDL_NO_MEMORY. */
+/* Creates PATH.part with the scene, which is copied; options NULL = defaults. *writer is set only on RDL_OK, and on error no
+ * file is left behind. Errors: RDL_FILE_EXISTS (overwrite is 0, and PATH or an older PATH.part exists), RDL_WRITE_FAILED,
+ * RDL_NO_FILE (no such folder), RDL_BAD_ARGUMENT, RDL_BAD_SETTING, RDL_TOO_LARGE, RDL_NO_MEMORY, and those of
+ * rdl_engine_create for the scene, except RDL_LOOSE_VERTEX and RDL_ZERO_GAP, which only matter to an engine. */
 RDL_API rdl_status rdl_shot_create(const char *path, const rdl_scene *scene, const rdl_shot_options *options,
                                    rdl_shot_writer **writer, rdl_fault *fault);
-/* Appends and flushes one frame. On error the file holds the frames before it. */
+/* Appends and flushes one frame: a process that is killed afterwards does not lose it. On error the file holds the frames
+ * before it. Errors: RDL_NOT_FINITE, RDL_OUT_OF_RANGE (a verdict, a way-point's time, or delivered positions that a host of
+ * 32 bits could not have been given) and RDL_BAD_ARGUMENT leave the writer usable; after RDL_WRITE_FAILED nothing more
+ * reaches the file. */
 RDL_API rdl_status rdl_shot_append(rdl_shot_writer *writer, const rdl_shot_frame *frame, rdl_fault *fault);
-/* Closes and renames PATH.part to PATH. The writer is gone afterwards, also on error. */
+/* Closes PATH.part, brings it to the disk and renames it to PATH. The writer is gone afterwards, also on error; PATH.part
+ * then stays. RDL_FILE_EXISTS: overwrite is 0 and PATH has appeared meanwhile; it is left alone. */
 RDL_API rdl_status rdl_shot_finish(rdl_shot_writer *writer, rdl_fault *fault);
 /* Closes and leaves PATH.part, readable up to its last frame: for a recording that was interrupted. NULL is fine. */
 RDL_API void rdl_shot_keep(rdl_shot_writer *writer);
@@ -79,15 +89,17 @@ typedef struct rdl_shot_info {
     int has_mass;           /* 0: the masses of the scene stand in for ones that the file does not have */
 } rdl_shot_info;
 
-/* Opens PATH and checks structure, sizes, indices and parts. Errors: RDL_NO_FILE, RDL_BAD_FILE, RDL_BAD_VERSION,
- * RDL_NO_MEMORY and the scene errors of rdl_engine_create; fault->field is the dataset, index the row. */
+/* Opens PATH and checks structure, sizes, indices and parts; a recording in progress, or one that was cut off, is opened
+ * up to its last whole frame. *shot is set only on RDL_OK. Errors: RDL_NO_FILE, RDL_BAD_FILE, RDL_BAD_VERSION,
+ * RDL_BAD_SETTING, RDL_TOO_LARGE, RDL_NO_MEMORY and the scene errors of rdl_engine_create except RDL_LOOSE_VERTEX and
+ * RDL_ZERO_GAP; fault->field is the dataset, index the row, or the extent that does not fit. */
 RDL_API rdl_status rdl_shot_open(const char *path, rdl_shot **shot, rdl_fault *fault);
 RDL_API void rdl_shot_close(rdl_shot *shot);
 /* Owned by the shot. Where the file has no mass, 1 kg (infinity for body vertices) stands in. */
 RDL_API const rdl_scene *rdl_shot_scene(const rdl_shot *shot);
 RDL_API const rdl_shot_info *rdl_shot_describe(const rdl_shot *shot);
 /* Reads one of RDL_SHOT_START, _PROPOSED, _DELIVERED of a frame into positions (N x 3). Checks that all are finite; for
- * delivered also the digest (RDL_BAD_DIGEST). */
+ * delivered also the digest (RDL_BAD_DIGEST). On error the contents of positions are undefined. */
 RDL_API rdl_status rdl_shot_read_positions(rdl_shot *shot, size_t frame, unsigned which, double *positions,
                                            rdl_fault *fault);
 /* The rest of a frame: time, picture, verdict, way-points, memory. Pointers are owned by the shot until its next call;

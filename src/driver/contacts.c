@@ -257,14 +257,18 @@ static void expand_chunk(void *data, size_t chunk, unsigned worker)
     for (size_t c = chunk * CHUNK; c < end; c++) {
         rdli_contact *contact = &j->contacts[c];
         bool idle = contact->zone == UINT32_MAX || zones[contact->zone].settled;
-        if (contact->violated || (idle && !j->all))
+        if ((contact->violated || idle) && !j->all)
             continue;
+        if (j->all) { /* for the books: what carried load, as it lies in the delivered positions */
+            turn_planes(j->piece, contact);
+            continue;
+        }
         rdli_plane plane;
         if (!closest_at(j->piece, contact, 1.0, &plane))
             continue;
         /* A pair that is far and pushes nothing keeps its old planes: they guard the path by which it came, and looking
          * at it from where it is now would open that path again. */
-        if (!j->all && !rdli_carries_load(contact) && is_far(j->piece, contact, &plane))
+        if (!rdli_carries_load(contact) && is_far(j->piece, contact, &plane))
             continue;
         contact->time = 1.0;
         turn_planes(j->piece, contact);

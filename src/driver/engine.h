@@ -85,7 +85,8 @@ rdl_status rdli_detect(rdl_engine *engine, const rdli_look *look);
 
 /* Merges the hits into the contact list of the piece and takes their planes. */
 rdl_status rdli_contacts_merge(rdl_engine *engine, const rdli_piece *piece);
-/* New first-order expansions, about the present trial, for all contacts of unsettled zones that were not violated. */
+/* New first-order expansions, about the present trial, for all contacts of unsettled zones that were not violated. all: of
+ * every contact, at the points where its planes are. */
 void rdli_contacts_expand(rdl_engine *engine, const rdli_piece *piece, bool all);
 
 /* The pass loop over one piece of the step. *apart: every pair keeps its (squeezed) floors over the piece; otherwise the
