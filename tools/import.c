@@ -39,7 +39,7 @@ static const cli_spec spec = {
     .operands_min = 1,
     .operands_max = 1};
 
-enum { NODES_DEEP = 500 };
+enum { NODES_DEEP = 500, COMPLAINT_MAX = 256 };
 
 typedef struct importer {
     const char *path, *out, *part;
@@ -133,14 +133,36 @@ static bool add_node(importer *im, const struct aiScene *scene, const struct aiN
     return true;
 }
 
+/* assimp bends indices that are out of range to some vertex, and only its log says so. Keeps the first such message;
+ * others are about materials and textures, which are of no concern here. */
+static void on_log(const char *message, char *user)
+{
+    if (strstr(message, "out of range") == NULL || user[0] != '\0')
+        return;
+    const char *text = strstr(message, ": ");
+    snprintf(user, COMPLAINT_MAX, "%s", text != NULL ? text + 2 : message);
+    user[strcspn(user, "\n")] = '\0';
+}
+
+static const struct aiScene *load(const char *path, char complaint[])
+{
+    const struct aiLogStream log = {on_log, complaint};
+    aiAttachLogStream(&log);
+    const struct aiScene *scene = aiImportFile(path, aiProcess_Triangulate | aiProcess_ValidateDataStructure);
+    aiDetachLogStream(&log);
+    return scene;
+}
+
 static int read_mesh(importer *im)
 {
     static const frame_matrix unit = {{1, 0, 0, 0}, {0, 1, 0, 0}, {0, 0, 1, 0}};
     if (access(im->path, R_OK) != 0)
         return cli_fail("import", im->path, -1, RDL_NO_FILE, NULL);
-    const struct aiScene *scene = aiImportFile(im->path, aiProcess_Triangulate | aiProcess_ValidateDataStructure);
-    if (scene == NULL || scene->mRootNode == NULL) {
-        cli_error("import", "%s: not a mesh that can be read: %s", cli_clean(im->path), cli_clean(aiGetErrorString()));
+    char complaint[COMPLAINT_MAX] = "";
+    const struct aiScene *scene = load(im->path, complaint);
+    if (scene == NULL || scene->mRootNode == NULL || complaint[0] != '\0') {
+        cli_error("import", "%s: not a mesh that can be read: %s", cli_clean(im->path),
+                  cli_clean(complaint[0] != '\0' ? complaint : aiGetErrorString()));
         aiReleaseImport(scene);
         return CLI_BAD_INPUT;
     }

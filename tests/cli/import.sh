@@ -72,5 +72,8 @@ try import-kind 2 import quad.ply -o x.h5 --kind hair
 try import-no-output 2 import quad.ply
 echo 'nothing' >text.obj
 try import-no-triangles 2 import text.obj -o x.h5
-echo 'v 0 0 nan' >nan.obj
+printf 'OFF\n3 1 0\n0 0 0\n1 0 0\n0 1 0\n3 0 1 7\n' >index.off
+try import-index 2 import index.off -o x.h5
+printf 'v 0 0 nan\nv 1 0 0\nv 0 1 0\nf 1 2 3\n' >nan.obj
+try import-nan 2 import nan.obj -o x.h5
 holds import-nothing-left ! -e x.h5
