@@ -1,4 +1,4 @@
-/* bounds/bounds.c: swept boxes.
+/* bounds/bounds.c: swept boxes: of the vertices from their motion, of the elements from the boxes of their vertices.
  *
  * Promise: if two elements A and B come within h_A + h_B (their half-thicknesses) at some time of the step, their boxes
  * overlap, whatever the rounding.
@@ -7,18 +7,26 @@
  * and largest coordinate m_A, M_A of those vertices; the same holds for B. Then
  *     m_A - h_A <= p_k - h_A <= q_k + h_B <= M_B + h_B,
  * and with A and B exchanged, so the exact intervals [m - h, M + h] overlap on every axis. Let C clamp to the float
- * range. What we store is L(m - h) and U(M + h) with L(x) <= C(x) <= U(x) (below), and C is monotone, so
- *     L(m_A - h_A) <= C(m_A - h_A) <= C(M_B + h_B) <= U(M_B + h_B).
- * L(x) is: subtract in double, clamp, convert to float, and step to the next float below. Every IEEE rounding, in any
- * rounding mode, is monotone and keeps numbers that it can represent. Let f be the converted value and g the float below
- * it. Were C(x) < g, then, g being a double and a float, neither rounding could have lifted the value above g; but f > g. So
- * g <= C(x). A step below the smallest float is clamped back to it, where C(x) lies too. U is the mirror image. */
+ * range; it is monotone. It is enough to store a lower bound not above C(m - h) and an upper bound not below C(M + h).
+ *
+ * L(x) below is such a lower bound for a difference x = a - b of doubles: subtract in double, clamp, convert to float,
+ * and go down by a float at least. Every IEEE rounding, in any rounding mode, is monotone and keeps numbers that it can
+ * represent. Let f be the converted value and g the float below it. Were C(x) < g, then, g being a double and a float,
+ * neither rounding could have lifted the value above g; but f > g. So g <= C(x). Going down: f - |f| 2^-23 is not above
+ * g, since |f| 2^-23 is at least the distance of g for normal f, and g is representable; for subnormal f the second
+ * subtraction, of the smallest float, is exact and gives g. What falls off the range is clamped back, where C(x) lies.
+ *
+ * The box of an element with half-thickness h is the union of its vertices' boxes, each grown by h - h_v >= 0 more: the
+ * vertex's bound is not above C(m_v - h_v), the double d is not below h - h_v, so L(bound - d) <= C(m_v - h). Where
+ * h = h_v, which is the rule, the union is taken as it is. So the boxes of elements change only where those of
+ * their vertices do, which the incremental fill and the broad phase rely on. */
 #include "bounds/bounds.h"
 
 typedef struct fill_job {
     const rdli_mesh *mesh;
     const rdli_motion *motion;
     rdli_boxes *boxes;
+    bool everything; /* also boxes of elements without an awake vertex */
 } fill_job;
 
 enum { BLOCK = 4096 }; /* elements per task: long enough to hide the hand-out, short enough to balance */
@@ -33,25 +41,10 @@ static double largest(double a, double b)
     return a > b ? a : b;
 }
 
-static float clamped(double x)
-{
-    return (float)least(largest(x, -(double)FLT_MAX), (double)FLT_MAX);
-}
-
-/* The next float away from zero for away > 0, towards zero for away < 0; f is finite and not zero. */
-static float stepped(float f, int32_t away)
-{
-    int32_t bits;
-    memcpy(&bits, &f, sizeof bits);
-    bits += away;
-    memcpy(&f, &bits, sizeof bits);
-    return f;
-}
-
 static float rounded_down(double x)
 {
-    float f = clamped(x);
-    f = f > 0.0f ? stepped(f, -1) : f < 0.0f ? stepped(f, 1) : -FLT_TRUE_MIN;
+    float f = (float)least(largest(x, -(double)FLT_MAX), (double)FLT_MAX);
+    f = f - fabsf(f) * 0x1p-23f - FLT_TRUE_MIN;
     return f < -FLT_MAX ? -FLT_MAX : f;
 }
 
@@ -60,18 +53,35 @@ static float rounded_up(double x)
     return -rounded_down(-x);
 }
 
-static rdl_box swept(const rdli_motion *motion, const uint32_t *vertices, unsigned count, double half)
+static rdl_box vertex_box(const fill_job *job, uint32_t v)
 {
+    const double *start = job->motion->start[v], *end = job->motion->end[v], half = job->mesh->vertex_half[v];
     rdl_box box;
     for (unsigned k = 0; k < 3; k++) {
-        double lo = motion->start[vertices[0]][k], hi = lo;
-        for (unsigned i = 0; i < count; i++) {
-            double s = motion->start[vertices[i]][k], e = motion->end[vertices[i]][k];
-            lo = least(lo, least(s, e));
-            hi = largest(hi, largest(s, e));
+        box.lo[k] = rounded_down(least(start[k], end[k]) - half);
+        box.hi[k] = rounded_up(largest(start[k], end[k]) + half);
+    }
+    return box;
+}
+
+/* half >= half of each vertex. */
+static rdl_box element_box(const fill_job *job, const uint32_t *vertices, unsigned count, double half)
+{
+    rdl_box box = {{FLT_MAX, FLT_MAX, FLT_MAX}, {-FLT_MAX, -FLT_MAX, -FLT_MAX}};
+    for (unsigned i = 0; i < count; i++) {
+        rdl_box own = job->boxes->vertices[vertices[i]];
+        const double vertex_half = job->mesh->vertex_half[vertices[i]];
+        if (half != vertex_half) {
+            const double more = (half - vertex_half) * (1 + 0x1p-50); /* outweighs the rounding of the difference */
+            for (unsigned k = 0; k < 3; k++) {
+                own.lo[k] = rounded_down((double)own.lo[k] - more);
+                own.hi[k] = rounded_up((double)own.hi[k] + more);
+            }
         }
-        box.lo[k] = rounded_down(lo - half);
-        box.hi[k] = rounded_up(hi + half);
+        for (unsigned k = 0; k < 3; k++) {
+            box.lo[k] = own.lo[k] < box.lo[k] ? own.lo[k] : box.lo[k];
+            box.hi[k] = own.hi[k] > box.hi[k] ? own.hi[k] : box.hi[k];
+        }
     }
     return box;
 }
@@ -87,31 +97,52 @@ static uint32_t block_end(size_t index, uint32_t count)
     return end < count ? (uint32_t)end : count;
 }
 
-/* Blocks of vertices, then of edges, then of triangles, in one loop. */
-static void fill_block(void *data, size_t index, unsigned worker)
+/* All vertices: that costs little, and shows whether a sleeping one has moved after all. */
+static void fill_vertices(void *data, size_t index, unsigned worker)
+{
+    (void)worker;
+    fill_job *job = data;
+    const uint8_t *awake = job->motion->awake;
+    unsigned surprise = 0;
+    for (uint32_t v = (uint32_t)(index * BLOCK), end = block_end(index, job->mesh->vertex_count); v < end; v++) {
+        const rdl_box box = vertex_box(job, v);
+        if (awake != NULL && awake[v] == 0)
+            surprise |= memcmp(&box, &job->boxes->vertices[v], sizeof box) != 0;
+        job->boxes->vertices[v] = box;
+    }
+    if (surprise)
+        __atomic_store_n(&job->everything, true, __ATOMIC_RELAXED);
+}
+
+static bool wanted(const fill_job *job, const uint32_t *vertices, unsigned count)
+{
+    unsigned any = job->everything;
+    for (unsigned i = 0; !job->everything && i < count; i++)
+        any |= job->motion->awake[vertices[i]];
+    return any != 0;
+}
+
+/* Blocks of edges, then of triangles, in one loop. */
+static void fill_elements(void *data, size_t index, unsigned worker)
 {
     (void)worker;
     const fill_job *job = data;
     const rdli_mesh *mesh = job->mesh;
-    if (index < blocks(mesh->vertex_count)) {
-        for (uint32_t i = (uint32_t)(index * BLOCK), end = block_end(index, mesh->vertex_count); i < end; i++)
-            job->boxes->vertices[i] = swept(job->motion, &i, 1, mesh->vertex_half[i]);
-        return;
-    }
-    index -= blocks(mesh->vertex_count);
     if (index < blocks(mesh->edge_count)) {
         for (uint32_t i = (uint32_t)(index * BLOCK), end = block_end(index, mesh->edge_count); i < end; i++)
-            job->boxes->edges[i] = swept(job->motion, mesh->edges[i], 2, mesh->edge_half[i]);
+            if (wanted(job, mesh->edges[i], 2))
+                job->boxes->edges[i] = element_box(job, mesh->edges[i], 2, mesh->edge_half[i]);
         return;
     }
     index -= blocks(mesh->edge_count);
     for (uint32_t i = (uint32_t)(index * BLOCK), end = block_end(index, mesh->triangle_count); i < end; i++)
-        job->boxes->triangles[i] = swept(job->motion, mesh->triangles[i], 3, mesh->triangle_half[i]);
+        if (wanted(job, mesh->triangles[i], 3))
+            job->boxes->triangles[i] = element_box(job, mesh->triangles[i], 3, mesh->triangle_half[i]);
 }
 
 void rdli_bounds_fill(const rdli_mesh *mesh, const rdli_motion *motion, rdli_workers *workers, rdli_boxes *boxes)
 {
-    fill_job job = {mesh, motion, boxes};
-    size_t count = blocks(mesh->vertex_count) + blocks(mesh->edge_count) + blocks(mesh->triangle_count);
-    rdli_parallel_for(workers, count, fill_block, &job);
+    fill_job job = {mesh, motion, boxes, motion->awake == NULL};
+    rdli_parallel_for(workers, blocks(mesh->vertex_count), fill_vertices, &job);
+    rdli_parallel_for(workers, blocks(mesh->edge_count) + blocks(mesh->triangle_count), fill_elements, &job);
 }

@@ -12,6 +12,8 @@ struct rdli_broad {
     rdli_marked_tree trees[KINDS];
     rdli_query queries[2]; /* point-triangle, edge-edge */
     rdli_apart apart;
+    rdli_room moved_room;
+    bool settled; /* all trees are those of the last call's boxes */
 };
 
 static bool attached(const rdli_mesh *mesh, uint32_t v, uint32_t w)
@@ -108,6 +110,7 @@ void rdli_broad_destroy(rdli_broad *broad)
     for (unsigned which = 0; which < 2; which++)
         rdli_query_release(broad->memory, &broad->queries[which]);
     rdli_room_release(broad->memory, &broad->apart.record_room);
+    rdli_room_release(broad->memory, &broad->moved_room);
     rdli_give(broad->memory, broad, 1, sizeof *broad);
 }
 
@@ -125,12 +128,18 @@ static rdl_status find_pairs(rdli_broad *broad, const rdli_mesh *mesh, const rdl
         {(const uint32_t *)mesh->edges, 2, mesh->edge_count, boxes->edges},
         {(const uint32_t *)mesh->triangles, 3, mesh->triangle_count, boxes->triangles},
     };
-    const bool with_parts = any_muted(mesh);
+    rdli_moment moment = {mesh, awake, any_muted(mesh), NULL};
     rdli_pairs found = {0};
     rdl_status status = RDL_OK;
+    if (!rdli_room_reserve(broad->memory, &broad->moved_room, mesh->vertex_count, 1, false))
+        return RDL_NO_MEMORY;
+    if (awake != NULL && broad->settled)
+        moment.moved = broad->moved_room.data;
+    broad->settled = false;
     for (unsigned kind = 0; kind < KINDS && status == RDL_OK; kind++)
-        status = rdli_marks_prepare(broad->memory, broad->workers, broad->kernels, &broad->trees[kind], mesh,
-                                    &elements[kind], awake, with_parts);
+        status = rdli_marks_prepare(broad->memory, broad->workers, broad->kernels, &broad->trees[kind], &elements[kind],
+                                    &moment);
+    broad->settled = status == RDL_OK;
     broad->apart.records = NULL;
     if (status == RDL_OK && motion != NULL)
         status = rdli_apart_fill(broad->memory, broad->workers, &broad->apart, mesh, motion, &broad->trees[VERTICES].tree);

@@ -25,6 +25,8 @@ rdl_status rdli_broad_near_pairs(rdli_broad *broad, const rdli_mesh *mesh, const
 /* All point-triangle and edge-edge pairs with overlapping boxes, sorted, each once, without: shared vertices, muted
  * parts, attachments, pairs of which all four vertices are driven, and (where awake is given) pairs of which no vertex is
  * awake. The list is owned by broad and valid until its next call. Every vertex, edge and triangle of the mesh takes part.
+ * The boxes come from rdli_bounds_fill; with awake, elements are taken to be where they were in the last call unless the
+ * box of one of their vertices has changed.
  * Errors: RDL_NO_MEMORY, RDL_CANCELLED. Allocates only when it needs more room than ever before. */
 rdl_status rdli_broad_pairs(rdli_broad *broad, const rdli_mesh *mesh, const rdli_boxes *boxes, const uint8_t *awake,
                             rdli_pairs *pairs);

@@ -20,13 +20,15 @@ static void fill_last(rdli_tree *tree, unsigned level, uint32_t last)
         }
 }
 
-static double refit_elements(rdli_tree *tree, const rdl_box *boxes, uint32_t first, uint32_t last)
+static double refit_elements(rdli_tree *tree, const rdl_box *boxes, const uint8_t *stale, uint32_t first, uint32_t last)
 {
     enum { AHEAD = 24 }; /* elements: the time of some three gathers hides a miss of the second cache */
     const size_t places = (size_t)tree->pack_count[0] * RDLI_WIDE;
     double spread = 0;
     for (uint32_t p = first; p < last; p++) {
         const uint32_t *elements = tree->order + (size_t)p * RDLI_WIDE;
+        if (stale != NULL && stale[p] == 0)
+            continue;
         if ((size_t)p * RDLI_WIDE + AHEAD + RDLI_WIDE <= places)
             for (unsigned i = 0; i < RDLI_WIDE; i++)
                 __builtin_prefetch(&boxes[elements[AHEAD + i]]);
@@ -79,7 +81,7 @@ static group_view view_group(const rdli_query *query, uint32_t group)
 {
     const rdli_side *a = &query->a;
     const rdli_tree *tree = a->tree;
-    group_view g = {.driven = false, .awake = true, .part = RDLI_MIXED_PARTS, .lowest = UINT32_MAX};
+    group_view g = {.driven = false, .awake = true, .part = RDLI_MIXED_PARTS, .lowest = tree->lowest[1][group]};
     g.box = tree->levels == 1 ? tree->packs[1] : &tree->packs[2][group / RDLI_WIDE]; /* a crown has but one box, its own */
     g.place = tree->levels == 1 ? 0 : group % RDLI_WIDE;
     if (a->marks[0] != NULL) {
@@ -88,8 +90,6 @@ static group_view view_group(const rdli_query *query, uint32_t group)
     }
     if (a->parts[0] != NULL)
         g.part = a->parts[1][group];
-    for (size_t i = (size_t)group * 64; i < tree->count && i < (size_t)group * 64 + 64; i++)
-        g.lowest = tree->order[i] < g.lowest ? tree->order[i] : g.lowest;
     return g;
 }
 
@@ -247,12 +247,9 @@ static void store_row(rdli_query *query, rdli_scratch *scratch, unsigned worker,
 /* From what overlaps the group, what overlaps its pack a; how many. */
 static size_t narrow_to_pack(const rdli_query *query, rdli_scratch *scratch, uint32_t a, size_t listed, const bool self)
 {
-    const uint32_t *ids = query->a.tree->order + (size_t)a * RDLI_WIDE;
     const lanes_box box = lanes_spread(&query->a.tree->packs[1][a / RDLI_WIDE], a % RDLI_WIDE);
-    uint32_t lowest = ids[0];
+    const uint32_t lowest = query->a.tree->lowest[0][a];
     size_t count = 0;
-    for (unsigned i = 1; i < RDLI_WIDE; i++)
-        lowest = ids[i] < lowest ? ids[i] : lowest;
     for (size_t at = 0; at < listed; at += RDLI_WIDE) {
         unsigned mask = lanes_overlap_listed(box, &scratch->group, at);
         if (self)
@@ -326,19 +323,12 @@ static inline __attribute__((always_inline)) void match_pack(rdli_query *query, 
     }
 }
 
-static bool group_in_range(const rdli_query *query, uint32_t group)
-{
-    const rdli_tree *tree = query->a.tree;
-    bool inside = query->range_lo == 0 && query->range_hi >= tree->count;
-    for (size_t i = (size_t)group * 64; !inside && i < tree->count && i < (size_t)group * 64 + 64; i++)
-        inside = tree->order[i] >= query->range_lo && tree->order[i] < query->range_hi;
-    return inside;
-}
-
 static void match_group(rdli_query *query, uint32_t group, unsigned worker)
 {
     rdli_scratch *scratch = &query->scratch[worker];
-    if (query->done[group] || !group_in_range(query, group))
+    if (query->done[group])
+        return;
+    if (query->a.tree->highest[1][group] < query->range_lo || query->a.tree->lowest[1][group] >= query->range_hi)
         return;
     const size_t listed = list_packs(query, group, scratch);
     if (listed > scratch->list_need)

@@ -6,9 +6,8 @@ enum { BLOCK = 512 }; /* packs per task */
 
 typedef struct mark_job {
     rdli_marked_tree *marked;
-    const rdli_mesh *mesh;
     const rdli_elements *elements;
-    const uint8_t *awake;
+    const rdli_moment *moment;
     unsigned level;
     rdli_marks *marks[RDLI_LEVELS];
     uint32_t *parts[RDLI_LEVELS];
@@ -44,13 +43,13 @@ static rdli_marks mark_elements(const mark_job *job, size_t pack)
 {
     const unsigned corner_count = job->elements->corner_count;
     const uint32_t *corners = job->marked->side.corners + pack * RDLI_WIDE * corner_count;
-    unsigned driven = 0xFF, awake = job->awake == NULL ? 0xFF : 0, attached = 0;
+    unsigned driven = 0xFF, awake = job->moment->awake == NULL ? 0xFF : 0, attached = 0;
     for (unsigned c = 0; c < corner_count; c++)
         for (unsigned i = 0; i < RDLI_WIDE; i++) {
             uint32_t vertex = corners[c * RDLI_WIDE + i];
-            driven &= ~((unsigned)(job->mesh->driven[vertex] == 0) << i);
-            awake |= (unsigned)(job->awake != NULL && job->awake[vertex] != 0) << i;
-            attached |= (unsigned)has_attachment(job->mesh, vertex) << i;
+            driven &= ~((unsigned)(job->moment->mesh->driven[vertex] == 0) << i);
+            awake |= (unsigned)(job->moment->awake != NULL && job->moment->awake[vertex] != 0) << i;
+            attached |= (unsigned)has_attachment(job->moment->mesh, vertex) << i;
         }
     return (rdli_marks){(uint8_t)driven, (uint8_t)awake, (uint8_t)attached};
 }
@@ -106,7 +105,7 @@ static void part_block(void *data, size_t block, unsigned worker)
     for (size_t p = first; p < last; p++) {
         uint32_t part = 0;
         for (size_t i = 0, used = used_places(&job->marked->tree, job->level, p); i < used; i++) {
-            uint32_t own = job->level == 0 ? job->mesh->vertex_part[job->corners[p * RDLI_WIDE * corner_count + i]]
+            uint32_t own = job->level == 0 ? job->moment->mesh->vertex_part[job->corners[p * RDLI_WIDE * corner_count + i]]
                                            : job->parts[job->level - 1][p * RDLI_WIDE + i];
             part = i == 0 || part == own ? own : RDLI_MIXED_PARTS;
             if (part == RDLI_MIXED_PARTS)
@@ -134,6 +133,7 @@ static bool reserve(rdli_memory *memory, mark_job *job)
         packs += tree->pack_count[level];
     if (!rdli_room_reserve(memory, &marked->mark_room, packs, sizeof(rdli_marks), false) ||
         !rdli_room_reserve(memory, &marked->part_room, packs, sizeof(uint32_t), false) ||
+        !rdli_room_reserve(memory, &marked->stale_room, tree->pack_count[0], 1, false) ||
         !rdli_room_reserve(memory, &marked->corner_room, places, sizeof(uint32_t), false))
         return false;
     size_t next = 0;
@@ -146,19 +146,76 @@ static bool reserve(rdli_memory *memory, mark_job *job)
     return true;
 }
 
+/* The tree of the vertices: compares every box with what the pack still holds. */
+static void moved_block(void *data, size_t block, unsigned worker)
+{
+    (void)worker;
+    mark_job *job = data;
+    const rdli_tree *tree = &job->marked->tree;
+    uint8_t *stale = job->marked->stale_room.data;
+    size_t first, last;
+    block_range(job, block, &first, &last);
+    for (size_t p = first; p < last; p++) {
+        stale[p] = 0;
+        for (size_t i = 0, used = used_places(tree, 0, p); i < used; i++) {
+            const uint32_t v = tree->order[p * RDLI_WIDE + i];
+            const rdl_box *box = &job->elements->boxes[v];
+            unsigned differs = 0;
+            for (unsigned k = 0; k < 3; k++)
+                differs |= (unsigned)(box->lo[k] != tree->packs[0][p].lo[k][i]) |
+                           (unsigned)(box->hi[k] != tree->packs[0][p].hi[k][i]);
+            job->moment->moved[v] = (uint8_t)differs;
+            stale[p] |= (uint8_t)differs;
+        }
+    }
+}
+
+/* The other trees: looks at the vertices. */
+static void stale_block(void *data, size_t block, unsigned worker)
+{
+    (void)worker;
+    mark_job *job = data;
+    uint8_t *stale = job->marked->stale_room.data;
+    const size_t corners = (size_t)job->elements->corner_count * RDLI_WIDE;
+    size_t first, last;
+    block_range(job, block, &first, &last);
+    for (size_t p = first; p < last; p++) {
+        stale[p] = 0;
+        for (size_t c = p * corners; c < (p + 1) * corners; c++)
+            stale[p] |= job->moment->moved[job->marked->side.corners[c]];
+    }
+}
+
+/* Brings the tree up to date. */
+static rdl_status update_tree(rdli_memory *memory, rdli_workers *workers, const rdli_kernels *kernels, mark_job *job,
+                              rdli_moment *moment)
+{
+    rdli_marked_tree *marked = job->marked;
+    rdli_tree *tree = &marked->tree;
+    const rdli_elements *elements = job->elements;
+    if (tree->count != elements->count || tree->levels == 0) {
+        moment->moved = NULL;
+        return rdli_tree_build(memory, workers, kernels, tree, elements->boxes, elements->count);
+    }
+    if (moment->moved == NULL || marked->arranged != tree->arranged) {
+        moment->moved = NULL;
+        rdli_tree_update(workers, kernels, tree, elements->boxes, NULL);
+        return RDL_OK;
+    }
+    job->level = 0;
+    rdli_parallel_for(workers, blocks(job), elements->vertices == NULL ? moved_block : stale_block, job);
+    rdli_tree_update(workers, kernels, tree, elements->boxes, marked->stale_room.data);
+    return RDL_OK;
+}
+
 rdl_status rdli_marks_prepare(rdli_memory *memory, rdli_workers *workers, const rdli_kernels *kernels,
-                              rdli_marked_tree *marked, const rdli_mesh *mesh, const rdli_elements *elements,
-                              const uint8_t *awake, bool with_parts)
+                              rdli_marked_tree *marked, const rdli_elements *elements, rdli_moment *moment)
 {
     rdli_tree *tree = &marked->tree;
-    if (tree->count != elements->count || tree->levels == 0) {
-        rdl_status status = rdli_tree_build(memory, workers, kernels, tree, elements->boxes, elements->count);
-        if (status != RDL_OK)
-            return status;
-    } else {
-        rdli_tree_update(workers, kernels, tree, elements->boxes);
-    }
-    mark_job job = {.marked = marked, .mesh = mesh, .elements = elements, .awake = awake};
+    mark_job job = {.marked = marked, .elements = elements, .moment = moment};
+    rdl_status status = update_tree(memory, workers, kernels, &job, moment);
+    if (status != RDL_OK)
+        return status;
     if (tree->levels > 0 && !reserve(memory, &job))
         return RDL_NO_MEMORY;
     marked->side = (rdli_side){.tree = tree, .corners = job.corners, .corner_count = elements->corner_count};
@@ -171,7 +228,7 @@ rdl_status rdli_marks_prepare(rdli_memory *memory, rdli_workers *workers, const 
     each_level(workers, &job, mark_block);
     for (unsigned level = 0; tree->levels > 0 && level <= tree->levels; level++) {
         marked->side.marks[level] = job.marks[level];
-        marked->side.parts[level] = with_parts ? job.parts[level] : NULL;
+        marked->side.parts[level] = moment->with_parts ? job.parts[level] : NULL;
     }
     return RDL_OK;
 }
@@ -182,4 +239,5 @@ void rdli_marks_release(rdli_memory *memory, rdli_marked_tree *marked)
     rdli_room_release(memory, &marked->mark_room);
     rdli_room_release(memory, &marked->part_room);
     rdli_room_release(memory, &marked->corner_room);
+    rdli_room_release(memory, &marked->stale_room);
 }

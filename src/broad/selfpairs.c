@@ -46,7 +46,7 @@ void rdli_selfpairs_use_vector(rdli_selfpairs *pairs, bool vector)
 
 void rdli_selfpairs_update(rdli_selfpairs *pairs, const rdl_box *boxes)
 {
-    rdli_tree_update(pairs->workers, pairs->kernels, &pairs->tree, boxes);
+    rdli_tree_update(pairs->workers, pairs->kernels, &pairs->tree, boxes, NULL);
 }
 
 /* Corners in use: a last column that repeats the first everywhere need not be compared. */

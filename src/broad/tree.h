@@ -30,9 +30,10 @@ typedef struct rdli_tree {
     uint32_t pack_count[RDLI_LEVELS];
     rdli_pack *packs[RDLI_LEVELS];   /* into pack_room */
     uint32_t *order;                 /* count entries, then copies of the last up to a full pack */
-    uint32_t *highest[RDLI_LEVELS];  /* highest element number below each pack; into highest_room */
+    uint32_t *lowest[RDLI_LEVELS];   /* lowest and highest element number below each pack; into number_room */
+    uint32_t *highest[RDLI_LEVELS];
     uint32_t arranged;               /* grows with every new order */
-    rdli_room pack_room, highest_room, order_room, item_room, sum_room;
+    rdli_room pack_room, number_room, order_room, item_room, sum_room;
     double built_spread;             /* looseness right after the last build; see rdli_tree_update */
 } rdli_tree;
 
@@ -43,8 +44,10 @@ rdl_status rdli_tree_build(rdli_memory *memory, rdli_workers *workers, const str
 /* Refits the packs to moved boxes, and builds anew when they have become loose. Looseness is the sum over the level-0
  * packs of extent (dx + dy + dz) minus the mean extent of the pack's elements: what the packs add to the boxes
  * themselves, so that faster motion alone is not taken for decay. Rule: build when it exceeds 1.5 times its value after the
- * last build. The choice never changes which pairs are found. Allocates nothing. */
-void rdli_tree_update(rdli_workers *workers, const struct rdli_kernels *kernels, rdli_tree *tree, const rdl_box *boxes);
+ * last build. The choice never changes which pairs are found. Allocates nothing.
+ * stale: NULL, or one flag per level-0 pack, 0 where no box has changed since the last update; then nothing is built. */
+void rdli_tree_update(rdli_workers *workers, const struct rdli_kernels *kernels, rdli_tree *tree, const rdl_box *boxes,
+                      const uint8_t *stale);
 void rdli_tree_release(rdli_memory *memory, rdli_tree *tree);
 
 /* build.c: fills tree->order (item_room is scratch). */

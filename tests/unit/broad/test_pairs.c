@@ -420,6 +420,42 @@ START_TEST(test_steps)
 }
 END_TEST
 
+/* A few vertices move in every call and are awake; now and then one that is said to sleep moves as well. Boxes and pairs are
+ * those of a full fill and of brute force. */
+START_TEST(test_few_awake)
+{
+    scene *s = make_scene(13), *full = make_scene(13);
+    stage st;
+    rdli_pairs pairs;
+    uint64_t seed = 77;
+    ck_assert_int_eq(open_stage(&st, 2, 0), RDL_OK);
+    fill(s, &st);
+    for (int step = 0; step < 12; step++) {
+        memset(s->awake, 0, s->mesh.vertex_count);
+        for (int i = 0; i < 6; i++) {
+            uint32_t v = (uint32_t)(draw(&seed) * s->mesh.vertex_count);
+            s->awake[v] = i < 5 || step % 3 != 0;
+            for (int k = 0; k < 3; k++)
+                s->end[v][k] += 0.1 * (draw(&seed) - 0.5);
+        }
+        memcpy(full->start, s->start, s->mesh.vertex_count * sizeof *s->start);
+        memcpy(full->end, s->end, s->mesh.vertex_count * sizeof *s->end);
+        fill(full, &st);
+        rdli_motion motion = {(const double(*)[3])s->start, (const double(*)[3])s->end, step % 5 == 4 ? NULL : s->awake};
+        rdli_boxes boxes = s->boxes;
+        rdli_bounds_fill(&s->mesh, &motion, st.workers, &boxes);
+        ck_assert_mem_eq(s->boxes.vertices, full->boxes.vertices, s->mesh.vertex_count * sizeof(rdl_box));
+        ck_assert_mem_eq(s->boxes.edges, full->boxes.edges, s->mesh.edge_count * sizeof(rdl_box));
+        ck_assert_mem_eq(s->boxes.triangles, full->boxes.triangles, s->mesh.triangle_count * sizeof(rdl_box));
+        ck_assert_int_eq(rdli_broad_pairs(st.broad, &s->mesh, &s->boxes, motion.awake, &pairs), RDL_OK);
+        check_pairs(s, motion.awake, &pairs);
+    }
+    close_stage(&st);
+    free_scene(s);
+    free_scene(full);
+}
+END_TEST
+
 START_TEST(test_failing_memory)
 {
     scene *s = make_scene(11);
@@ -433,8 +469,10 @@ START_TEST(test_failing_memory)
             status = rdli_broad_pairs(st.broad, &s->mesh, &s->boxes, NULL, &pairs);
             finished = status == RDL_OK;
             ck_assert(finished || pairs.point_triangle == NULL);
-            ck_assert_int_eq(rdli_broad_pairs(st.broad, &s->mesh, &s->boxes, NULL, &pairs), RDL_OK);
-            check_pairs(s, NULL, &pairs);
+            /* A call that failed half-way must not make the next one trust its trees. */
+            memset(s->awake, 1, s->mesh.vertex_count);
+            ck_assert_int_eq(rdli_broad_pairs(st.broad, &s->mesh, &s->boxes, s->awake, &pairs), RDL_OK);
+            check_pairs(s, s->awake, &pairs);
         }
         ck_assert_int_eq(status, finished ? RDL_OK : RDL_NO_MEMORY);
         close_stage(&st);
@@ -515,6 +553,7 @@ int main(void)
     tcase_set_timeout(all, 60);
     tcase_add_test(all, test_filters);
     tcase_add_test(all, test_near_pairs);
+    tcase_add_test(all, test_few_awake);
     tcase_add_test(all, test_steps);
     tcase_add_test(all, test_failing_memory);
     tcase_add_test(all, test_bounds);
