@@ -59,6 +59,21 @@ static __attribute__((noinline)) void certain_enclosure(int kind, const double x
         wide_enclosure(kind, x, lo, hi);
 }
 
+/* Where the difference of the closest points cancels although they do not meet: the features' common normal, on the side
+ * that doubles see; any direction where there is none. */
+static void normal_of_features(int kind, const rdli_frame *f, double normal[3])
+{
+    double n[3] = {f->u[1] * f->v[2] - f->u[2] * f->v[1], f->u[2] * f->v[0] - f->u[0] * f->v[2],
+        f->u[0] * f->v[1] - f->u[1] * f->v[0]};
+    double length = sqrt(n[0] * n[0] + n[1] * n[1] + n[2] * n[2]);
+    double side = f->w[0] * n[0] + f->w[1] * n[1] + f->w[2] * n[2];
+    double sign = (side < 0) == (kind == RDL_POINT_TRIANGLE) ? -1 : 1;
+    normal[0] = 1;
+    normal[1] = normal[2] = 0;
+    for (int k = 0; length > 0 && k < 3; k++)
+        normal[k] = sign * n[k] / length;
+}
+
 void rdli_closest_points(int kind, const double x[4][3], rdli_closest *closest)
 {
     double scaled[4][3];
@@ -82,6 +97,8 @@ void rdli_closest_points(int kind, const double x[4][3], rdli_closest *closest)
     certain_enclosure(kind, x, &closest->distance_lo, &closest->distance_hi);
     if (closest->distance_hi == 0)
         memset(closest->normal, 0, sizeof closest->normal);
+    else if (length == 0)
+        normal_of_features(kind, &frame, closest->normal);
 }
 
 /* Sign of distance(end) - other, where other is a length or, where it is negative, the distance at the start. */
@@ -177,7 +194,8 @@ void rdli_examine_open(int kind, const rdl_motion *motion, double gap, double sh
     examined->contact_at_start = start.distance_hi == 0;
     double from = floor_distance ? floor_distance[1] : start.distance_hi;
     examined->end_floor = from < gap ? from : gap;
-    examined->path_floor = share * examined->end_floor;
+    /* never below the exact product */
+    examined->path_floor = examined->end_floor > 0 ? nextafter(share * examined->end_floor, (double)INFINITY) : 0;
     if (floor_distance)
         examined->below_end = !end_reaches(kind, motion, &end, examined->end_floor);
     else
