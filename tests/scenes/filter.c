@@ -1,7 +1,7 @@
 /* scenes/filter.c: see filter.h. Every distance here is bounded below by a direction: the differences of the two
- * features' corners span a convex set that holds every difference of their points, during a straight motion too (convex
- * hull property), so the least of direction . difference over the corners bounds the distance. The direction may come from
- * anywhere; only the bound has to be sound, and its rounding is covered by `slack`. */
+ * features' corners span a convex set that holds every difference of their points, during a straight motion too
+ * (convex hull property), so the least of direction . difference over the corners bounds the distance. The direction
+ * may come from anywhere; only the bound has to be sound, and its rounding is covered by `slack`. */
 #include "filter.h"
 
 #include <math.h>
@@ -142,8 +142,9 @@ static bool stays_beyond(int kind, const rdl_motion *motion, double from, double
            && stays_beyond(kind, motion, middle, to, floor, depth - 1);
 }
 
-/* Rounding of everything above, for coordinates up to the largest: a corner at a time takes 3 roundings, a difference one,
- * a product of three terms five, a root and a quotient one each, relative to 2 sqrt(3) times the largest coordinate. */
+/* Rounding of everything above, for coordinates up to the largest: a corner at a time takes 3 roundings, a difference
+ * one, a product of three terms five, a root and a quotient one each, relative to 2 sqrt(3) times the largest
+ * coordinate. */
 static double slack_of(const rdl_motion pieces[], size_t count)
 {
     double largest = 0.0;

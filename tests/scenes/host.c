@@ -1,4 +1,4 @@
-/* scenes/host.c: see host.h. Only products of lengths with pure numbers, so that a scaled world moves in scaled bits. */
+/* scenes/host.c: see host.h. Only products of lengths with pure numbers: a scaled world moves in scaled bits. */
 #include "host.h"
 
 #include <math.h>

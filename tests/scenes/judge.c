@@ -58,7 +58,8 @@ static void find_edges(judge *j)
     j->edge_count = kept;
 }
 
-/* Links every loop with every other; a pair whose number cannot be told gets LONG_MIN of no use later, so it is a fault. */
+/* Links every loop with every other; a pair whose number cannot be told gets LONG_MIN of no use later, so it is a
+ * fault. */
 static bool find_linking(judge *j, const double (*x)[3], long linking[])
 {
     const world *w = j->w;
@@ -142,8 +143,8 @@ static void judge_contact_names(judge *j, const judge_step *step)
             memcpy(x[k], step->start[vertex[k]], sizeof x[k]);
         oracle_rest_distance2((int)row->kind, (const double(*)[3])x, square);
         if (mpq_sgn(square) != 0)
-            judge_fault(j, step->number, "named in contact at the start, but apart: kind %u, %u %u", row->kind, row->first,
-                        row->second);
+            judge_fault(j, step->number, "named in contact at the start, but apart: kind %u, %u %u", row->kind,
+                        row->first, row->second);
     }
     mpq_clear(square);
 }
@@ -161,7 +162,8 @@ static void judge_verdict(judge *j, const judge_step *step)
     if (r->verdict != right)
         judge_fault(j, step->number, "verdict %d, should be %d", (int)r->verdict, (int)right);
     if ((step->verdicts >> r->verdict & 1u) == 0)
-        judge_fault(j, step->number, "verdict %d is not one of this scene (%zu named)", (int)r->verdict, r->named_count);
+        judge_fault(j, step->number, "verdict %d is not one of this scene (%zu named)", (int)r->verdict,
+                    r->named_count);
     judge_tangle_names(j, step);
     judge_contact_names(j, step);
     if (r->verdict == RDL_RESOLVED && moved && !judge_proposal_fails(j, step))
@@ -214,8 +216,8 @@ static void judge_bits(judge *j, const judge_step *step)
     if (sent > 0)
         judge_fault(j, step->number, "%zu driven vertices not where the host sent them", sent);
     if (lost > 0)
-        judge_fault(j, step->number, "%zu vertices that nothing comes near were moved, vertex %u by %.3g m", lost, example,
-                    far);
+        judge_fault(j, step->number, "%zu vertices that nothing comes near were moved, vertex %u by %.3g m", lost,
+                    example, far);
     if (untold > 0)
         judge_fault(j, step->number, "the report's list of moved vertices is wrong for %zu", untold);
 }

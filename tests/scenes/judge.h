@@ -1,5 +1,5 @@
-/* scenes/judge.h: what must hold after each step, found without the library: brute-force candidates, a sound filter, and
- * the exact oracle where the filter cannot tell. */
+/* scenes/judge.h: what must hold after each step, found without the library: brute-force candidates, a sound filter,
+ * and the exact oracle where the filter cannot tell. */
 #ifndef SCENES_JUDGE_H
 #define SCENES_JUDGE_H
 

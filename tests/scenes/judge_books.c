@@ -20,8 +20,8 @@ static uint32_t root_of(uint32_t *group, uint32_t v)
     return v;
 }
 
-/* Which vertices a rigid zone carries along is not in the report: all that moved without a contact go with the rigid zones,
- * as one group. Sums over several zones obey the same rules. */
+/* Which vertices a rigid zone carries along is not in the report: all that moved without a contact go with the rigid
+ * zones, as one group. Sums over several zones obey the same rules. */
 static void join_rigid(judge *j, const judge_step *step, const books *all)
 {
     const rdl_report *r = step->report;
@@ -41,7 +41,8 @@ static void join_rigid(judge *j, const judge_step *step, const books *all)
     }
 }
 
-/* Joins the movable vertices of each zone: its loaded contacts need not hang together, and the promise is for the zone. */
+/* Joins the movable vertices of each zone: its loaded contacts need not hang together, and the promise is for the
+ * zone. */
 static void join_contacts(judge *j, const rdl_report *r, books *all)
 {
     static uint32_t first_of_zone[WORLD_ELEMENTS * 64];
@@ -64,7 +65,7 @@ static void join_contacts(judge *j, const rdl_report *r, books *all)
     }
 }
 
-/* A zone may say that it touches something driven, with a contact that bears no load, only where something driven is. */
+/* A zone may say that it touches something driven, with a contact that bears no load, only where one is near. */
 static void mark_fed(judge *j, const rdl_report *r, books *all)
 {
     for (size_t c = 0; c < r->contact_count; c++) {
@@ -107,8 +108,8 @@ static void enter(books *b, double m, const double start[3], const double propos
     b->work += m * length(delivered) * (length(meant) + length(moved));
 }
 
-/* CONTRACT: |sum m (x* - x1)| <= 1e-12 sum m |x* - x1| + 8 eps sum m |x| before rounding to the format, which adds half an
- * ulp a vertex; kinetic energy in the centre-of-mass frame grows by no more than 1e-12 of it and rounding. */
+/* CONTRACT: |sum m (x* - x1)| <= 1e-12 sum m |x* - x1| + 8 eps sum m |x| before rounding to the format, which adds
+ * half an ulp a vertex; kinetic energy in the centre-of-mass frame grows by no more than 1e-12 of it and rounding. */
 static void close_books(judge *j, const judge_step *step, const books *b)
 {
     double ulp = j->w->format == RDL_FLOAT32 ? 0x1p-24 : 0x1p-53;
@@ -116,8 +117,8 @@ static void close_books(judge *j, const judge_step *step, const books *b)
     double drift = length(b->momentum) / allowed;
     j->drift = fmax(j->drift, drift);
     if (drift > 1.0)
-        judge_fault(j, step->number, "momentum of a free group drifts: %.3g kg m of %.3g kg m moved", length(b->momentum),
-                    b->correction);
+        judge_fault(j, step->number, "momentum of a free group drifts: %.3g kg m of %.3g kg m moved",
+                    length(b->momentum), b->correction);
     double whole_before = length(b->proposed) * length(b->proposed) / b->mass;
     double whole_after = length(b->delivered) * length(b->delivered) / b->mass;
     double before = b->before - whole_before, after = b->after - whole_after;
@@ -138,7 +139,8 @@ static void judge_untouched(judge *j, const judge_step *step, const books *all)
             most = fmax(most, all[v].correction / all[v].mass);
         }
     if (count > 0 && step->report->level_zones[RDL_LEVEL_RIGID] == 0)
-        judge_fault(j, step->number, "%zu vertices were moved without a contact in the report, up to %.3g m", count, most);
+        judge_fault(j, step->number, "%zu vertices were moved without a contact in the report, up to %.3g m", count,
+                    most);
 }
 
 void judge_books(judge *j, const judge_step *step)

@@ -67,7 +67,8 @@ static rdl_status resolve(player *p, rdl_report *report, rdl_fault *fault)
 {
     size_t n = p->w->vertex_count;
     bool narrow_bits = p->w->format == RDL_FLOAT32;
-    rdl_step step = {.size = sizeof step, .start = {p->start, 0, RDL_FLOAT64}, .proposed = {p->proposed, 0, RDL_FLOAT64},
+    rdl_step step = {.size = sizeof step, .start = {p->start, 0, RDL_FLOAT64},
+                     .proposed = {p->proposed, 0, RDL_FLOAT64},
                      .delivered = {p->delivered, 0, RDL_FLOAT64}, .duration = p->w->duration, .mass = p->w->mass};
     if (narrow_bits) {
         narrow(p->start, p->start32, n);
@@ -113,8 +114,8 @@ static double mean_correction(const player *p)
 static void print_step(const player *p, unsigned number, const rdl_report *r, double seconds)
 {
     static const char *const names[4] = {"clear", "resolved", "pinched", "tangled"};
-    printf("  %3u %-8s contacts %5llu zones %4llu (levels %llu %llu %llu %llu %llu) passes %4llu way-points %3zu held %4zu "
-           "named %4zu pairs %7llu mean %.3g worst %.3g m, %.4f s "
+    printf("  %3u %-8s contacts %5llu zones %4llu (levels %llu %llu %llu %llu %llu) passes %4llu "
+           "way-points %3zu held %4zu named %4zu pairs %7llu mean %.3g worst %.3g m, %.4f s "
            "(boxes %.3f pairs %.3f touches %.3f response %.3f verify %.3f)\n",
            number, names[r->verdict & 3], (unsigned long long)r->contact_count, (unsigned long long)r->zone_count,
            (unsigned long long)r->level_zones[0], (unsigned long long)r->level_zones[1],
@@ -124,8 +125,8 @@ static void print_step(const player *p, unsigned number, const rdl_report *r, do
            r->seconds[RDL_TIME_BOXES], r->seconds[RDL_TIME_PAIRS], r->seconds[RDL_TIME_TOUCHES],
            r->seconds[RDL_TIME_RESPONSE], r->seconds[RDL_TIME_VERIFY]);
     for (size_t z = 0; z < r->zone_count; z++)
-        printf("      zone %zu: %u vertices, %u contacts, level %u%s, energy %+.3g J, momentum error %.3g, residual %.3g, "
-               "worst %.3g m\n",
+        printf("      zone %zu: %u vertices, %u contacts, level %u%s, energy %+.3g J, momentum error %.3g, "
+               "residual %.3g, worst %.3g m\n",
                z, r->zones[z].vertex_count, r->zones[z].contact_count, r->zones[z].level,
                r->zones[z].touches_driven ? ", touches driven" : "", r->zones[z].energy_change,
                r->zones[z].momentum_error, r->zones[z].residual, r->zones[z].worst_correction);
@@ -166,7 +167,8 @@ static bool play_step(player *p, unsigned number)
     if (p->options->verbose)
         print_step(p, number, &report, seconds);
     if (p->options->judged) {
-        judge_step step = {number, (rows)p->start, (rows)p->proposed, (rows)p->delivered, &report, p->s->verdicts(p->w, number)};
+        judge_step step = {number, (rows)p->start, (rows)p->proposed, (rows)p->delivered, &report,
+                           p->s->verdicts(p->w, number)};
         judge_the_step(&p->j, &step);
         if (p->s->inspect != NULL)
             p->s->inspect(&p->j, &step);
@@ -259,9 +261,9 @@ void play_release(play_result *result)
 void play_print(const char *name, const play_result *r)
 {
     unsigned steps = r->steps > 0 ? r->steps : 1;
-    printf("%-14s steps %3u elements %4zu verdicts %llu/%llu/%llu/%llu passes %.1f worst %llu way-points %llu zones %llu "
-           "held %llu rigid %llu of %llu, mean correction %.3g m, engine %.3f s (worst step %.3f), with judge %.2f s, exact "
-           "%llu of %llu%s%s\n",
+    printf("%-14s steps %3u elements %4zu verdicts %llu/%llu/%llu/%llu passes %.1f worst %llu way-points %llu "
+           "zones %llu held %llu rigid %llu of %llu, mean correction %.3g m, engine %.3f s (worst step %.3f), "
+           "with judge %.2f s, exact %llu of %llu%s%s\n",
            name, r->steps, r->elements, (unsigned long long)r->verdicts[0], (unsigned long long)r->verdicts[1],
            (unsigned long long)r->verdicts[2], (unsigned long long)r->verdicts[3], (double)r->passes / steps,
            (unsigned long long)r->worst_passes, (unsigned long long)r->waypoints, (unsigned long long)r->zones,

@@ -86,7 +86,8 @@ void finish_curtain(judge *j, unsigned steps, const uint64_t verdicts[4])
 static double plate_distance(unsigned step)
 {
     static const double distance[30] = {8.0, 6.0, 4.0, 3.0, 3.0, 3.0, 2.0, 2.0, 2.0, 1.01, 1.01, 1.01, 0.5, 0.5, 0.5,
-                                        3.0, 3.0, 3.0, 10.0, 10.0, 10.0, 10.0, 2.0, 2.0, 0.5, 0.5, 10.0, 10.0, 10.0, 10.0};
+                                        3.0, 3.0, 3.0, 10.0, 10.0, 10.0, 10.0, 2.0, 2.0, 0.5, 0.5, 10.0,
+                                         10.0, 10.0, 10.0};
     return distance[step < 30 ? step : 29];
 }
 

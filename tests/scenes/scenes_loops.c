@@ -150,8 +150,8 @@ static int arc_at(const knot_diagram *diagram, double place)
     return arc;
 }
 
-/* Determinant of the knot (colouring matrix of the long diagram with the first arc struck out): 1 for no knot, 3 for the
- * trefoil; 0 when it cannot be told. */
+/* Determinant of the knot (colouring matrix of the long diagram with the first arc struck out): 1 for no knot, 3 for
+ * the trefoil; 0 when it cannot be told. */
 static double determinant(const knot_diagram *diagram)
 {
     static double m[CROSSINGS][CROSSINGS];

@@ -112,8 +112,8 @@ void finish_tangled(judge *j, unsigned steps, const uint64_t verdicts[4])
         judge_fault(j, steps, "only %zu tangles are left: the scene was to keep them", j->pierce_count);
 }
 
-/* A tent whose middle vertex stands exactly on a face of another sheet, at distance 0, and flies on into it; in the tenth step
- * it is pulled back. Coordinates are multiples of 2^-8: the contact is exact. */
+/* A tent whose middle vertex stands exactly on a face of another sheet, at distance 0, and flies on into it; in the
+ * tenth step it is pulled back. Coordinates are multiples of 2^-8: the contact is exact. */
 void build_touching(world *w)
 {
     const double corner[3] = {-0.140625, -0.1328125, 0.0}, u[3] = {0.25, 0.0, 0.0}, v[3] = {0.0, 0.25, 0.0};
@@ -172,8 +172,8 @@ void build_free(world *w)
     w->gravity[2] = -9.81;
 }
 
-/* Three sheets in and along the plane x = z. All coordinates are multiples of 2^-10, so that the planes are exact: A and B
- * lie in one plane and A flies at B within it; C flies over both in a parallel plane. */
+/* Three sheets in and along the plane x = z. All coordinates are multiples of 2^-10, so that the planes are exact: A
+ * and B lie in one plane and A flies at B within it; C flies over both in a parallel plane. */
 void build_tilted(world *w)
 {
     const double u[3] = {0.25, 0.0, 0.25}, v[3] = {0.0, 0.25, 0.0}, step = 0x1p-6;
@@ -237,7 +237,8 @@ void inspect_slide(judge *j, const judge_step *step)
 void finish_slide(judge *j, unsigned steps, const uint64_t verdicts[4])
 {
     const world *w = j->w;
-    double far = mean_x(w, w->x) - mean_x(w, (const double(*)[3])w->home) * 1.0, meant = slide_speed * w->duration * steps;
+    double far = mean_x(w, w->x) - mean_x(w, (const double(*)[3])w->home);
+    double meant = slide_speed * w->duration * steps;
     expect_action(j, steps, verdicts, 10);
     if (far < 0.99 * meant)
         judge_fault(j, steps, "the sheet slid %.6g of %.6g m in all", far, meant);

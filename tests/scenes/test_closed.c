@@ -1,5 +1,5 @@
-/* A zone with a single contact against closed forms: four unit masses, the first feature flies at the second with speed 1.
- * Impulse I = -v_n / sum(a_i^2 / m_i); positions are the nearest ones that keep the gap. */
+/* A zone with a single contact against closed forms: four unit masses, the first feature flies at the second with
+ * speed 1. Impulse I = -v_n / sum(a_i^2 / m_i); positions are the nearest ones that keep the gap. */
 #include <check.h>
 #include <math.h>
 #include <stdbool.h>
@@ -91,7 +91,8 @@ static void run(const setup *s, stage *st)
     scene.triangles = triangles;
     rdl_host host = {.size = sizeof host, .threads = 1};
     ck_assert_int_eq(rdl_engine_create(&scene, NULL, &host, &st->engine, NULL), RDL_OK);
-    rdl_step step = {.size = sizeof step, .start = {st->start, 0, RDL_FLOAT64}, .proposed = {st->proposed, 0, RDL_FLOAT64},
+    rdl_step step = {.size = sizeof step, .start = {st->start, 0, RDL_FLOAT64},
+                     .proposed = {st->proposed, 0, RDL_FLOAT64},
                      .delivered = {st->delivered, 0, RDL_FLOAT64}, .duration = duration};
     st->report.size = sizeof st->report;
     ck_assert_int_eq(rdl_engine_step(st->engine, &step, &st->report, NULL), RDL_OK);
@@ -149,13 +150,13 @@ START_TEST(positions)
     double near = s->weight[1] == -1.0 ? 0.01 : 1e-9;
     for (int i = 0; i < 4; i++)
         for (int k = 0; k < 3; k++)
-            ck_assert_msg(fabs(st.delivered[i][k] - x[i][k]) <= near * fall, "%s: vertex %d axis %d at %.17g, not %.17g",
-                          s->name, i, k, st.delivered[i][k], x[i][k]);
+            ck_assert_msg(fabs(st.delivered[i][k] - x[i][k]) <= near * fall,
+                          "%s: vertex %d axis %d at %.17g, not %.17g", s->name, i, k, st.delivered[i][k], x[i][k]);
     /* Where the geometry does not turn, the plain formula: all end at the share of the fall that I leaves. */
     for (int i = 0; i < 4 && (s->edges || s->weight[1] == s->weight[2]); i++) {
         double end = st.proposed[i][2] + s->weight[i] * s->impulse * (fall - s->lift);
-        ck_assert_msg(fabs(st.delivered[i][2] - end) <= 1e-9 * fall, "%s: vertex %d at height %.17g, not %.17g", s->name,
-                      i, st.delivered[i][2], end);
+        ck_assert_msg(fabs(st.delivered[i][2] - end) <= 1e-9 * fall, "%s: vertex %d at height %.17g, not %.17g",
+                      s->name, i, st.delivered[i][2], end);
     }
     if (!s->edges)
         ck_assert_mem_eq(st.delivered[4], st.proposed[4], sizeof st.delivered[4]);

@@ -1,6 +1,7 @@
-/* Multi-step scenes, each judged after every step without the library. Without arguments all of them run, with one line of
- * results for each, with `--short` the quick ones; `--scene NAME [--verbose] [--float32] [--scale POWER_OF_TWO] [--threads N] [--portable]
- * [--saboteur start|proposed]` plays one; with `--compare` it plays in all the ways that must give the same bits. */
+/* Multi-step scenes, each judged after every step without the library. Without arguments all of them run, with one
+ * line of results for each, with `--short` the quick ones; `--scene NAME [--verbose] [--float32] [--scale
+ * POWER_OF_TWO] [--threads N] [--portable] [--saboteur start|proposed]` plays one; with `--compare` it plays in all
+ * the ways that must give the same bits. */
 #include <check.h>
 #include <math.h>
 #include <stdio.h>

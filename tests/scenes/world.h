@@ -1,6 +1,6 @@
 /* scenes/world.h: a small scene with its state: parts, elements, links of the test's own host, and builders of simple
- * shapes. Built in metres; world_finish then multiplies every length by a power of two, so that one scene can be played at
- * any scale. */
+ * shapes. Built in metres; world_finish then multiplies every length by a power of two, so that one scene can be
+ * played at any scale. */
 #ifndef SCENES_WORLD_H
 #define SCENES_WORLD_H
 
@@ -19,8 +19,8 @@ enum {
     WORLD_RULES = 16
 };
 
-/* Two vertices that want a distance. give: share of the error that one pass takes away, 1 for stretch, less for bending;
- * pull_only: resists stretching alone. */
+/* Two vertices that want a distance. give: share of the error that one pass takes away, 1 for stretch, less for
+ * bending; pull_only: resists stretching alone. */
 typedef struct world_link {
     uint32_t a, b;
     double rest, give;
@@ -49,7 +49,7 @@ typedef struct world {
     double duration;     /* s, one step */
     double drag;         /* share of the velocity lost in a step */
     int relax_passes;    /* over all links, in each step */
-    bool by_impulse;     /* velocities from the proposed ones and the report's impulses, else from delivered positions */
+    bool by_impulse;     /* velocities by the report's impulses, else from delivered positions */
     double scale;        /* lengths are those of the builders times this power of two */
     int format;          /* RDL_FLOAT32 or RDL_FLOAT64 */
 } world;
