@@ -239,10 +239,17 @@ rdl_status rdl_shot_read_positions(rdl_shot *shot, size_t frame, unsigned which,
         return rdli_fault_set(fault, RDL_BAD_ARGUMENT, "which", which);
     if (frame >= shot->info.frame_count)
         return rdli_fault_set(fault, RDL_OUT_OF_RANGE, "frame", frame);
+    /* Read beside the caller's array, which is untouched on error. */
+    size_t numbers = 3 * shot->scene.vertex_count;
+    rdli_room *room = &shot->rooms[RDLI_ROOM_SCRATCH];
+    if (!rdli_room_reserve(&shot->memory, room, numbers, sizeof(double), false))
+        return RDL_NO_MEMORY;
     rdli_quiet quiet;
     rdli_quiet_begin(&quiet);
-    rdl_status status = read_positions(shot, frame, set, positions, fault);
+    rdl_status status = read_positions(shot, frame, set, room->data, fault);
     rdli_quiet_end(&quiet);
+    if (status == RDL_OK)
+        memcpy(positions, room->data, numbers * sizeof(double));
     return status;
 }
 

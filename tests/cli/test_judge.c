@@ -62,11 +62,19 @@ static void make_world(world *w, uint64_t seed)
     }
     w->muted[0][0] = (uint32_t)(next(&seed) % 3);
     w->muted[0][1] = (uint32_t)(next(&seed) % 3);
-    w->scene = (rdl_scene){.size = sizeof w->scene, .part_count = 3, .parts = w->parts, .vertex_count = VERTICES,
-                           .vertex_part = w->part, .mass = w->mass, .segment_count = SEGMENTS,
-                           .segments = (const uint32_t(*)[2])w->segments, .triangle_count = count,
-                           .triangles = (const uint32_t(*)[3])w->triangles, .muted_count = seed % 3 == 0,
-                           .muted_parts = (const uint32_t(*)[2])w->muted, .attachment_count = seed % 2 == 0 ? 3 : 0,
+    w->scene = (rdl_scene){.size = sizeof w->scene,
+                           .part_count = 3,
+                           .parts = w->parts,
+                           .vertex_count = VERTICES,
+                           .vertex_part = w->part,
+                           .mass = w->mass,
+                           .segment_count = SEGMENTS,
+                           .segments = (const uint32_t(*)[2])w->segments,
+                           .triangle_count = count,
+                           .triangles = (const uint32_t(*)[3])w->triangles,
+                           .muted_count = seed % 3 == 0,
+                           .muted_parts = (const uint32_t(*)[2])w->muted,
+                           .attachment_count = seed % 2 == 0 ? 3 : 0,
                            .attachments = (const uint32_t(*)[2])w->attachments};
 }
 
@@ -173,8 +181,8 @@ START_TEST(judge_counts_what_brute_force_counts)
                                          &finding_count, &fault),
                              RDL_OK);
             expect_counts(&counts, &wanted);
-            ck_assert_uint_eq(finding_count, counts.tangles + counts.crossings + counts.driven_tangles +
-                                                 counts.driven_crossings);
+            ck_assert_uint_eq(finding_count,
+                              counts.tangles + counts.crossings + counts.driven_tangles + counts.driven_crossings);
         }
         seen += counts.tangles + counts.crossings;
         judge_destroy(j);

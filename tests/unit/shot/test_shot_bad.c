@@ -177,7 +177,7 @@ static void poke(hid_t file, const char *name, hid_t type, const hsize_t at[3], 
 static void expect_read(const char *path, size_t frame, unsigned which, rdl_status status, const char *field,
                         uint64_t index)
 {
-    double state[VERTICES][3];
+    double state[VERTICES][3] = {{7}}, before[VERTICES][3] = {{7}};
     rdl_shot *shot = NULL;
     rdl_shot_frame read;
     rdl_fault fault = {0, ""};
@@ -186,6 +186,7 @@ static void expect_read(const char *path, size_t frame, unsigned which, rdl_stat
                                 : rdl_shot_read_positions(shot, frame, which, state[0], &fault);
     ck_assert_msg(got == status && strcmp(fault.field, field) == 0 && fault.index == index, "got %d at %s %llu", got,
                   fault.field, (unsigned long long)fault.index);
+    ck_assert_mem_eq(state, before, sizeof state);
     rdl_shot_close(shot);
 }
 
