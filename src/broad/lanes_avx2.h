@@ -278,21 +278,42 @@ static inline void lanes_records(const rdli_record *records, const uint32_t *ver
 
 enum { LANES_RANKED = 64 };
 
-/* Sixteen at a time, so that every broadcast serves twice. A comparison that holds gives -1. */
+/* How many of ids[0 .. count - 1] are below each of own[0 .. 8 vectors - 1]; vectors is a constant in every call. A
+ * comparison that holds gives -1. */
+static inline __attribute__((always_inline)) void lanes_rank_some(const uint32_t *own, const unsigned vectors,
+                                                                  const uint32_t *ids, size_t count, uint32_t *rank)
+{
+    const __m256i own_0 = lanes_ids(own), own_1 = lanes_ids(own + 8);
+    const __m256i own_2 = vectors > 2 ? lanes_ids(own + 16) : own_1, own_3 = vectors > 3 ? lanes_ids(own + 24) : own_1;
+    __m256i sum_0 = _mm256_setzero_si256(), sum_1 = sum_0, sum_2 = sum_0, sum_3 = sum_0;
+#pragma GCC unroll 4
+    for (size_t j = 0; j < count; j++) {
+        const __m256i other = _mm256_set1_epi32((int)ids[j]);
+        sum_0 = _mm256_sub_epi32(sum_0, _mm256_cmpgt_epi32(own_0, other));
+        sum_1 = _mm256_sub_epi32(sum_1, _mm256_cmpgt_epi32(own_1, other));
+        if (vectors > 2)
+            sum_2 = _mm256_sub_epi32(sum_2, _mm256_cmpgt_epi32(own_2, other));
+        if (vectors > 3)
+            sum_3 = _mm256_sub_epi32(sum_3, _mm256_cmpgt_epi32(own_3, other));
+    }
+    _mm256_storeu_si256((__m256i *)(void *)rank, sum_0);
+    _mm256_storeu_si256((__m256i *)(void *)(rank + 8), sum_1);
+    if (vectors > 2)
+        _mm256_storeu_si256((__m256i *)(void *)(rank + 16), sum_2);
+    if (vectors > 3)
+        _mm256_storeu_si256((__m256i *)(void *)(rank + 24), sum_3);
+}
+
 static inline void lanes_rank(uint32_t *ids, size_t count, uint32_t *to)
 {
     uint32_t rank[LANES_RANKED];
-    for (size_t b = 0; b < count; b += 2 * RDLI_WIDE) {
-        const __m256i low = lanes_ids(ids + b), high = lanes_ids(ids + b + RDLI_WIDE);
-        __m256i below_low = _mm256_setzero_si256(), below_high = _mm256_setzero_si256();
-        for (size_t j = 0; j < count; j++) {
-            __m256i other = _mm256_set1_epi32((int)ids[j]);
-            below_low = _mm256_sub_epi32(below_low, _mm256_cmpgt_epi32(low, other));
-            below_high = _mm256_sub_epi32(below_high, _mm256_cmpgt_epi32(high, other));
-        }
-        _mm256_storeu_si256((__m256i *)(void *)(rank + b), below_low);
-        _mm256_storeu_si256((__m256i *)(void *)(rank + b + RDLI_WIDE), below_high);
-    }
+    size_t done = 0;
+    for (; count - done > 24; done += done + 32 < count ? 32 : count - done)
+        lanes_rank_some(ids + done, 4, ids, count, rank + done);
+    if (count - done > 16)
+        lanes_rank_some(ids + done, 3, ids, count, rank + done);
+    else if (count - done > 0)
+        lanes_rank_some(ids + done, 2, ids, count, rank + done);
     for (size_t i = 0; i < count; i++)
         to[rank[i]] = ids[i];
 }

@@ -240,7 +240,7 @@ static inline void lanes_records(const rdli_record *records, const uint32_t *ver
     }
 }
 
-/* Sorts `count` <= LANES_RANKED distinct ids below 2^31; fifteen more places behind them are read. */
+/* Sorts `count` <= LANES_RANKED distinct ids below 2^31; 31 more places behind them are read. */
 enum { LANES_RANKED = 64 };
 static inline void lanes_rank(uint32_t *ids, size_t count, uint32_t *to)
 {

@@ -36,7 +36,7 @@ static size_t lay_out(const rdli_query *query, rdli_scratch *scratch, char *base
     scratch->hits = (uint64_t *)(void *)(base + at);
     at += list * sizeof(uint64_t);
     scratch->row = (uint32_t *)(void *)(base + at);
-    at += (list + RDLI_WIDE) * RDLI_WIDE * sizeof(uint32_t);
+    at += (list + 4) * RDLI_WIDE * sizeof(uint32_t); /* lanes_rank reads on */
     scratch->bits = (uint64_t *)(void *)(base + at);
     at += (bit_room(query) * sizeof(uint64_t) + 63) / 64 * 64;
     scratch->block = (rdli_pair *)(void *)(base + at);
