@@ -139,11 +139,19 @@ static double worst_violation(const rdli_problem *problem, const double (*x)[3])
 /* Zones of few rows are solved exactly at once. */
 enum { FEW_ROWS = 64 };
 enum { REFINING_SWEEPS = 128 };
-/* A large violated zone is solved to a twentieth of its violation and aims as much above, so that every row ends above
- * its floor although the solve is quick; each clean pass takes four fifths of that back. */
+/* A large violated zone that a short exact solve does not settle is solved to a twentieth of its violation and aims as much
+ * above, so that every row ends above its floor although the solve is quick; each clean pass takes four fifths of that
+ * back. */
 static const double slop_share = 0.05, slop_growth = 1.5, slop_kept = 0.2, slop_most = 0.5;
 
-static double zone_slop(const job *j, const rdli_zone *zone, size_t rows, double correction)
+static void keep_slop(const job *j, const rdli_zone *zone, double slop)
+{
+    const uint32_t *order = (const uint32_t *)j->response->zone_contacts.data + zone->contact_first;
+    for (uint32_t i = 0; i < zone->contact_count; i++)
+        j->contacts[order[i]].slop = slop;
+}
+
+static double zone_slop(const job *j, const rdli_zone *zone, size_t rows)
 {
     const uint32_t *order = (const uint32_t *)j->response->zone_contacts.data + zone->contact_first;
     double slop = 0.0, floor = DBL_MAX;
@@ -157,11 +165,10 @@ static double zone_slop(const job *j, const rdli_zone *zone, size_t rows, double
     if (rows <= FEW_ROWS)
         slop = 0.0;
     else if (zone->violated)
-        slop = fmin(slop == 0.0 ? slop_share * correction : again ? slop_growth * slop : slop, slop_most * floor);
+        slop = fmin(again ? slop_growth * slop : slop, slop_most * floor);
     else
         slop *= slop_kept;
-    for (uint32_t i = 0; i < zone->contact_count; i++)
-        j->contacts[order[i]].slop = slop;
+    keep_slop(j, zone, slop);
     return slop;
 }
 
@@ -180,7 +187,7 @@ static void set_tolerances(const job *j, const rdli_zone *zone, rdli_problem *pr
             largest = fmax(largest, fabs(problem->target[i][k]));
     }
     double fine = problem->row_count <= FEW_ROWS ? 1e-12 : 2e-8;
-    double resolved = largest * 0x1p-50, slop = zone_slop(j, zone, problem->row_count, correction);
+    double resolved = largest * 0x1p-50, slop = zone_slop(j, zone, problem->row_count);
     for (size_t r = 0; r < problem->row_count; r++) {
         double margin = fmin(problem->rows[r].tolerance, 0.5 * correction) + 2.0 * resolved;
         rdli_row *row = &problem->rows[r];
@@ -207,6 +214,33 @@ static void leave_out_idle_rows(rdli_problem *problem, double *all_loads)
         kept++;
     }
     problem->row_count = kept;
+}
+
+static rdli_solved solve_rows(const job *j, const rdli_zone *zone, rdli_problem *problem)
+{
+    const uint32_t *order = (const uint32_t *)j->response->zone_contacts.data + zone->contact_first;
+    if (!zone->violated || problem->row_count <= FEW_ROWS || j->contacts[order[0]].slop > 0.0)
+        return rdli_solve(problem);
+    uint32_t sweeps = problem->sweeps_max;
+    double *dense = problem->dense_work;
+    problem->sweeps_max = sweeps < REFINING_SWEEPS ? sweeps : REFINING_SWEEPS;
+    problem->dense_work = NULL;
+    rdli_solved solved = rdli_solve(problem);
+    problem->sweeps_max = sweeps;
+    problem->dense_work = dense;
+    if (solved.converged || solved.sweeps >= sweeps)
+        return solved;
+    double floor = DBL_MAX;
+    for (uint32_t i = 0; i < zone->contact_count; i++)
+        floor = fmin(floor, j->contacts[order[i]].floor);
+    double slop = fmin(slop_share * worst_violation(problem, problem->target), slop_most * floor);
+    keep_slop(j, zone, slop);
+    for (size_t r = 0; r < problem->row_count; r++) {
+        rdli_row *row = &problem->rows[r];
+        row->bound += row->share * slop;
+        row->tolerance = fmax(row->tolerance, 0.5 * row->share * slop);
+    }
+    return rdli_solve(problem);
 }
 
 static void account(const job *j, rdli_zone *zone, const double (*solution)[3])
@@ -346,7 +380,7 @@ static void solve_zone(void *data, size_t index, unsigned worker)
         set_tolerances(j, zone, &problem);
         double *all_loads = (double *)r->all_loads.data + zone->row_first;
         leave_out_idle_rows(&problem, all_loads);
-        rdli_solved solved = rdli_solve(&problem);
+        rdli_solved solved = solve_rows(j, zone, &problem);
         zone->sweeps = solved.sweeps;
         zone->infeasible = solved.infeasible;
         zone->exhausted = !solved.converged && solved.worst_after > 0.25 * solved.worst_before;
