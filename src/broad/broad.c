@@ -31,18 +31,9 @@ static bool attached(const rdli_mesh *mesh, uint32_t v, uint32_t w)
     return false;
 }
 
-static bool muted(const rdli_mesh *mesh, uint32_t part, uint32_t other)
+static bool none_attached(const rdli_mesh *mesh, const uint32_t *a, unsigned count_a, const uint32_t *b, unsigned count_b)
 {
-    uint64_t bit = (uint64_t)part * mesh->part_count + other;
-    return mesh->muted[bit / 64] >> (bit % 64) & 1;
-}
-
-/* All vertices of an element are of one part. */
-static bool may_meet(const rdli_mesh *mesh, const uint32_t *a, unsigned count_a, const uint32_t *b, unsigned count_b)
-{
-    if (muted(mesh, mesh->vertex_part[a[0]], mesh->vertex_part[b[0]]))
-        return false;
-    for (unsigned i = 0; mesh->attachment_count != 0 && i < count_a; i++)
+    for (unsigned i = 0; i < count_a; i++)
         for (unsigned j = 0; j < count_b; j++)
             if (attached(mesh, a[i], b[j]))
                 return false;
@@ -51,12 +42,12 @@ static bool may_meet(const rdli_mesh *mesh, const uint32_t *a, unsigned count_a,
 
 static bool keep_edge_edge(const void *mesh, const uint32_t *a, const uint32_t *b)
 {
-    return may_meet(mesh, a, 2, b, 2);
+    return none_attached(mesh, a, 2, b, 2);
 }
 
 static bool keep_point_triangle(const void *mesh, const uint32_t *a, const uint32_t *b)
 {
-    return may_meet(mesh, a, 1, b, 3);
+    return none_attached(mesh, a, 1, b, 3);
 }
 
 static bool any_muted(const rdli_mesh *mesh)

@@ -1,5 +1,6 @@
 /* broad/build.c: the order of the elements: recursive splits along the longest axis of the box centres, at places that
- * keep every pack full. Ties are broken by element number, so the order depends on the boxes alone. */
+ * keep every pack full. Classes are kept together: a range of several classes is split by class first, so that no more
+ * than one pack a level holds two classes. Ties are broken by element number, so the order depends on the input alone. */
 #include "broad/tree.h"
 
 typedef struct item {
@@ -10,18 +11,23 @@ typedef struct item {
 typedef struct range {
     size_t first, last; /* [first, last) */
     size_t unit;        /* splits are at first + a multiple of unit */
+    bool mixed;         /* may hold several classes */
 } range;
 
 enum { RANGES = 64 };   /* subtrees that are built as one task each */
 
 typedef struct build_job {
     item *items;
+    const uint8_t *classes;
     range ranges[RANGES];
     uint32_t *order;
 } build_job;
 
-static bool before(const item *a, const item *b, unsigned axis)
+/* classes: NULL, or the first key. */
+static bool before(const item *a, const item *b, unsigned axis, const uint8_t *classes)
 {
+    if (classes != NULL && classes[a->element] != classes[b->element])
+        return classes[a->element] < classes[b->element];
     return a->centre[axis] < b->centre[axis] || (a->centre[axis] == b->centre[axis] && a->element < b->element);
 }
 
@@ -51,7 +57,7 @@ static void exchange(item *a, item *b)
 
 /* Hoare 1961: afterwards the `middle` smallest items come first. The pivot places are drawn from a fixed sequence, so no
  * particular input order is slow. */
-static void select_smallest(item *items, size_t count, size_t middle, unsigned axis)
+static void select_smallest(item *items, size_t count, size_t middle, unsigned axis, const uint8_t *classes)
 {
     size_t lo = 0, hi = count - 1;
     uint64_t draw = 0x9E3779B97F4A7C15u;
@@ -60,15 +66,15 @@ static void select_smallest(item *items, size_t count, size_t middle, unsigned a
         item pivot = items[lo + (size_t)(draw >> 33) % (hi - lo + 1)];
         size_t i = lo, j = hi;
         for (;;) {
-            while (before(&items[i], &pivot, axis))
+            while (before(&items[i], &pivot, axis, classes))
                 i++;
-            while (before(&pivot, &items[j], axis))
+            while (before(&pivot, &items[j], axis, classes))
                 j--;
             if (i >= j)
                 break;
             exchange(&items[i++], &items[j--]);
         }
-        if (i == j && !before(&items[i], &pivot, axis) && !before(&pivot, &items[i], axis)) {
+        if (i == j && !before(&items[i], &pivot, axis, classes) && !before(&pivot, &items[i], axis, classes)) {
             if (middle == i || middle == i + 1)
                 return;
             if (middle < i)
@@ -83,8 +89,16 @@ static void select_smallest(item *items, size_t count, size_t middle, unsigned a
     }
 }
 
+static bool one_class(const item *items, size_t count, const uint8_t *classes)
+{
+    for (size_t i = 1; i < count; i++)
+        if (classes[items[i].element] != classes[items[0].element])
+            return false;
+    return true;
+}
+
 /* Splits r in two if it has more than one unit; else makes the unit smaller. False when r fits one pack. */
-static bool split(item *items, range *r, range *right)
+static bool split(item *items, const uint8_t *classes, range *r, range *right)
 {
     size_t count = r->last - r->first;
     while (r->unit > RDLI_WIDE && count <= r->unit)
@@ -93,17 +107,18 @@ static bool split(item *items, range *r, range *right)
         return false;
     size_t units = (count + r->unit - 1) / r->unit;
     size_t middle = (units + 1) / 2 * r->unit;
-    select_smallest(items + r->first, count, middle, longest_axis(items + r->first, count));
-    *right = (range){r->first + middle, r->last, r->unit};
+    r->mixed = r->mixed && !one_class(items + r->first, count, classes);
+    select_smallest(items + r->first, count, middle, longest_axis(items + r->first, count), r->mixed ? classes : NULL);
+    *right = (range){r->first + middle, r->last, r->unit, r->mixed};
     r->last = r->first + middle;
     return true;
 }
 
-static void build_range(item *items, range r)
+static void build_range(item *items, const uint8_t *classes, range r)
 {
     range right;
-    while (split(items, &r, &right)) {
-        build_range(items, right); /* depth: the logarithm of the count, as the halves are even up to one unit */
+    while (split(items, classes, &r, &right)) {
+        build_range(items, classes, right); /* depth: the logarithm of the count, as the halves are even up to one unit */
     }
 }
 
@@ -112,16 +127,16 @@ static void build_task(void *data, size_t index, unsigned worker)
     (void)worker;
     build_job *job = data;
     range r = job->ranges[index];
-    build_range(job->items, r);
+    build_range(job->items, job->classes, r);
     for (size_t i = r.first; i < r.last; i++)
         job->order[i] = job->items[i].element;
 }
 
-void rdli_tree_arrange(rdli_workers *workers, rdli_tree *tree, const rdl_box *boxes)
+void rdli_tree_arrange(rdli_workers *workers, rdli_tree *tree, const rdl_box *boxes, const uint8_t *classes)
 {
     if (tree->count == 0)
         return;
-    build_job job = {.items = tree->item_room.data, .order = tree->order};
+    build_job job = {.items = tree->item_room.data, .classes = classes, .order = tree->order};
     for (uint32_t e = 0; e < tree->count; e++) {
         for (unsigned k = 0; k < 3; k++)
             job.items[e].centre[k] = 0.5f * boxes[e].lo[k] + 0.5f * boxes[e].hi[k];
@@ -131,12 +146,12 @@ void rdli_tree_arrange(rdli_workers *workers, rdli_tree *tree, const rdl_box *bo
     for (unsigned level = 0; level < tree->levels; level++)
         unit *= RDLI_WIDE;
     size_t ranges = 1;
-    job.ranges[0] = (range){0, tree->count, unit};
+    job.ranges[0] = (range){0, tree->count, unit, classes != NULL};
     for (bool grown = true; grown && ranges <= RANGES / 2;) {
         grown = false;
         for (size_t r = ranges; r-- > 0 && ranges < RANGES;)
             if (job.ranges[r].last - job.ranges[r].first > tree->count / RANGES + RDLI_WIDE &&
-                split(job.items, &job.ranges[r], &job.ranges[ranges])) {
+                split(job.items, classes, &job.ranges[r], &job.ranges[ranges])) {
                 ranges++;
                 grown = true;
             }

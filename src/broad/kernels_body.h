@@ -179,17 +179,31 @@ static unsigned kept(const rdli_query *query, uint32_t a, unsigned i, uint32_t b
     return mask;
 }
 
+/* Leaves out the children of b whose parts are muted for child i of a. */
+static unsigned audible(const rdli_query *query, uint32_t a, unsigned i, uint32_t b, unsigned mask)
+{
+    const uint32_t p = query->a.parts[0][a], q = query->b.parts[0][b];
+    if (p != RDLI_MIXED_PARTS && q != RDLI_MIXED_PARTS)
+        return parts_muted(query, p, q) ? 0 : mask;
+    const uint32_t own = query->a.element_parts[(size_t)a * RDLI_WIDE + i];
+    for (unsigned left = mask; left != 0; left &= left - 1) {
+        unsigned j = (unsigned)__builtin_ctz(left);
+        if (parts_muted(query, own, query->b.element_parts[(size_t)b * RDLI_WIDE + j]))
+            mask &= ~(1u << j);
+    }
+    return mask;
+}
+
 /* The rules beyond boxes, order and shared vertices. */
 static unsigned ruled(const rdli_query *query, uint32_t a, unsigned i, uint32_t b, unsigned mask)
 {
-    if (query->a.parts[0] != NULL && parts_muted(query, query->a.parts[0][a], query->b.parts[0][b]))
-        return 0;
     const rdli_marks *marks_a = &query->a.marks[0][a], *marks_b = &query->b.marks[0][b];
     mask &= welcome(marks_a, i, marks_b);
-    bool ask = (marks_a->attached >> i & 1) && marks_b->attached != 0;
-    if (query->a.parts[0] != NULL)
-        ask |= query->a.parts[0][a] == RDLI_MIXED_PARTS || query->b.parts[0][b] == RDLI_MIXED_PARTS;
-    return mask != 0 && ask ? kept(query, a, i, b, mask) : mask;
+    if (mask != 0 && query->a.parts[0] != NULL)
+        mask = audible(query, a, i, b, mask);
+    if (mask != 0 && (marks_a->attached >> i & 1))
+        mask = kept(query, a, i, b, mask & marks_b->attached) | (mask & ~(unsigned)marks_b->attached);
+    return mask;
 }
 
 static void set_bit(uint64_t *bits, size_t words, size_t summary, uint32_t id)

@@ -10,7 +10,7 @@ typedef struct mark_job {
     const rdli_moment *moment;
     unsigned level;
     rdli_marks *marks[RDLI_LEVELS];
-    uint32_t *parts[RDLI_LEVELS];
+    uint32_t *parts[RDLI_LEVELS], *element_parts;
     uint32_t *corners;
 } mark_job;
 
@@ -103,14 +103,13 @@ static void part_block(void *data, size_t block, unsigned worker)
     size_t first, last;
     block_range(job, block, &first, &last);
     for (size_t p = first; p < last; p++) {
-        uint32_t part = 0;
-        for (size_t i = 0, used = used_places(&job->marked->tree, job->level, p); i < used; i++) {
-            uint32_t own = job->level == 0 ? job->moment->mesh->vertex_part[job->corners[p * RDLI_WIDE * corner_count + i]]
-                                           : job->parts[job->level - 1][p * RDLI_WIDE + i];
-            part = i == 0 || part == own ? own : RDLI_MIXED_PARTS;
-            if (part == RDLI_MIXED_PARTS)
-                break;
-        }
+        for (size_t i = 0; job->level == 0 && i < RDLI_WIDE; i++)
+            job->element_parts[p * RDLI_WIDE + i] =
+                job->moment->mesh->vertex_part[job->corners[p * RDLI_WIDE * corner_count + i]];
+        const uint32_t *below = (job->level == 0 ? job->element_parts : job->parts[job->level - 1]) + p * RDLI_WIDE;
+        uint32_t part = below[0];
+        for (size_t i = 1, used = used_places(&job->marked->tree, job->level, p); i < used; i++)
+            part = part == below[i] ? part : RDLI_MIXED_PARTS;
         job->parts[job->level][p] = part;
     }
 }
@@ -132,14 +131,18 @@ static bool reserve(rdli_memory *memory, mark_job *job)
     for (unsigned level = 0; level <= tree->levels; level++)
         packs += tree->pack_count[level];
     if (!rdli_room_reserve(memory, &marked->mark_room, packs, sizeof(rdli_marks), false) ||
-        !rdli_room_reserve(memory, &marked->part_room, packs, sizeof(uint32_t), false) ||
         !rdli_room_reserve(memory, &marked->stale_room, tree->pack_count[0], 1, false) ||
         !rdli_room_reserve(memory, &marked->corner_room, places, sizeof(uint32_t), false))
         return false;
-    size_t next = 0;
+    size_t part_count = job->moment->with_parts ? packs + (size_t)tree->pack_count[0] * RDLI_WIDE : 0, next = 0;
+    if (!rdli_room_reserve(memory, &marked->part_room, part_count, sizeof(uint32_t), false))
+        return false;
+    if (job->moment->with_parts)
+        job->element_parts = (uint32_t *)marked->part_room.data + packs;
     for (unsigned level = 0; level <= tree->levels; level++) {
         job->marks[level] = (rdli_marks *)marked->mark_room.data + next;
-        job->parts[level] = (uint32_t *)marked->part_room.data + next;
+        if (job->moment->with_parts)
+            job->parts[level] = (uint32_t *)marked->part_room.data + next;
         next += tree->pack_count[level];
     }
     job->corners = marked->corner_room.data;
@@ -186,6 +189,22 @@ static void stale_block(void *data, size_t block, unsigned worker)
     }
 }
 
+/* Elements that ignore each other are kept in packs of their own: those that are driven, and, where parts are muted and
+ * few enough that the upper levels still sort by place, those of each part. */
+static void find_classes(uint8_t *classes, const rdli_elements *elements, const rdli_moment *moment)
+{
+    enum { PARTS_MAX = 32 };
+    const rdli_mesh *mesh = moment->mesh;
+    const bool by_part = moment->with_parts && mesh->part_count <= PARTS_MAX;
+    for (uint32_t e = 0; e < elements->count; e++) {
+        const uint32_t *vertices = elements->vertices == NULL ? &e : elements->vertices + (size_t)e * elements->corner_count;
+        unsigned driven = 1;
+        for (unsigned c = 0; c < elements->corner_count; c++)
+            driven &= mesh->driven[vertices[c]] != 0;
+        classes[e] = (uint8_t)(driven | (by_part ? mesh->vertex_part[vertices[0]] << 1 : 0));
+    }
+}
+
 /* Brings the tree up to date. */
 static rdl_status update_tree(rdli_memory *memory, rdli_workers *workers, const rdli_kernels *kernels, mark_job *job,
                               rdli_moment *moment)
@@ -193,18 +212,24 @@ static rdl_status update_tree(rdli_memory *memory, rdli_workers *workers, const 
     rdli_marked_tree *marked = job->marked;
     rdli_tree *tree = &marked->tree;
     const rdli_elements *elements = job->elements;
+    if (!rdli_room_reserve(memory, &marked->class_room, elements->count, 1, false))
+        return RDL_NO_MEMORY;
     if (tree->count != elements->count || tree->levels == 0) {
         moment->moved = NULL;
-        return rdli_tree_build(memory, workers, kernels, tree, elements->boxes, elements->count);
+        find_classes(marked->class_room.data, elements, moment);
+        return rdli_tree_build(memory, workers, kernels, tree, elements->boxes, elements->count, marked->class_room.data);
     }
     if (moment->moved == NULL || marked->arranged != tree->arranged) {
         moment->moved = NULL;
-        rdli_tree_update(workers, kernels, tree, elements->boxes, NULL);
+        if (rdli_tree_refit(workers, kernels, tree, elements->boxes, NULL)) {
+            find_classes(marked->class_room.data, elements, moment);
+            rdli_tree_rebuild(workers, kernels, tree, elements->boxes, marked->class_room.data);
+        }
         return RDL_OK;
     }
     job->level = 0;
     rdli_parallel_for(workers, blocks(job), elements->vertices == NULL ? moved_block : stale_block, job);
-    rdli_tree_update(workers, kernels, tree, elements->boxes, marked->stale_room.data);
+    rdli_tree_refit(workers, kernels, tree, elements->boxes, marked->stale_room.data);
     return RDL_OK;
 }
 
@@ -222,13 +247,17 @@ rdl_status rdli_marks_prepare(rdli_memory *memory, rdli_workers *workers, const 
     if (marked->arranged != tree->arranged) {
         job.level = 0;
         rdli_parallel_for(workers, blocks(&job), corner_block, &job);
-        each_level(workers, &job, part_block);
         marked->arranged = tree->arranged;
     }
+    if (moment->with_parts && marked->parts_arranged != tree->arranged) {
+        each_level(workers, &job, part_block);
+        marked->parts_arranged = tree->arranged;
+    }
+    marked->side.element_parts = job.element_parts;
     each_level(workers, &job, mark_block);
     for (unsigned level = 0; tree->levels > 0 && level <= tree->levels; level++) {
         marked->side.marks[level] = job.marks[level];
-        marked->side.parts[level] = moment->with_parts ? job.parts[level] : NULL;
+        marked->side.parts[level] = job.parts[level];
     }
     return RDL_OK;
 }
@@ -240,4 +269,5 @@ void rdli_marks_release(rdli_memory *memory, rdli_marked_tree *marked)
     rdli_room_release(memory, &marked->part_room);
     rdli_room_release(memory, &marked->corner_room);
     rdli_room_release(memory, &marked->stale_room);
+    rdli_room_release(memory, &marked->class_room);
 }

@@ -7,8 +7,8 @@
 
 typedef struct rdli_marked_tree {
     rdli_tree tree;
-    rdli_room mark_room, part_room, corner_room, stale_room;
-    uint32_t arranged; /* tree.arranged for which corners and parts were filled */
+    rdli_room mark_room, part_room, corner_room, stale_room, class_room;
+    uint32_t arranged, parts_arranged; /* tree.arranged for which corners, and parts, were filled */
     rdli_side side;
 } rdli_marked_tree;
 

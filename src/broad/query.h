@@ -34,10 +34,10 @@ typedef struct rdli_side {
     unsigned corner_count;                /* 0: pairs may share vertices */
     const rdli_marks *marks[RDLI_LEVELS]; /* up to the crown; all NULL: nothing driven, all awake, none attached */
     const uint32_t *parts[RDLI_LEVELS];   /* part of each pack, or RDLI_MIXED_PARTS; all NULL: none muted */
+    const uint32_t *element_parts;        /* with parts: of each element, in tree order */
 } rdli_side;
 
-/* The last word on a pair of elements that passed all other tests; asked only about pairs whose packs are of mixed
- * parts or have attachments. */
+/* The last word on a pair of elements that passed all other tests; asked only where both sides have attachments. */
 typedef bool rdli_keep(const void *rules, const uint32_t *corners_a, const uint32_t *corners_b);
 
 /* Level-0 packs that overlap something; the end is filled up to eight with places that overlap nothing. */

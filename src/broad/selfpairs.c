@@ -30,7 +30,7 @@ rdl_status rdli_selfpairs_create(rdli_memory *memory, rdli_workers *workers, con
     made->workers = workers;
     made->kernels = rdli_kernels_choose(true);
     made->pairs_max = PAIRS_MAX;
-    rdl_status status = rdli_tree_build(memory, workers, made->kernels, &made->tree, boxes, count);
+    rdl_status status = rdli_tree_build(memory, workers, made->kernels, &made->tree, boxes, count, NULL);
     if (status != RDL_OK) {
         rdli_selfpairs_destroy(made);
         return status;
@@ -46,7 +46,8 @@ void rdli_selfpairs_use_vector(rdli_selfpairs *pairs, bool vector)
 
 void rdli_selfpairs_update(rdli_selfpairs *pairs, const rdl_box *boxes)
 {
-    rdli_tree_update(pairs->workers, pairs->kernels, &pairs->tree, boxes, NULL);
+    if (rdli_tree_refit(pairs->workers, pairs->kernels, &pairs->tree, boxes, NULL))
+        rdli_tree_rebuild(pairs->workers, pairs->kernels, &pairs->tree, boxes, NULL);
 }
 
 /* Corners in use: a last column that repeats the first everywhere need not be compared. */

@@ -93,11 +93,12 @@ static void find_numbers(rdli_tree *tree)
     }
 }
 
-static void arrange_and_refit(rdli_workers *workers, const rdli_kernels *kernels, rdli_tree *tree, const rdl_box *boxes)
+void rdli_tree_rebuild(rdli_workers *workers, const rdli_kernels *kernels, rdli_tree *tree, const rdl_box *boxes,
+                       const uint8_t *classes)
 {
     if (tree->count == 0)
         return;
-    rdli_tree_arrange(workers, tree, boxes);
+    rdli_tree_arrange(workers, tree, boxes, classes);
     for (size_t i = tree->count; i % RDLI_WIDE != 0; i++)
         tree->order[i] = tree->order[tree->count - 1];
     find_numbers(tree);
@@ -106,23 +107,22 @@ static void arrange_and_refit(rdli_workers *workers, const rdli_kernels *kernels
 }
 
 rdl_status rdli_tree_build(rdli_memory *memory, rdli_workers *workers, const rdli_kernels *kernels, rdli_tree *tree,
-                           const rdl_box *boxes, uint32_t count)
+                           const rdl_box *boxes, uint32_t count, const uint8_t *classes)
 {
     tree->count = 0;
     tree->levels = 0;
     if (!reserve(memory, tree, count))
         return RDL_NO_MEMORY;
-    arrange_and_refit(workers, kernels, tree, boxes);
+    rdli_tree_rebuild(workers, kernels, tree, boxes, classes);
     return RDL_OK;
 }
 
-void rdli_tree_update(rdli_workers *workers, const rdli_kernels *kernels, rdli_tree *tree, const rdl_box *boxes,
-                      const uint8_t *stale)
+bool rdli_tree_refit(rdli_workers *workers, const rdli_kernels *kernels, rdli_tree *tree, const rdl_box *boxes,
+                     const uint8_t *stale)
 {
     const double decay = 1.5; /* a third more visits cost about as much as a build spread over some ten steps */
     double spread = refit(workers, kernels, tree, boxes, stale);
-    if (stale == NULL && !(spread <= decay * tree->built_spread))
-        arrange_and_refit(workers, kernels, tree, boxes);
+    return stale == NULL && !(spread <= decay * tree->built_spread);
 }
 
 void rdli_tree_release(rdli_memory *memory, rdli_tree *tree)

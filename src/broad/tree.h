@@ -34,23 +34,26 @@ typedef struct rdli_tree {
     uint32_t *highest[RDLI_LEVELS];
     uint32_t arranged;               /* grows with every new order */
     rdli_room pack_room, number_room, order_room, item_room, sum_room;
-    double built_spread;             /* looseness right after the last build; see rdli_tree_update */
+    double built_spread;             /* looseness right after the last build; see rdli_tree_refit */
 } rdli_tree;
 
-/* Makes room for `count` elements and builds. The tree must be zero-initialised or built before.
- * RDL_NO_MEMORY leaves an empty tree. */
+/* Makes room for `count` elements and builds. classes: NULL, or per element a class; classes share no packs, but for one a
+ * level. The tree must be zero-initialised or built before. RDL_NO_MEMORY leaves an empty tree. */
 rdl_status rdli_tree_build(rdli_memory *memory, rdli_workers *workers, const struct rdli_kernels *kernels, rdli_tree *tree,
-                           const rdl_box *boxes, uint32_t count);
-/* Refits the packs to moved boxes, and builds anew when they have become loose. Looseness is the sum over the level-0
- * packs of extent (dx + dy + dz) minus the mean extent of the pack's elements: what the packs add to the boxes
- * themselves, so that faster motion alone is not taken for decay. Rule: build when it exceeds 1.5 times its value after the
- * last build. The choice never changes which pairs are found. Allocates nothing.
- * stale: NULL, or one flag per level-0 pack, 0 where no box has changed since the last update; then nothing is built. */
-void rdli_tree_update(rdli_workers *workers, const struct rdli_kernels *kernels, rdli_tree *tree, const rdl_box *boxes,
-                      const uint8_t *stale);
+                           const rdl_box *boxes, uint32_t count, const uint8_t *classes);
+/* Fits the packs to moved boxes. stale: NULL, or one flag per level-0 pack, 0 where no box has changed since the last time.
+ * True when the packs have become loose and the tree should be built anew. Looseness is the sum over the level-0 packs of
+ * extent (dx + dy + dz) minus the mean extent of the pack's elements: what the packs add to the boxes themselves,
+ * so that faster motion alone is not taken for decay. The rule: more than 1.5 times its value after the last
+ * build, with stale NULL. Neither choice changes which pairs are found. Allocates nothing. */
+bool rdli_tree_refit(rdli_workers *workers, const struct rdli_kernels *kernels, rdli_tree *tree, const rdl_box *boxes,
+                     const uint8_t *stale);
+/* Builds anew with the same count. Allocates nothing. */
+void rdli_tree_rebuild(rdli_workers *workers, const struct rdli_kernels *kernels, rdli_tree *tree, const rdl_box *boxes,
+                       const uint8_t *classes);
 void rdli_tree_release(rdli_memory *memory, rdli_tree *tree);
 
 /* build.c: fills tree->order (item_room is scratch). */
-void rdli_tree_arrange(rdli_workers *workers, rdli_tree *tree, const rdl_box *boxes);
+void rdli_tree_arrange(rdli_workers *workers, rdli_tree *tree, const rdl_box *boxes, const uint8_t *classes);
 
 #endif

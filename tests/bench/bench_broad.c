@@ -225,10 +225,14 @@ static bool bench_lists_row(const bench_scene *scene, double push, const char *n
     bench_lists l;
     if (!bench_lists_measure(scene, push, &l) || l.assigned_pairs != l.box_pairs)
         return false;
-    printf("| %s%s | %zu / %zu / %zu | %.1f | %zu | %.1f | %.1f | %zu | %.1f | %.1f to %.2f | %.0f |\n",
-           bench_scene_name(scene->kind), note, l.vertex_count, l.edge_count, l.triangle_count, 1e3 * l.boxes, l.box_pairs,
-           1e3 * l.box_seconds, 1e3 * l.assigned_seconds, l.near_pairs, 1e3 * l.near_seconds,
-           (double)l.box_pairs / l.touches, (double)l.near_pairs / l.touches, l.bytes * 0x1p-20);
+    printf("| %s%s | %zu / %zu / %zu | %.1f | %zu | %.1f | %.1f | %zu | %.1f | ", bench_scene_name(scene->kind), note,
+           l.vertex_count, l.edge_count, l.triangle_count, 1e3 * l.boxes, l.box_pairs, 1e3 * l.box_seconds,
+           1e3 * l.assigned_seconds, l.near_pairs, 1e3 * l.near_seconds);
+    if (l.touches > 0)
+        printf("%.1f to %.2f", (double)l.box_pairs / l.touches, (double)l.near_pairs / l.touches);
+    else
+        printf("no touch in the sample");
+    printf(" | %.0f |\n", l.bytes * 0x1p-20);
     return true;
 }
 
