@@ -196,7 +196,8 @@ static bool react(rdl_engine *engine, const rdli_piece *piece)
 rdl_status rdli_advance(rdl_engine *engine, const rdli_piece *piece, bool first_piece, uint64_t passes_max, bool *apart)
 {
     rdli_look look = { .from = piece->start, .to = (const double (*)[3])piece->trial, .awake = NULL,
-        .fixed = piece->fixed, .squeeze = engine->squeeze.data, .first_piece = first_piece };
+        .fixed = piece->fixed, .squeeze = engine->squeeze.data, .first_piece = first_piece,
+        .wants_close = true };
     uint8_t *awake = engine->awake.data;
     memcpy(engine->certified.data, piece->target, piece->vertex_count * sizeof piece->target[0]);
     engine->contact_count = 0;
@@ -209,10 +210,10 @@ rdl_status rdli_advance(rdl_engine *engine, const rdli_piece *piece, bool first_
         if (status != RDL_OK)
             return status;
         engine->passes++;
-        first_hits = pass == 0 ? engine->hit_count : first_hits;
+        first_hits = pass == 0 ? engine->violation_count : first_hits;
         /* A motion that is too large for one piece shows early: planes contradict each other, and pushing makes as many
          * new violations as it mends. */
-        bool diverges = pass >= DIVERGES_AFTER && engine->hit_count > first_hits / 2 + 16;
+        bool diverges = pass >= DIVERGES_AFTER && engine->violation_count > first_hits / 2 + 16;
         double begun = rdli_now();
         status = rdli_contacts_merge(engine, piece);
         if (status == RDL_OK && all_settled(engine)) {

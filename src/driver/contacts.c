@@ -177,6 +177,17 @@ static void strike(const rdli_piece *piece, const rdli_hit *hit, bool fresh, rdl
     add_plane(contact, &plane);
 }
 
+/* A pair that is not violated, but will be when its neighbours are pushed. It asks for nothing by itself. */
+static void watch(const rdli_piece *piece, const rdli_hit *hit, rdli_contact *contact)
+{
+    rdli_plane plane;
+    contact->floor = hit->floor;
+    contact->settled = 1;
+    contact->clean = 1;
+    if (closest_at(piece, contact, 1.0, &plane))
+        add_plane(contact, &plane);
+}
+
 typedef struct job {
     rdl_engine *engine;
     const rdli_piece *piece;
@@ -200,7 +211,10 @@ static void strike_chunk(void *data, size_t chunk, unsigned worker)
         bool fresh = contact->gap == 0.0; /* the merge has left it empty */
         if (fresh)
             start_contact(j->piece, hit, contact);
-        strike(j->piece, hit, fresh, contact);
+        if (!hit->close)
+            strike(j->piece, hit, fresh, contact);
+        else if (fresh)
+            watch(j->piece, hit, contact);
     }
 }
 

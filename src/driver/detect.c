@@ -6,6 +6,10 @@ enum { CHUNK = 512 }; /* pairs per task: enough to hide the hand-out, few enough
 
 enum { PAIR_QUIET = 0, PAIR_NEAR = 1, PAIR_HIT = 2 };
 
+/* Pairs that end this near to their floor will be pushed by their neighbours' corrections: a zone that knows them at once
+ * needs no further pass to find them. */
+static const double close_share = 1.01;
+
 void rdli_pair_vertices(const rdli_mesh *mesh, uint32_t kind, uint32_t first, uint32_t second, uint32_t vertex[4])
 {
     if (kind == RDL_POINT_TRIANGLE) {
@@ -112,6 +116,18 @@ static bool look_at(const sweep *s, size_t index, rdli_examined *examined, uint3
     return true;
 }
 
+static bool ends_close(const sweep *s, uint32_t kind, const uint32_t vertex[4], const rdli_examined *examined)
+{
+    double x[4][3];
+    rdli_closest closest;
+    if (!s->look->wants_close)
+        return false;
+    for (int k = 0; k < 4; k++)
+        memcpy(x[k], s->look->to[vertex[k]], sizeof x[k]);
+    rdli_closest_points((int)kind, (const double (*)[3])x, &closest);
+    return closest.distance_lo < close_share * examined->end_floor;
+}
+
 static void flag_chunk(void *data, size_t chunk, unsigned worker)
 {
     (void)worker;
@@ -134,7 +150,8 @@ static void flag_chunk(void *data, size_t chunk, unsigned worker)
         counts->depths[examined.touch.depth < 15 ? examined.touch.depth : 15]++;
         bool hit = examined.reaches_path || examined.below_end;
         counts->touches += hit;
-        s->flags[i] = hit || examined.contact_at_start ? PAIR_HIT : PAIR_NEAR;
+        bool listed = hit || examined.contact_at_start || ends_close(s, kind, vertex, &examined);
+        s->flags[i] = listed ? PAIR_HIT : PAIR_NEAR;
     }
 }
 
@@ -160,6 +177,7 @@ static void detail_chunk(void *data, size_t chunk, unsigned worker)
         hit->reaches_path = examined.reaches_path;
         hit->below_end = examined.below_end;
         hit->contact_at_start = examined.contact_at_start;
+        hit->close = !examined.reaches_path && !examined.below_end && !examined.contact_at_start;
     }
 }
 
@@ -200,12 +218,14 @@ static rdl_status find_touches(rdl_engine *engine, sweep *s)
     s->indices = indices;
     s->hits = engine->hits.data;
     rdli_parallel_for(engine->workers, (count + CHUNK - 1) / CHUNK, detail_chunk, s);
+    for (size_t h = 0; h < engine->hit_count; h++)
+        engine->violation_count += !s->hits[h].close;
     return RDL_OK;
 }
 
 rdl_status rdli_detect(rdl_engine *engine, const rdli_look *look)
 {
-    engine->hit_count = 0;
+    engine->hit_count = engine->violation_count = 0;
     if (rdli_cancelled(engine->workers))
         return RDL_CANCELLED;
     double begun = rdli_now();

@@ -18,6 +18,7 @@ typedef struct rdli_hit {
     uint32_t vertex[4];
     double gap, start_distance[2], floor, time;
     uint8_t reaches_path, below_end, contact_at_start;
+    uint8_t close;             /* none of these, but almost at its end floor */
 } rdli_hit;
 
 /* Counts of the narrow phase, summed over detections. */
@@ -48,7 +49,7 @@ struct rdl_engine {
     rdli_room touched;         /* N: moved off its proposed path in an earlier piece of this step */
     rdli_room start, proposed, piece_start, target, trial, certified, velocity; /* N x 3 doubles */
     rdli_room flags, indices, hits, chunk_counts;
-    size_t hit_count;
+    size_t hit_count, violation_count; /* of the hits, how many are not merely close */
     rdli_room contacts, merged;
     size_t contact_count;
     rdli_counts counts;
@@ -78,6 +79,7 @@ typedef struct rdli_look {
     const uint8_t *fixed;      /* vertices whose pairs among themselves are of no interest */
     const double *squeeze;     /* factor of the floors per vertex, or NULL = 1 */
     bool first_piece;          /* `from` is the start of the step */
+    bool wants_close;          /* list pairs, too, that end within a hundredth of their floor */
 } rdli_look;
 
 /* boxes -> pairs -> touches: fills engine->hits, sorted by (kind, first, second). Polls cancel. */

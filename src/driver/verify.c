@@ -41,7 +41,7 @@ rdl_status rdli_verify(rdl_engine *engine)
     const double (*at)[3] = engine->start.data;
     bool untouched = memcmp(engine->trial.data, engine->proposed.data, n * 3 * sizeof(double)) == 0;
     /* The pass loop's only detection was already this one. */
-    if (untouched && engine->passes == 1 && engine->hit_count == 0)
+    if (untouched && engine->passes == 1 && engine->violation_count == 0)
         return RDL_OK;
     double seconds[RDL_TIME_COUNT];
     memcpy(seconds, engine->seconds, sizeof seconds);
