@@ -2,6 +2,7 @@
  *   zones (advance.c) -> shorter pieces from the last certified state -> squeezed floors -> hold at the last certified state,
  * and every level is verified by detection on the rounded bits. */
 #include "base/rounding.h"
+#include "base/vector.h"
 #include "driver/engine.h"
 #include "driver/stages.h"
 
@@ -43,13 +44,19 @@ static void aim_piece(rdl_engine *engine, const course *c)
         }
 }
 
+/* Moved, or given an impulse: either way the proposed path is no longer its own. */
 static void mark_touched(rdl_engine *engine)
 {
     const double (*target)[3] = engine->target.data, (*trial)[3] = engine->trial.data;
+    const double (*start)[3] = engine->start.data, (*proposed)[3] = engine->proposed.data;
+    const double (*velocity)[3] = engine->velocity.data;
     uint8_t *touched = engine->touched.data;
-    for (uint32_t v = 0; v < engine->mesh.vertex_count; v++)
-        if (memcmp(target[v], trial[v], sizeof target[v]) != 0)
+    for (uint32_t v = 0; v < engine->mesh.vertex_count; v++) {
+        double meant[3];
+        rdli_subtract(proposed[v], start[v], meant);
+        if (memcmp(target[v], trial[v], sizeof target[v]) != 0 || memcmp(meant, velocity[v], sizeof meant) != 0)
             touched[v] = 1;
+    }
 }
 
 static rdl_status keep_waypoint(rdl_engine *engine, double time)
