@@ -1,5 +1,5 @@
-/* demo_stills.c: before and after. Before: where the integrator ends when it runs alone for a fifth of a second from a clean
- * state. After: the delivered state at the same moment. */
+/* demo_stills.c: before and after. Before: where the integrator ends when it runs alone for an eighth of a second from
+ * a clean state. After: the delivered state at the same moment. */
 #include "demo.h"
 
 #include <math.h>
@@ -11,7 +11,7 @@
 
 #include "picture.h"
 
-enum { ALONE = 5 /* at most */, WIDTH = 780, HEIGHT = 900 }; /* pictures that the host runs alone; size of a panel */
+enum { ALONE = 3 /* at most */, WIDTH = 780, HEIGHT = 900 }; /* pictures that the host runs alone; size of a panel */
 
 typedef struct moment {
     double share; /* of all pictures */
@@ -19,7 +19,7 @@ typedef struct moment {
 } moment;
 
 static const moment MOMENTS[DEMO_STILLS] = {{0.28, {{-1.0, -2.2, 1.25}, {0, 0, 0.47}, 0.51}},
-                                            {0.52, {{-1.0, -2.2, 1.25}, {0, 0, 0.47}, 0.51}},
+                                            {0.48, {{-1.0, -2.2, 1.25}, {0, 0, 0.47}, 0.51}},
                                             {0.78, {{-0.5, -1.35, 1.15}, {0, 0, 0.64}, 0.30}}};
 
 /* What happens at a time (s) of the story that demo_scene_direct tells. */
