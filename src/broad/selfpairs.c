@@ -3,7 +3,10 @@
 
 #include "broad/kernels.h"
 
-enum { CORNERS = 4 };
+enum {
+    CORNERS = 4,
+    BLOCK = 512 /* packs per task */
+};
 
 /* Pairs that are kept at once while they are sorted: 512 MiB. A step of a million elements has some twenty million. */
 static const size_t PAIRS_MAX = (size_t)1 << 27;
@@ -60,6 +63,25 @@ static unsigned corners_in_use(const uint32_t *corners, uint32_t count)
     return 1;
 }
 
+typedef struct corner_job {
+    const rdli_tree *tree;
+    const uint32_t *corners;
+    unsigned used;
+    uint32_t *to;
+} corner_job;
+
+static void corner_block(void *data, size_t block, unsigned worker)
+{
+    (void)worker;
+    const corner_job *job = data;
+    const size_t packs = job->tree->pack_count[0], end = (block + 1) * BLOCK < packs ? (block + 1) * BLOCK : packs;
+    uint32_t *to = job->to + block * BLOCK * RDLI_WIDE * job->used;
+    for (size_t p = block * BLOCK; p < end; p++)
+        for (unsigned c = 0; c < job->used; c++)
+            for (unsigned i = 0; i < RDLI_WIDE; i++)
+                *to++ = job->corners[(size_t)job->tree->order[p * RDLI_WIDE + i] * CORNERS + c];
+}
+
 static rdl_status set_corners(rdli_selfpairs *pairs, const uint32_t *corners)
 {
     rdli_side *side = &pairs->query.a;
@@ -68,16 +90,12 @@ static rdl_status set_corners(rdli_selfpairs *pairs, const uint32_t *corners)
     side->corner_count = corners == NULL ? 0 : corners_in_use(corners, tree->count);
     side->corners = NULL;
     if (corners != NULL && tree->count > 0) {
-        size_t packs = tree->pack_count[0];
-        unsigned used = side->corner_count;
-        if (!rdli_room_reserve(pairs->memory, &pairs->corner_room, packs * RDLI_WIDE * used, sizeof(uint32_t), false))
+        size_t packs = tree->pack_count[0], places = packs * RDLI_WIDE * side->corner_count;
+        if (!rdli_room_reserve(pairs->memory, &pairs->corner_room, places, sizeof(uint32_t), false))
             return RDL_NO_MEMORY;
-        uint32_t *to = pairs->corner_room.data;
-        for (size_t p = 0; p < packs; p++)
-            for (unsigned c = 0; c < used; c++)
-                for (unsigned i = 0; i < RDLI_WIDE; i++)
-                    *to++ = corners[(size_t)tree->order[p * RDLI_WIDE + i] * CORNERS + c];
-        side->corners = pairs->corner_room.data;
+        corner_job job = {tree, corners, side->corner_count, pairs->corner_room.data};
+        rdli_parallel_for(pairs->workers, (packs + BLOCK - 1) / BLOCK, corner_block, &job);
+        side->corners = job.to;
     }
     pairs->query.b = *side;
     return RDL_OK;

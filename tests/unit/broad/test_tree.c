@@ -307,6 +307,52 @@ START_TEST(test_bad_input)
 }
 END_TEST
 
+static int cancel_now(void *user)
+{
+    ledger *l = user;
+    return l->fail_at == SIZE_MAX; /* the ledger has no use for that number */
+}
+
+/* A cancelled search says so, and the tree serves afterwards. */
+START_TEST(test_cancel)
+{
+    const size_t count = 5000;
+    rdl_box *boxes = random_boxes(count, 0.1, 21);
+    ledger l = {0};
+    rdl_host host = ledger_host(&l, 1);
+    host.cancel = cancel_now;
+    rdl_tree *tree;
+    pair_list got = new_list();
+    ck_assert_int_eq(rdl_tree_create(boxes, count, &host, &tree, NULL), RDL_OK);
+    l.fail_at = SIZE_MAX;
+    ck_assert_int_eq(rdl_tree_self_pairs(tree, NULL, collect, &got), RDL_CANCELLED);
+    ck_assert_uint_eq(got.count, 0);
+    l.fail_at = 0;
+    check_tree(tree, 1, boxes, count, NULL);
+    rdl_tree_destroy(tree);
+    free_list(&got);
+    free(boxes);
+}
+END_TEST
+
+/* What docs/method/broad.md states: 49 bytes a box, and 16 for its row and 6 per pair once pairs were asked for. */
+START_TEST(test_bytes)
+{
+    const size_t count = 100000, fixed = 2000000;
+    rdl_box *boxes = random_boxes(count, 0.03, 2);
+    const rdl_host host = {.size = sizeof host, .threads = 1};
+    rdl_tree *tree;
+    pair_list got = new_list();
+    ck_assert_int_eq(rdl_tree_create(boxes, count, &host, &tree, NULL), RDL_OK);
+    ck_assert_uint_le(rdl_tree_bytes(tree), 49 * count + fixed);
+    ck_assert_int_eq(rdl_tree_self_pairs(tree, NULL, collect, &got), RDL_OK);
+    ck_assert_uint_le(rdl_tree_bytes(tree), (49 + 16) * count + 6 * got.count + fixed);
+    rdl_tree_destroy(tree);
+    free_list(&got);
+    free(boxes);
+}
+END_TEST
+
 /* Every allocation fails once: the same status, nothing lost, and the tree serves afterwards. */
 START_TEST(test_failing_memory)
 {
@@ -353,6 +399,8 @@ int main(void)
     tcase_add_test(all, test_closed);
     tcase_add_test(all, test_updates);
     tcase_add_test(all, test_bad_input);
+    tcase_add_test(all, test_cancel);
+    tcase_add_test(all, test_bytes);
     tcase_add_test(all, test_failing_memory);
     suite_add_tcase(suite, all);
     SRunner *runner = srunner_create(suite);
