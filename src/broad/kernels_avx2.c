@@ -3,7 +3,7 @@
 
 #ifdef RDLI_HAVE_AVX2
 #pragma GCC push_options
-#pragma GCC target("avx2,bmi,bmi2,popcnt,lzcnt")
+#pragma GCC target("avx2,bmi,popcnt")
 #include "broad/lanes_avx2.h"
 
 #include "broad/kernels_body.h"

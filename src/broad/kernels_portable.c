@@ -6,7 +6,7 @@
 const rdli_kernels *rdli_kernels_choose(bool vector)
 {
 #ifdef RDLI_HAVE_AVX2
-    if (vector && __builtin_cpu_supports("avx2") && __builtin_cpu_supports("bmi") && __builtin_cpu_supports("bmi2"))
+    if (vector && __builtin_cpu_supports("avx2") && __builtin_cpu_supports("bmi") && __builtin_cpu_supports("popcnt"))
         return &rdli_kernels_avx2;
 #else
     (void)vector;

@@ -62,11 +62,33 @@ static inline unsigned lanes_above(const uint32_t *eight, uint32_t value)
     return (unsigned)_mm256_movemask_ps(_mm256_castsi256_ps(above));
 }
 
-/* The places of the set bits of mask, lowest first: an extract of the bytes 0..7. */
+/* For every mask the places of its set bits, lowest first, a byte each. */
+#define BIT(m, i) ((uint64_t)((m) >> (i)) & 1)
+#define BELOW_2(m) (BIT(m, 0) + BIT(m, 1))
+#define BELOW_4(m) (BELOW_2(m) + BIT(m, 2) + BIT(m, 3))
+#define BELOW_6(m) (BELOW_4(m) + BIT(m, 4) + BIT(m, 5))
+#define PLACE(m, i, below) (BIT(m, i) * (uint64_t)(i) << 8 * (below))
+#define ENTRY(m)                                                                                                   \
+    (PLACE(m, 1, BIT(m, 0)) | PLACE(m, 2, BELOW_2(m)) | PLACE(m, 3, BELOW_2(m) + BIT(m, 2)) | PLACE(m, 4, BELOW_4(m)) | \
+     PLACE(m, 5, BELOW_4(m) + BIT(m, 4)) | PLACE(m, 6, BELOW_6(m)) | PLACE(m, 7, BELOW_6(m) + BIT(m, 6)))
+#define ENTRIES_4(m) ENTRY(m), ENTRY((m) + 1), ENTRY((m) + 2), ENTRY((m) + 3)
+#define ENTRIES_16(m) ENTRIES_4(m), ENTRIES_4((m) + 4), ENTRIES_4((m) + 8), ENTRIES_4((m) + 12)
+#define ENTRIES_64(m) ENTRIES_16(m), ENTRIES_16((m) + 16), ENTRIES_16((m) + 32), ENTRIES_16((m) + 48)
+static const uint64_t lanes_place_table[256] = {ENTRIES_64(0), ENTRIES_64(64), ENTRIES_64(128), ENTRIES_64(192)};
+#undef ENTRIES_64
+#undef ENTRIES_16
+#undef ENTRIES_4
+#undef ENTRY
+#undef PLACE
+#undef BELOW_6
+#undef BELOW_4
+#undef BELOW_2
+#undef BIT
+
+/* A table rather than pdep and pext: it is as fast where those are fast, and many processors do them in microcode. */
 static inline __m256i lanes_places(unsigned mask)
 {
-    uint64_t places = _pext_u64(0x0706050403020100u, _pdep_u64(mask, 0x0101010101010101u) * 0xFF);
-    return _mm256_cvtepu8_epi32(_mm_cvtsi64_si128((long long)places));
+    return _mm256_cvtepu8_epi32(_mm_loadl_epi64((const __m128i *)(const void *)&lanes_place_table[mask]));
 }
 
 static inline uint32_t *lanes_compress(uint32_t *to, const uint32_t *ids, unsigned mask)
