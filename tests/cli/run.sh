@@ -3,8 +3,8 @@
 # byte. Usage: run.sh RADDLE MAKE_SHOT [--update]     (--update writes the expected files anew: review the difference)
 set -u
 
-raddle=$1
-make_shot=$2
+raddle=$(realpath "$1")
+make_shot=$(realpath "$2")
 update=${3:-}
 here=$(CDPATH='' cd -- "$(dirname -- "$0")" && pwd)
 work=$(mktemp -d)
