@@ -33,6 +33,7 @@ static void mark_zone(rdl_engine *engine, const rdli_zone *zone, uint8_t level)
         contact->fenced |= level >= RDL_LEVEL_FENCE;
         contact->rigid |= level >= RDL_LEVEL_RIGID;
         contact->settled = 0;
+        contact->due = 1;
     }
 }
 
@@ -60,7 +61,7 @@ static bool wants_refinement(rdl_engine *engine, const rdli_piece *piece, rdli_z
     rdli_contact *contacts = engine->contacts.data;
     double (*certified)[3] = engine->certified.data;
     uint8_t least = UINT8_MAX;
-    bool frozen = false;
+    bool frozen = false, due = false;
     for (uint32_t i = 0; i < zone->vertex_count; i++)
         memcpy(certified[vertices[i]], piece->trial[vertices[i]], sizeof certified[0]);
     for (uint32_t i = 0; i < zone->contact_count; i++) {
@@ -71,10 +72,16 @@ static bool wants_refinement(rdl_engine *engine, const rdli_piece *piece, rdli_z
         contact->ahead = shorter_lead(contact->ahead, contact->floor);
         least = contact->clean < least ? contact->clean : least;
         frozen = frozen || contact->frozen;
+        due = due || contact->due;
+        contact->due = 0;
     }
+    if (due)
+        return true;
     if (zone->level < RDL_LEVEL_RIGID && rdli_zone_gains_energy(&engine->response, piece, contacts, zone)) {
         zone->level++;
         mark_zone(engine, zone, zone->level);
+        for (uint32_t i = 0; i < zone->contact_count; i++)
+            contacts[order[i]].due = 0; /* solved in this very pass */
         return true;
     }
     /* A zone that took long to certify is not put at risk again for a closer answer. */

@@ -34,6 +34,7 @@ typedef struct rdli_contact {
     uint8_t violated;         /* in the last detection */
     uint8_t blocks;           /* how often the path was found blocked, saturating; see kept */
     uint8_t fenced;           /* the zone fell back to the separating directions */
+    uint8_t due;              /* the zone was sent to another level and has not been solved there yet */
     uint8_t rigid;            /* the zone fell back to moving as one rigid body */
     uint8_t settled;          /* the zone's last solve changed nothing that matters */
     uint8_t relapsed;         /* violated after a clean detection, or new */
