@@ -28,7 +28,7 @@ static const host_yarn YARN = {.mass_per_length = 4.5e-4, .stretch = 1.0, .bendi
 #define HAND_FORCE 0.08        /* N, per held vertex */
 #define HANDS 4u
 #define HELD_EACH 6u           /* vertices in one hand: the six nearest a corner */
-#define START_HEIGHT 0.95      /* m */
+#define START_HEIGHT 1.05      /* m */
 
 /* ---- the cloth ---- */
 
@@ -231,7 +231,7 @@ demo_scene *demo_scene_create(const mesh *body, int small)
     scene->step = 1.0 / (DEMO_PICTURE_RATE * (double)scene->steps_per_picture);
     scene->h = host_create();
     if (scene->h)
-        scene->h->solver_tolerance = 3e-3; /* leaves about 1e-3 m/s: far less than contact corrects */
+        scene->h->solver_tolerance = 5e-3; /* leaves about 2e-3 m/s: far less than contact corrects */
     if (!scene->h || !build(scene, body, small ? &COARSE : &FINE)) {
         demo_scene_destroy(scene);
         return NULL;
@@ -274,10 +274,10 @@ static void turn(double q, const double in[3], double out[3])
 void demo_scene_direct(demo_scene *scene, double time)
 {
     host *h = scene->h;
-    double q = 0.70 * ease(time, 1.3, 2.6) - 1.10 * ease(time, 3.1, 4.7);
+    double q = 0.70 * ease(time, 1.75, 2.9) - 1.10 * ease(time, 3.2, 4.6);
     for (size_t i = 0; i < scene->body_count; i++)
         turn(q, scene->body_rest[i], h->target[scene->body_first + i]);
-    double lower = ease(time, 0.15, 1.15), drag = ease(time, 2.4, 3.1) - 2 * ease(time, 3.4, 4.2);
+    double lower = ease(time, 0.4, 1.5), drag = ease(time, 2.6, 3.2) - 2 * ease(time, 3.4, 4.2);
     for (size_t k = 0; k < scene->hand_count; k++) {
         host_pull *pull = &h->pulls[k];
         size_t hand = k / HELD_EACH;
@@ -285,7 +285,7 @@ void demo_scene_direct(demo_scene *scene, double time)
         const double *rest = scene->hand_rest[k];
         pull->target[0] = rest[0] * (1 - 0.30 * lower) + (aside ? 0.11 * drag : 0);
         pull->target[1] = rest[1] * (1 - 0.30 * lower);
-        pull->target[2] = rest[2] - 0.33 * lower + (aside ? 0.05 * drag * (hand ? 1 : -1) : 0);
-        pull->stiffness = time < (aside ? 4.4 : 1.25) ? HAND_STIFFNESS : 0;
+        pull->target[2] = rest[2] - 0.43 * lower + (aside ? 0.05 * drag * (hand ? 1 : -1) : 0);
+        pull->stiffness = time < (aside ? 4.4 : 1.6) ? HAND_STIFFNESS : 0;
     }
 }

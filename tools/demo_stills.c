@@ -18,8 +18,8 @@ typedef struct moment {
     picture_camera camera;
 } moment;
 
-static const moment MOMENTS[DEMO_STILLS] = {{0.28, {{-1.0, -2.2, 1.25}, {0, 0, 0.47}, 0.51}},
-                                            {0.48, {{-1.0, -2.2, 1.25}, {0, 0, 0.47}, 0.51}},
+static const moment MOMENTS[DEMO_STILLS] = {{0.37, {{-1.0, -2.2, 1.25}, {0, 0, 0.47}, 0.51}},
+                                            {0.53, {{-1.0, -2.2, 1.25}, {0, 0, 0.47}, 0.51}},
                                             {0.78, {{-0.5, -1.35, 1.15}, {0, 0, 0.64}, 0.30}}};
 
 /* What happens at a time (s) of the story that demo_scene_direct tells. */
@@ -28,9 +28,9 @@ static const char *title_at(double time)
     static const struct {
         double until;
         const char *title;
-    } story[] = {{0.9, "Hands lower the poncho over the head"},
-                 {1.6, "The poncho settles on the shoulders"},
-                 {2.55, "The figure turns under the cloth"},
+    } story[] = {{1.3, "Hands lower the poncho over the head"},
+                 {2.0, "The poncho settles on the shoulders"},
+                 {2.75, "The figure turns under the cloth"},
                  {4.45, "Two hands drag the cloth over the turning shoulders"}};
     for (size_t k = 0; k < sizeof story / sizeof story[0]; k++)
         if (time < story[k].until)

@@ -33,7 +33,7 @@ number() { # KEY: a number of the JSON object in out
     sed -n "s/^ *\"$1\": \([0-9.e+-]*\),*\$/\1/p" out
 }
 
-expect 'plays' code 0 demo --small --pictures 20 --threads 1 -o one.h5 --json
+expect 'plays' code 0 demo --small --pictures 32 --threads 1 -o one.h5 --json
 expect 'resolves steps' test "$(number resolved)" -gt 5
 expect 'corrects vertices' test "$(number moved)" -gt 20
 expect 'plays all steps' test "$(number frames)" -eq $(($(number clear) + $(number resolved)))
@@ -48,11 +48,11 @@ expect 'leaves the old file' cmp one.h5 before.h5
 expect 'refuses old stills too' code 2 demo --small -o new.h5
 expect 'and writes nothing then' test ! -e new.h5
 
-expect 'plays with two threads' code 0 demo --small --pictures 20 --threads 2 -o two.h5 --no-stills
+expect 'plays with two threads' code 0 demo --small --pictures 32 --threads 2 -o two.h5 --no-stills
 expect 'prints a table' grep -q 'steps resolved' out
 expect 'the same bits with two threads' cmp one.h5 two.h5
 
-expect 'plays alone' code 0 demo --small --pictures 20 --no-response -o alone.h5 --no-stills
+expect 'plays alone' code 0 demo --small --pictures 32 --no-response -o alone.h5 --no-stills
 expect 'which is not clean' code 1 check alone.h5
 
 expect 'no such body' code 2 demo --small --body nowhere.obj -o body.h5 --no-stills
