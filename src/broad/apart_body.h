@@ -1,4 +1,4 @@
-/* broad/apart_body.h: a certificate that a pair stays further apart than its gap, eight pairs at a time. Included by
+/* broad/apart_body.h: a certificate that a pair stays further apart than its gap, LANES_REALS pairs at a time. Included by
  * kernels_body.h.
  *
  * Let w, u, v be the frame of a pair, e = w + s u - r v (edges, 0 <= s, r <= 1) or e = w - b u - c v (point and triangle,
@@ -125,7 +125,7 @@ static inline unsigned sure_apart(const frame *start, const frame *end, lanes_re
            lanes_less(lanes_all(0x1p-100f), square);
 }
 
-/* Frames at the start (at = 0) or the end (4) of the step; b[c]: the members of the records of corner c, eight lanes. */
+/* Frames at the start (at = 0) or the end (4) of the step; b[c]: the members of the records of corner c. */
 static inline void frame_of_edges(const rdli_record *a, lanes_bits b[2][8], unsigned at, frame *f)
 {
     const int32_t *first = at == 0 ? a[0].start : a[0].end, *last = at == 0 ? a[1].start : a[1].end;
@@ -147,16 +147,16 @@ static inline void frame_of_triangle(const rdli_record *a, lanes_bits b[3][8], u
 }
 
 /* Leaves out of scratch->row what stays apart from the element with corners a[]; the number left. */
-static size_t drop_apart(const rdli_query *query, rdli_scratch *scratch, const uint32_t *a, size_t count)
+static __attribute__((noinline)) size_t drop_apart(const rdli_query *query, rdli_scratch *scratch, const uint32_t *a, size_t count)
 {
     const bool edges = query->self;
     const unsigned corners = edges ? 2 : 3;
     rdli_record own[2] = {query->records[a[0]], query->records[a[edges ? 1 : 0]]};
     float half = own[0].half > own[1].half ? own[0].half : own[1].half;
     uint32_t *to = scratch->row;
-    for (size_t i = count; i % RDLI_WIDE != 0; i++) /* the last lanes need something to look at */
+    for (size_t i = count; i % LANES_REALS != 0; i++) /* the last lanes need something to look at */
         scratch->row[i] = scratch->row[count - 1];
-    for (size_t at = 0; at < count; at += RDLI_WIDE) {
+    for (size_t at = 0; at < count; at += LANES_REALS) {
         lanes_bits b[3][8];
         lanes_real other = lanes_all(0.0f);
         frame start, end;
@@ -172,7 +172,7 @@ static size_t drop_apart(const rdli_query *query, rdli_scratch *scratch, const u
             frame_of_triangle(own, b, 4, &end);
         }
         unsigned keep = ~sure_apart(&start, &end, lanes_add(lanes_all(half), other), edges);
-        keep &= count - at < RDLI_WIDE ? (1u << (count - at)) - 1 : 0xFF;
+        keep &= count - at < LANES_REALS ? (1u << (count - at)) - 1 : (1u << LANES_REALS) - 1;
         to = lanes_compress(to, scratch->row + at, keep);
     }
     return (size_t)(to - scratch->row);

@@ -206,6 +206,7 @@ static inline void lanes_bound(const rdli_pack *pack, rdli_pack *above, unsigned
     }
 }
 
+enum { LANES_REALS = 8 };
 typedef __m256 lanes_real;
 
 static inline lanes_real lanes_add(lanes_real a, lanes_real b)

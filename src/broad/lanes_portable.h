@@ -146,70 +146,69 @@ static inline void lanes_bound(const rdli_pack *pack, rdli_pack *above, unsigned
     }
 }
 
-/* Eight floats. Minimum and maximum give the second operand where the comparison fails, also for NaN. */
-typedef struct lanes_real {
-    float v[RDLI_WIDE];
-} lanes_real;
+/* Floats are handled LANES_REALS at a time: one here, eight in AVX2. Minimum and maximum give the second operand where
+ * the comparison fails, also for NaN. */
+enum { LANES_REALS = 1 };
+typedef float lanes_real;
 
-#define LANES_OPERATION(name, expression)                              \
-    static inline lanes_real name(lanes_real a, lanes_real b)          \
-    {                                                                  \
-        lanes_real r;                                                  \
-        for (unsigned i = 0; i < RDLI_WIDE; i++)                       \
-            r.v[i] = expression;                                       \
-        return r;                                                      \
-    }
-LANES_OPERATION(lanes_add, a.v[i] + b.v[i])
-LANES_OPERATION(lanes_sub, a.v[i] - b.v[i])
-LANES_OPERATION(lanes_mul, a.v[i] * b.v[i])
-LANES_OPERATION(lanes_div, a.v[i] / b.v[i])
-LANES_OPERATION(lanes_min, a.v[i] < b.v[i] ? a.v[i] : b.v[i])
-LANES_OPERATION(lanes_max, a.v[i] > b.v[i] ? a.v[i] : b.v[i])
-#undef LANES_OPERATION
+static inline lanes_real lanes_add(lanes_real a, lanes_real b)
+{
+    return a + b;
+}
+
+static inline lanes_real lanes_sub(lanes_real a, lanes_real b)
+{
+    return a - b;
+}
+
+static inline lanes_real lanes_mul(lanes_real a, lanes_real b)
+{
+    return a * b;
+}
+
+static inline lanes_real lanes_div(lanes_real a, lanes_real b)
+{
+    return a / b;
+}
+
+static inline lanes_real lanes_min(lanes_real a, lanes_real b)
+{
+    return a < b ? a : b;
+}
+
+static inline lanes_real lanes_max(lanes_real a, lanes_real b)
+{
+    return a > b ? a : b;
+}
 
 static inline lanes_real lanes_all(float x)
 {
-    lanes_real r;
-    for (unsigned i = 0; i < RDLI_WIDE; i++)
-        r.v[i] = x;
-    return r;
+    return x;
 }
 
 static inline lanes_real lanes_abs(lanes_real a)
 {
-    for (unsigned i = 0; i < RDLI_WIDE; i++)
-        a.v[i] = fabsf(a.v[i]);
-    return a;
+    return fabsf(a);
 }
 
 /* Bit i: a < b in lane i. */
 static inline unsigned lanes_less(lanes_real a, lanes_real b)
 {
-    unsigned mask = 0;
-    for (unsigned i = 0; i < RDLI_WIDE; i++)
-        mask |= (unsigned)(a.v[i] < b.v[i]) << i;
-    return mask;
+    return a < b;
 }
 
 /* a < b ? x : y. */
 static inline lanes_real lanes_choose_less(lanes_real a, lanes_real b, lanes_real x, lanes_real y)
 {
-    for (unsigned i = 0; i < RDLI_WIDE; i++)
-        y.v[i] = a.v[i] < b.v[i] ? x.v[i] : y.v[i];
-    return y;
+    return a < b ? x : y;
 }
 
-/* Eight whole numbers, or eight floats as they lie in memory. */
-typedef struct lanes_bits {
-    int32_t v[RDLI_WIDE];
-} lanes_bits;
+/* Whole numbers, or floats as they lie in memory. */
+typedef int32_t lanes_bits;
 
 static inline lanes_bits lanes_same(int32_t x)
 {
-    lanes_bits r;
-    for (unsigned i = 0; i < RDLI_WIDE; i++)
-        r.v[i] = x;
-    return r;
+    return x;
 }
 
 static inline lanes_real lanes_as_real(lanes_bits bits)
@@ -222,22 +221,14 @@ static inline lanes_real lanes_as_real(lanes_bits bits)
 /* a - b as floats. */
 static inline lanes_real lanes_difference(lanes_bits a, lanes_bits b)
 {
-    lanes_real r;
-    for (unsigned i = 0; i < RDLI_WIDE; i++)
-        r.v[i] = (float)(a.v[i] - b.v[i]);
-    return r;
+    return (float)(a - b);
 }
 
 /* The eight members of the records of vertices[stride * ids[i]], turned so that lane i belongs to ids[i]. */
 static inline void lanes_records(const rdli_record *records, const uint32_t *vertices, size_t stride, const uint32_t *ids,
                                  lanes_bits members[8])
 {
-    for (unsigned i = 0; i < RDLI_WIDE; i++) {
-        int32_t row[8];
-        memcpy(row, &records[vertices[stride * ids[i]]], sizeof row);
-        for (unsigned k = 0; k < 8; k++)
-            members[k].v[i] = row[k];
-    }
+    memcpy(members, &records[vertices[stride * ids[0]]], 8 * sizeof(lanes_bits));
 }
 
 /* Sorts `count` <= LANES_RANKED distinct ids below 2^31; 31 more places behind them are read. */
