@@ -50,7 +50,10 @@ struct demo_stills {
 
 size_t demo_still_path(const demo_options *options, int k, char path[], size_t path_size)
 {
-    return (size_t)snprintf(path, path_size, "%s/demo-still-%d.png", options->folder, k + 1);
+    const char *slash = strrchr(options->shot, '/'), *name = slash ? slash + 1 : options->shot;
+    const char *dot = strrchr(name, '.');
+    int length = dot && dot != name && dot - name < 200 ? (int)(dot - name) : 200; /* the shot's name without its ending */
+    return (size_t)snprintf(path, path_size, "%s/%.*s-still-%d.png", options->folder, length, name, k + 1);
 }
 
 demo_stills *demo_stills_begin(demo_scene *scene, const rdl_scene *described, const demo_options *options)

@@ -37,7 +37,7 @@ expect 'plays' code 0 demo --small --pictures 32 --threads 1 -o one.h5 --json
 expect 'resolves steps' test "$(number resolved)" -gt 5
 expect 'corrects vertices' test "$(number moved)" -gt 20
 expect 'plays all steps' test "$(number frames)" -eq $(($(number clear) + $(number resolved)))
-expect 'draws three stills' test -s demo-still-1.png -a -s demo-still-2.png -a -s demo-still-3.png
+expect 'draws three stills' test -s one-still-1.png -a -s one-still-2.png -a -s one-still-3.png
 expect 'leaves nothing unfinished' test "$(find . -name '*.part' | wc -l)" -eq 0
 expect 'its shot is clean' code 0 check one.h5
 
@@ -45,6 +45,7 @@ cp one.h5 before.h5
 expect 'refuses to overwrite' code 2 demo --small -o one.h5 --no-stills
 expect 'says so in one line' test "$(wc -l <err)" -eq 1
 expect 'leaves the old file' cmp one.h5 before.h5
+touch new-still-2.png
 expect 'refuses old stills too' code 2 demo --small -o new.h5
 expect 'and writes nothing then' test ! -e new.h5
 
