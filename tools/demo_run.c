@@ -118,7 +118,7 @@ static rdl_status play_step(player *p, double time, uint32_t picture)
                             .start = h->position[0], .proposed = h->proposed[0], .delivered = p->delivered[0],
                             .waypoint_count = report.waypoint_count, .waypoint_times = report.waypoint_times,
                             .waypoint_positions = report.waypoint_positions,
-                            .memory = p->memory, .memory_bytes = p->memory_bytes};
+                            .memory = p->memory, .memory_bytes = p->memory_bytes, .duration = h_step};
     p->doing = p->options->shot;
     status = rdl_shot_append(p->writer, &frame, &p->fault);
     p->result->shot_seconds += cli_clock() - begin;

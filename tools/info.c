@@ -30,7 +30,7 @@ static const struct {
 } contents[] = {
     {RDL_SHOT_START, "start"},     {RDL_SHOT_PROPOSED, "proposed"},   {RDL_SHOT_DELIVERED, "delivered"},
     {RDL_SHOT_VERDICT, "verdict"}, {RDL_SHOT_WAYPOINTS, "waypoints"}, {RDL_SHOT_MEMORY, "memory"},
-    {RDL_SHOT_PICTURE, "picture"},
+    {RDL_SHOT_PICTURE, "picture"}, {RDL_SHOT_RULES, "rules"},
 };
 
 enum { CONTENTS = sizeof contents / sizeof contents[0] };

@@ -123,7 +123,6 @@ static void add_report(resolver *r, size_t frame, const rdl_report *report)
 static rdl_status find_duration(resolver *r, size_t k, double time, double *duration, rdl_fault *fault)
 {
     double length = k > 0 ? time - r->last_time : 0;
-    r->last_time = time;
     if (k == 0 && r->about->frame_count > 1 && r->step_seconds == 0) {
         rdl_shot_frame next;
         rdl_status status = rdl_shot_read_frame(r->shot, 1, &next, fault);
@@ -131,7 +130,7 @@ static rdl_status find_duration(resolver *r, size_t k, double time, double *dura
             return status;
         length = next.time - time;
     }
-    *duration = r->step_seconds > 0 ? r->step_seconds : length > 0 && isfinite(length) ? length : 1.0 / 24;
+    *duration = length > 0 && isfinite(length) ? length : 1.0 / 24;
     return RDL_OK;
 }
 
@@ -149,10 +148,12 @@ static rdl_status read_memory(resolver *r, size_t *bytes)
     return status == RDL_OK && *bytes > 0 ? rdl_engine_memory_read(r->engine, r->memory, bytes) : status;
 }
 
-static rdl_status do_step(resolver *r, double duration, rdl_report *report, rdl_fault *fault)
+static rdl_status do_step(resolver *r, const rdl_shot_frame *rules, rdl_report *report, rdl_fault *fault)
 {
     bool narrow = r->about->host_bits == RDL_FLOAT32;
-    rdl_step step = {.size = sizeof step, .duration = duration};
+    rdl_step step = {.size = sizeof step, .duration = rules->duration, .mass = rules->mass,
+                     .muted_count = rules->muted_count, .muted_parts = rules->muted_parts,
+                     .seconds_max = rules->seconds_max, .passes_max = rules->passes_max};
     step.start = (rdl_view){r->start, 0, RDL_FLOAT64};
     step.proposed = (rdl_view){r->proposed, 0, RDL_FLOAT64};
     step.delivered =
@@ -169,7 +170,6 @@ static rdl_status do_frame(resolver *r, size_t k, const char **file, rdl_fault *
 {
     rdl_report report;
     rdl_shot_frame frame;
-    double duration = 0;
     *file = r->path;
     rdl_status status = rdl_shot_read_positions(r->shot, k, RDL_SHOT_START, r->start, fault);
     if (status == RDL_OK)
@@ -178,19 +178,32 @@ static rdl_status do_frame(resolver *r, size_t k, const char **file, rdl_fault *
         status = rdl_shot_read_frame(r->shot, k, &frame, fault);
     if (status != RDL_OK)
         return status;
+    double duration = r->step_seconds > 0 ? r->step_seconds : frame.duration;
+    if (!(duration > 0))
+        status = find_duration(r, k, frame.time, &duration, fault);
+    r->last_time = frame.time;
+    if (status == RDL_OK) /* again, since looking for the duration may have read another frame */
+        status = rdl_shot_read_frame(r->shot, k, &frame, fault);
+    if (status != RDL_OK)
+        return status;
     rdl_shot_frame out = {.time = frame.time,
                           .picture = frame.picture,
                           .start = r->start,
                           .proposed = r->proposed,
-                          .delivered = r->delivered};
-    status = find_duration(r, k, frame.time, &duration, fault);
+                          .delivered = r->delivered,
+                          .duration = duration,
+                          .seconds_max = frame.seconds_max,
+                          .passes_max = frame.passes_max,
+                          .mass = frame.mass,
+                          .muted_count = frame.muted_count,
+                          .muted_parts = frame.muted_parts};
     if (status == RDL_OK &&
         (k == 0 || memcmp(r->start, r->delivered, 3 * r->scene->vertex_count * sizeof(double)) != 0))
         status = rdl_engine_reset(r->engine);
     if (status == RDL_OK)
         status = read_memory(r, &out.memory_bytes);
     if (status == RDL_OK)
-        status = do_step(r, duration, &report, fault);
+        status = do_step(r, &out, &report, fault);
     if (status != RDL_OK)
         return status;
     add_report(r, k, &report);

@@ -31,7 +31,8 @@ enum { /* which per-frame datasets the shot holds */
        RDL_SHOT_WAYPOINTS = 16,
        RDL_SHOT_MEMORY = 32,
        RDL_SHOT_PICTURE = 64,
-       RDL_SHOT_STEP = 127 /* all of the above: what a recording of engine steps holds */
+       RDL_SHOT_RULES = 128, /* what else the host told each step: duration, limits, masses, muting */
+       RDL_SHOT_STEP = 255 /* all of the above: what a recording of engine steps holds */
 };
 
 typedef struct rdl_shot_options {
@@ -55,6 +56,12 @@ typedef struct rdl_shot_frame {
     const double *waypoint_times, *waypoint_positions;
     const void *memory;
     size_t memory_bytes;
+    /* As in rdl_step. duration 0: not said, the times tell; mass NULL: the scene's. */
+    double duration, seconds_max;
+    uint64_t passes_max;
+    const double *mass;
+    size_t muted_count;
+    const uint32_t (*muted_parts)[2];
 } rdl_shot_frame;
 
 RDL_API void rdl_shot_options_default(rdl_shot_options *options);
@@ -110,9 +117,21 @@ RDL_API const rdl_shot_info *rdl_shot_describe(const rdl_shot *shot);
  * RDL_OUT_OF_RANGE (no such frame), RDL_BAD_FILE, RDL_NO_MEMORY. */
 RDL_API rdl_status rdl_shot_read_positions(rdl_shot *shot, size_t frame, unsigned which, double *positions,
                                            rdl_fault *fault);
-/* The rest of a frame: time, picture, verdict, way-points, memory. Pointers are owned by the shot until its next call;
+/* The rest of a frame: time, picture, verdict, way-points, memory, rules. Pointers are owned by the shot until its next call;
  * start, proposed, delivered are NULL. */
 RDL_API rdl_status rdl_shot_read_frame(rdl_shot *shot, size_t frame, rdl_shot_frame *out, rdl_fault *fault);
+
+/* ---- traces: what the stages of a frame's step did, in the shot's own group /trace ---- */
+
+struct rdl_event; /* raddle/watch.h */
+/* Puts the events of a frame into the shot PATH, in place of older ones. The file is copied, and replaced when the copy
+ * is complete. note: UTF-8, kept with them. Errors: those of rdl_shot_open, RDL_OUT_OF_RANGE (no such frame),
+ * RDL_BAD_ARGUMENT (PATH ends in .part), RDL_WRITE_FAILED. */
+RDL_API rdl_status rdl_shot_trace_write(const char *path, size_t frame, const struct rdl_event *events, size_t count,
+                                        const char *note, rdl_fault *fault);
+/* *events: owned by the shot until its next call of this kind; *count 0 where the frame has no trace. */
+RDL_API rdl_status rdl_shot_trace_read(rdl_shot *shot, size_t frame, const struct rdl_event **events, size_t *count,
+                                       rdl_fault *fault);
 
 /* SHA-256 (FIPS 180-4) over N x 3 positions as little-endian values of the host's format, row-major. */
 RDL_API void rdl_shot_digest(const double *positions, size_t vertex_count, int host_bits, uint8_t digest[32]);

@@ -3,6 +3,7 @@
 
 #include "api/settings.h"
 #include "driver/create.h"
+#include "driver/watch.h"
 
 static rdl_status bad(rdl_fault *fault, const char *field)
 {
@@ -68,6 +69,8 @@ static rdl_status run_step(rdl_engine *engine, const rdl_step *step, rdl_report 
     if (status == RDL_OK && overlaps(step, engine->scene.mesh.vertex_count))
         status = bad(fault, "delivered");
     if (status == RDL_OK)
+        status = rdli_watch_begin(engine);
+    if (status == RDL_OK)
         status = rdli_step_run(engine, step, &verdict);
     if (status != RDL_OK)
         return status;
@@ -75,6 +78,11 @@ static rdl_status run_step(rdl_engine *engine, const rdl_step *step, rdl_report 
     engine->seconds[RDL_TIME_TOTAL] = rdli_now() - begun;
     if (report != NULL)
         rdli_report_fill(engine, verdict, report);
+    if (engine->watch_count > 0) {
+        rdl_report full = {.size = sizeof full};
+        rdli_report_fill(engine, verdict, &full);
+        rdli_watch_stepped(engine, step, &full);
+    }
     return RDL_OK;
 }
 

@@ -1,5 +1,6 @@
 /* driver/advance.c: the one loop: detect, join, solve, detect again what moved. */
 #include "driver/engine.h"
+#include "driver/watch.h"
 
 /* Shares of the pass limit after which a zone that is still violated falls back to separating directions, and one
  * without driven vertices to a rigid body. The first level settles ordinary zones in a few passes; the fence needs passes
@@ -229,6 +230,8 @@ rdl_status rdli_advance(rdl_engine *engine, const rdli_piece *piece, bool first_
         }
         if (status == RDL_OK)
             status = rdli_zones_gather(&engine->response, piece, engine->contacts.data, engine->contact_count);
+        if (status == RDL_OK)
+            rdli_watch_zones(engine);
         if (status != RDL_OK || pass == passes_max || !hopeful)
             return status;
         if (pass == 0 && piece->long_piece && goes_deep(engine))

@@ -1,6 +1,7 @@
 /* driver/detect.c: boxes -> candidate pairs -> touches, in parallel and in a fixed order. */
 #include "bounds/bounds.h"
 #include "driver/engine.h"
+#include "driver/watch.h"
 
 enum { CHUNK = 512 }; /* pairs per task: enough to hide the hand-out, few enough to share evenly */
 
@@ -245,5 +246,8 @@ rdl_status rdli_detect(rdl_engine *engine, const rdli_look *look)
     engine->seconds[RDL_TIME_BOXES] += boxed - begun;
     engine->seconds[RDL_TIME_PAIRS] += paired - boxed;
     engine->seconds[RDL_TIME_TOUCHES] += rdli_now() - paired;
+    if (status == RDL_OK)
+        rdli_watch_detection(engine, &s.pairs);
+    engine->watch_detections++;
     return status;
 }

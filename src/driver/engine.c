@@ -86,7 +86,8 @@ void rdli_engine_destroy(rdl_engine *engine)
         &engine->start, &engine->proposed, &engine->piece_start, &engine->target, &engine->trial, &engine->certified, &engine->velocity,
         &engine->impulses, &engine->last, &engine->flags, &engine->indices, &engine->hits, &engine->chunk_counts,
         &engine->contacts, &engine->merged, &engine->waypoint_times, &engine->waypoint_positions, &engine->out_contacts,
-        &engine->out_zones, &engine->named, &engine->held, &engine->impulse, &engine->crossings };
+        &engine->out_zones, &engine->named, &engine->held, &engine->impulse, &engine->crossings,
+        &engine->watches, &engine->watch_memory };
     if (engine->response.memory != NULL)
         rdli_response_release(&engine->response);
     if (engine->broad != NULL)

@@ -10,6 +10,7 @@
 #include "intake/intake.h"
 #include "narrow/narrow.h"
 #include "raddle/engine.h"
+#include "raddle/watch.h"
 #include "response/response.h"
 
 /* A pair that the narrow phase could not call apart. */
@@ -66,6 +67,11 @@ struct rdl_engine {
     size_t crossing_count;
     rdli_room last;            /* delivered bits of the last step, known to be free of intersections where known is true */
     bool known;
+    /* watches: see driver/watch.h */
+    rdli_room watches, watch_memory;
+    size_t watch_count, watch_memory_bytes;
+    uint64_t watch_detections; /* in this step so far */
+    bool watch_events;         /* some watch wants events */
 };
 
 /* The four vertices of a pair, in the order of query.h. */

@@ -5,6 +5,7 @@
 #include "base/vector.h"
 #include "driver/engine.h"
 #include "driver/stages.h"
+#include "driver/watch.h"
 
 /* The shortest piece. Below 1/64 of a step a piece moves driven vertices so little that a zone fails for want of room, not
  * for want of time resolution (common practice: hosts take 1 to 10 steps a picture). */
@@ -147,6 +148,7 @@ static rdl_status accept_piece(rdl_engine *engine, course *c, const rdli_piece *
     if (status != RDL_OK)
         return status;
     mark_touched(engine);
+    rdli_watch_piece(engine, RDL_PIECE_ACCEPTED, end, c->length);
     c->reached = end;
     c->first = false;
     c->length = fmin(2.0 * c->length, 1.0 - end);
@@ -160,10 +162,13 @@ static rdl_status retreat(rdl_engine *engine, course *c, const rdli_piece *piece
     c->failures++;
     bool spent = engine->attempts >= budget;
     if (!spent && c->length > piece_min) {
+        rdli_watch_piece(engine, RDL_PIECE_SHORTENED, c->reached, c->length);
         c->length *= 0.5;
         return RDL_OK;
     }
-    if (engine->attempts < 2 * budget + 16)
+    bool held = engine->attempts >= 2 * budget + 16;
+    rdli_watch_piece(engine, held ? RDL_PIECE_HELD : RDL_PIECE_GIVES_WAY, c->reached, c->length);
+    if (!held)
         return give_way(engine, piece, c->first, spent);
     hold_everything(engine);
     return RDL_OK;

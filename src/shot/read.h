@@ -23,6 +23,9 @@ enum { /* what a shot keeps in memory */
        RDLI_ROOM_WAYPOINT_TIMES,
        RDLI_ROOM_WAYPOINT_POSITIONS,
        RDLI_ROOM_MEMORY,
+       RDLI_ROOM_STEP_MASS,
+       RDLI_ROOM_STEP_MUTED,
+       RDLI_ROOM_TRACE,
        RDLI_ROOM_CREATED_BY,
        RDLI_ROOM_ENGINE_VERSION,
        RDLI_ROOM_UNKNOWN_SETTING,
@@ -88,5 +91,10 @@ rdl_status rdli_frames_count(rdl_shot *shot, rdl_fault *fault);
 /* The engine's memory: which form the file has, and one frame's block. */
 rdl_status rdli_memory_find(rdl_shot *shot, rdl_fault *fault);
 rdl_status rdli_memory_read(rdl_shot *shot, size_t frame, rdl_shot_frame *out, rdl_fault *fault);
+/* What the host told one step. */
+rdl_status rdli_rules_read(rdl_shot *shot, size_t frame, rdl_shot_frame *out, rdl_fault *fault);
+/* Rows of a dataset of /frames that is there. */
+rdl_status rdli_item_read(rdl_shot *shot, rdli_set which, uint64_t first, uint64_t count, void *data,
+                          rdl_fault *fault);
 
 #endif

@@ -17,7 +17,7 @@ static H5T_class_t item_class(rdli_item item)
 static rdl_status open_set(rdl_shot *shot, size_t which, rdl_fault *fault)
 {
     const rdli_set_plan *set = &rdli_set_plans[which];
-    uint64_t tail[2] = {set->rank == 2 ? 32 : set->rank == 3 ? shot->scene.vertex_count : 0, set->rank == 3 ? 3 : 0};
+    uint64_t tail[2] = {set->rank > 1 ? rdli_set_width(set, shot->scene.vertex_count) : 0, set->rank == 3 ? 3 : 0};
     rdli_table table;
     rdl_status status =
         rdli_table_open(shot, "frames", set->name, set->field, item_class(set->item), set->rank, tail, &table, fault);
@@ -50,6 +50,10 @@ static rdl_status check_company(rdl_shot *shot, rdl_fault *fault)
     bool first = has(shot, RDLI_SET_WAYPOINT_FIRST);
     if (first != has(shot, RDLI_SET_WAYPOINT_TIME) || first != has(shot, RDLI_SET_WAYPOINT_POSITION))
         return rdli_fault_set(fault, RDL_BAD_FILE, "frames/waypoint_first", 0);
+    if (has(shot, RDLI_SET_MASS_FIRST) != has(shot, RDLI_SET_MASS))
+        return rdli_fault_set(fault, RDL_BAD_FILE, "frames/mass_first", 0);
+    if (has(shot, RDLI_SET_MUTED_FIRST) != has(shot, RDLI_SET_MUTED_PARTS))
+        return rdli_fault_set(fault, RDL_BAD_FILE, "frames/muted_first", 0);
     return rdli_memory_find(shot, fault);
 }
 
@@ -87,8 +91,8 @@ rdl_status rdli_frames_open(rdl_shot *shot, rdl_fault *fault)
     return status == RDL_OK ? read_marks(shot, fault) : status;
 }
 
-static rdl_status read_item(rdl_shot *shot, rdli_set which, uint64_t first, uint64_t count, void *data,
-                            rdl_fault *fault)
+rdl_status rdli_item_read(rdl_shot *shot, rdli_set which, uint64_t first, uint64_t count, void *data,
+                          rdl_fault *fault)
 {
     hid_t type = rdli_item_memory_type(rdli_set_plans[which].item);
     if (type < 0)
@@ -108,13 +112,13 @@ static rdl_status check_finite(const double *positions, size_t vertices, const c
 
 static rdl_status read_positions(rdl_shot *shot, size_t frame, rdli_set which, double *positions, rdl_fault *fault)
 {
-    rdl_status status = read_item(shot, which, frame, 1, positions, fault);
+    rdl_status status = rdli_item_read(shot, which, frame, 1, positions, fault);
     if (status == RDL_OK)
         status = check_finite(positions, shot->scene.vertex_count, rdli_set_plans[which].field, fault);
     if (status != RDL_OK || which != RDLI_SET_DELIVERED || !has(shot, RDLI_SET_DIGEST))
         return status;
     uint8_t stored[32], computed[32];
-    status = read_item(shot, RDLI_SET_DIGEST, frame, 1, stored, fault);
+    status = rdli_item_read(shot, RDLI_SET_DIGEST, frame, 1, stored, fault);
     if (status != RDL_OK)
         return status;
     rdl_shot_digest(positions, shot->scene.vertex_count, shot->info.host_bits, computed);
@@ -126,7 +130,7 @@ static rdl_status read_positions(rdl_shot *shot, size_t frame, rdli_set which, d
 static rdl_status read_waypoints(rdl_shot *shot, size_t frame, rdl_shot_frame *out, rdl_fault *fault)
 {
     uint64_t fence[2] = {0, 0};
-    rdl_status status = read_item(shot, RDLI_SET_WAYPOINT_FIRST, frame, 2, fence, fault);
+    rdl_status status = rdli_item_read(shot, RDLI_SET_WAYPOINT_FIRST, frame, 2, fence, fault);
     if (status != RDL_OK)
         return status;
     uint64_t count = fence[1] - fence[0];
@@ -140,9 +144,9 @@ static rdl_status read_waypoints(rdl_shot *shot, size_t frame, rdl_shot_frame *o
     if (!rdli_room_reserve(&shot->memory, times, count, sizeof(double), false) ||
         !rdli_room_reserve(&shot->memory, places, count, state, false))
         return RDL_NO_MEMORY;
-    status = read_item(shot, RDLI_SET_WAYPOINT_TIME, fence[0], count, times->data, fault);
+    status = rdli_item_read(shot, RDLI_SET_WAYPOINT_TIME, fence[0], count, times->data, fault);
     if (status == RDL_OK)
-        status = read_item(shot, RDLI_SET_WAYPOINT_POSITION, fence[0], count, places->data, fault);
+        status = rdli_item_read(shot, RDLI_SET_WAYPOINT_POSITION, fence[0], count, places->data, fault);
     if (status == RDL_OK)
         status =
             check_finite(places->data, shot->scene.vertex_count * (size_t)count, "frames/waypoint_position", fault);
@@ -163,19 +167,21 @@ static rdl_status read_frame(rdl_shot *shot, size_t frame, rdl_shot_frame *out, 
     rdl_status status = RDL_OK;
     rdl_shot_frame read = {.time = (double)frame, .picture = (uint32_t)frame};
     if (has(shot, RDLI_SET_TIME))
-        status = read_item(shot, RDLI_SET_TIME, frame, 1, &read.time, fault);
+        status = rdli_item_read(shot, RDLI_SET_TIME, frame, 1, &read.time, fault);
     if (status == RDL_OK && !isfinite(read.time))
         status = rdli_fault_set(fault, RDL_NOT_FINITE, "frames/time", frame);
     if (status == RDL_OK && has(shot, RDLI_SET_PICTURE))
-        status = read_item(shot, RDLI_SET_PICTURE, frame, 1, &read.picture, fault);
+        status = rdli_item_read(shot, RDLI_SET_PICTURE, frame, 1, &read.picture, fault);
     if (status == RDL_OK && has(shot, RDLI_SET_VERDICT))
-        status = read_item(shot, RDLI_SET_VERDICT, frame, 1, &read.verdict, fault);
+        status = rdli_item_read(shot, RDLI_SET_VERDICT, frame, 1, &read.verdict, fault);
     if (status == RDL_OK && read.verdict > 3)
         status = rdli_fault_set(fault, RDL_OUT_OF_RANGE, "frames/verdict", frame);
     if (status == RDL_OK && has(shot, RDLI_SET_WAYPOINT_FIRST))
         status = read_waypoints(shot, frame, &read, fault);
     if (status == RDL_OK && has(shot, RDLI_SET_MEMORY))
         status = rdli_memory_read(shot, frame, &read, fault);
+    if (status == RDL_OK)
+        status = rdli_rules_read(shot, frame, &read, fault);
     if (status == RDL_OK)
         *out = read;
     return status;

@@ -14,7 +14,7 @@ struct rdl_shot_writer {
     uint64_t rows[RDLI_SET_COUNT];
     char *path, *part; /* NAME and NAME.part */
     size_t path_bytes, part_bytes;
-    size_t vertex_count;
+    size_t vertex_count, part_count;
     unsigned contents;
     int host_bits, deflate;
     bool overwrite;

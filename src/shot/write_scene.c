@@ -208,7 +208,7 @@ static bool set_fill(hid_t plan, rdli_item item)
 static bool make_set(rdl_shot_writer *writer, hid_t group, const rdli_set_plan *set)
 {
     enum { BYTES_PER_CHUNK = 4096 };
-    hsize_t tail = set->rank == 2 ? 32 : writer->vertex_count;
+    hsize_t tail = rdli_set_width(set, writer->vertex_count);
     hsize_t dims[3] = {0, tail, 3}, limit[3] = {H5S_UNLIMITED, tail, 3}, chunk[3] = {1, tail, 3};
     if (set->rows == RDLI_ROWS_BYTES)
         chunk[0] = BYTES_PER_CHUNK;

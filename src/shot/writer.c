@@ -58,7 +58,7 @@ static bool close_file(rdl_shot_writer *writer)
     return !writer->broken;
 }
 
-static rdl_shot_writer *new_writer(const char *path, size_t vertex_count, const rdl_shot_options *options)
+static rdl_shot_writer *new_writer(const char *path, const rdl_scene *scene, const rdl_shot_options *options)
 {
     rdli_memory memory;
     if (rdli_memory_init(&memory, NULL) != RDL_OK)
@@ -76,7 +76,8 @@ static rdl_shot_writer *new_writer(const char *path, size_t vertex_count, const 
     writer->part_bytes = writer->path_bytes + strlen(".part");
     writer->path = rdli_take(&writer->memory, writer->path_bytes, 1);
     writer->part = rdli_take(&writer->memory, writer->part_bytes, 1);
-    writer->vertex_count = vertex_count;
+    writer->vertex_count = scene->vertex_count;
+    writer->part_count = scene->part_count;
     writer->contents = options->contents;
     writer->host_bits = options->host_bits;
     writer->deflate = options->deflate;
@@ -131,7 +132,7 @@ static bool add_rows(rdl_shot_writer *writer, rdli_set which, uint64_t count, ui
     hid_t id = writer->sets[which];
     if (id < 0 || count == 0)
         return true;
-    hsize_t tail = set->rank == 2 ? 32 : writer->vertex_count;
+    hsize_t tail = rdli_set_width(set, writer->vertex_count);
     hsize_t dims[3] = {writer->rows[which] + count, tail, 3};
     hsize_t start[3] = {dims[0] - filled, 0, 0}, block[3] = {filled, tail, 3};
     bool done = H5Dset_extent(id, dims) >= 0;
@@ -160,7 +161,8 @@ static bool begin_file(rdl_shot_writer *writer, const rdl_scene *scene, const rd
     return writer->file >= 0 && rdli_write_scene(writer, scene, options) && rdli_write_frame_sets(writer) &&
            H5Fflush(writer->file, H5F_SCOPE_LOCAL) >= 0 && !writer->broken && /* what follows reads the file back */
            H5Fstart_swmr_write(writer->file) >= 0 && open_sets(writer) &&
-           add_rows(writer, RDLI_SET_WAYPOINT_FIRST, 1, 1, &zero) && H5Fflush(writer->file, H5F_SCOPE_LOCAL) >= 0;
+           add_rows(writer, RDLI_SET_WAYPOINT_FIRST, 1, 1, &zero) &&
+           add_rows(writer, RDLI_SET_MASS_FIRST, 1, 1, &zero) && add_rows(writer, RDLI_SET_MUTED_FIRST, 1, 1, &zero) && H5Fflush(writer->file, H5F_SCOPE_LOCAL) >= 0;
 }
 
 rdl_status rdl_shot_create(const char *path, const rdl_scene *scene, const rdl_shot_options *options,
@@ -182,7 +184,7 @@ rdl_status rdl_shot_create(const char *path, const rdl_scene *scene, const rdl_s
         return status;
     if (!options->overwrite && rdli_publish_exists(path))
         return rdli_fault_set(fault, RDL_FILE_EXISTS, "file", 0);
-    rdl_shot_writer *made = new_writer(path, scene->vertex_count, options);
+    rdl_shot_writer *made = new_writer(path, scene, options);
     if (made == NULL)
         return RDL_NO_MEMORY;
     status = rdli_publish_claim(made->part, made->overwrite);
@@ -227,6 +229,25 @@ static rdl_status check_delivered_format(const rdl_shot_writer *writer, const rd
     return RDL_OK;
 }
 
+static rdl_status check_rules(const rdl_shot_writer *writer, const rdl_shot_frame *frame, rdl_fault *fault)
+{
+    if ((writer->contents & RDL_SHOT_RULES) == 0)
+        return RDL_OK;
+    if (!isfinite(frame->duration) || !isfinite(frame->seconds_max))
+        return rdli_fault_set(fault, RDL_NOT_FINITE, "frames/duration", writer->rows[RDLI_SET_TIME]);
+    if (frame->duration < 0 || frame->seconds_max < 0)
+        return rdli_fault_set(fault, RDL_OUT_OF_RANGE, "frames/duration", writer->rows[RDLI_SET_TIME]);
+    for (size_t v = 0; frame->mass != NULL && v < writer->vertex_count; v++)
+        if (!(frame->mass[v] > 0))
+            return rdli_fault_set(fault, RDL_BAD_MASS, "frames/mass", v);
+    if (frame->muted_count > 0 && frame->muted_parts == NULL)
+        return rdli_fault_set(fault, RDL_BAD_ARGUMENT, "frames/muted_parts", 0);
+    for (size_t k = 0; k < frame->muted_count; k++)
+        if (frame->muted_parts[k][0] >= writer->part_count || frame->muted_parts[k][1] >= writer->part_count)
+            return rdli_fault_set(fault, RDL_OUT_OF_RANGE, "frames/muted_parts", k);
+    return RDL_OK;
+}
+
 static rdl_status check_frame(const rdl_shot_writer *writer, const rdl_shot_frame *frame, rdl_fault *fault)
 {
     unsigned contents = writer->contents;
@@ -236,7 +257,9 @@ static rdl_status check_frame(const rdl_shot_writer *writer, const rdl_shot_fram
         return rdli_fault_set(fault, RDL_OUT_OF_RANGE, "frames/verdict", writer->rows[RDLI_SET_TIME]);
     if ((contents & RDL_SHOT_MEMORY) != 0 && frame->memory == NULL && frame->memory_bytes > 0)
         return rdli_fault_set(fault, RDL_BAD_ARGUMENT, "frames/memory", 0);
-    rdl_status status = check_positions(writer, RDLI_SET_START, frame->start, 1, fault);
+    rdl_status status = check_rules(writer, frame, fault);
+    if (status == RDL_OK)
+        status = check_positions(writer, RDLI_SET_START, frame->start, 1, fault);
     if (status == RDL_OK)
         status = check_positions(writer, RDLI_SET_PROPOSED, frame->proposed, 1, fault);
     if (status == RDL_OK)
@@ -256,6 +279,20 @@ static rdl_status check_frame(const rdl_shot_writer *writer, const rdl_shot_fram
             return rdli_fault_set(fault, RDL_OUT_OF_RANGE, "frames/waypoint_time", w);
     }
     return RDL_OK;
+}
+
+static bool write_rules(rdl_shot_writer *writer, const rdl_shot_frame *frame)
+{
+    size_t masses = frame->mass != NULL ? 1 : 0;
+    uint64_t mass_fence = writer->rows[RDLI_SET_MASS] + masses;
+    uint64_t muted_fence = writer->rows[RDLI_SET_MUTED_PARTS] + frame->muted_count;
+    return add_rows(writer, RDLI_SET_DURATION, 1, 1, &frame->duration) &&
+           add_rows(writer, RDLI_SET_SECONDS_MAX, 1, 1, &frame->seconds_max) &&
+           add_rows(writer, RDLI_SET_PASSES_MAX, 1, 1, &frame->passes_max) &&
+           add_rows(writer, RDLI_SET_MASS, masses, masses, frame->mass) &&
+           add_rows(writer, RDLI_SET_MASS_FIRST, 1, 1, &mass_fence) &&
+           add_rows(writer, RDLI_SET_MUTED_PARTS, frame->muted_count, frame->muted_count, frame->muted_parts) &&
+           add_rows(writer, RDLI_SET_MUTED_FIRST, 1, 1, &muted_fence);
 }
 
 static bool write_frame(rdl_shot_writer *writer, const rdl_shot_frame *frame)
@@ -280,7 +317,8 @@ static bool write_frame(rdl_shot_writer *writer, const rdl_shot_frame *frame)
            add_rows(writer, RDLI_SET_DELIVERED, 1, 1, frame->delivered) &&
            add_rows(writer, RDLI_SET_DIGEST, 1, 1, digest) &&
            add_rows(writer, RDLI_SET_VERDICT, 1, 1, &frame->verdict) &&
-           add_rows(writer, RDLI_SET_TIME, 1, 1, &frame->time) && H5Fflush(writer->file, H5F_SCOPE_LOCAL) >= 0;
+           write_rules(writer, frame) && add_rows(writer, RDLI_SET_TIME, 1, 1, &frame->time) &&
+           H5Fflush(writer->file, H5F_SCOPE_LOCAL) >= 0;
 }
 
 rdl_status rdl_shot_append(rdl_shot_writer *writer, const rdl_shot_frame *frame, rdl_fault *fault)

@@ -46,7 +46,7 @@ rule_stage_includes() {
 
 rule_driver_includes() {
     outside src/driver \
-        "\"(driver|intake|bounds|broad|narrow|response|outcome|base|flow)/.*|\"[a-z0-9_]+\\.h|\"raddle/($plain_types|engine)\\.h|<(time|stdatomic)\\.h"
+        "\"(driver|intake|bounds|broad|narrow|response|outcome|base|flow)/.*|\"[a-z0-9_]+\\.h|\"raddle/($plain_types|engine|watch)\\.h|<(time|stdatomic)\\.h"
 }
 
 # Besides the driver: the argument checks of intake, and the narrow phase for the calls that need no engine.

@@ -264,7 +264,7 @@ START_TEST(bad_options_and_scenes_are_named)
         int value;
         const char *field;
     } cases[] = {{offsetof(rdl_shot_options, contents), 0, "contents"},
-                 {offsetof(rdl_shot_options, contents), 128, "contents"},
+                 {offsetof(rdl_shot_options, contents), 256, "contents"},
                  {offsetof(rdl_shot_options, host_bits), 16, "host_bits"},
                  {offsetof(rdl_shot_options, deflate), 10, "deflate"},
                  {offsetof(rdl_shot_options, deflate), -1, "deflate"}};
