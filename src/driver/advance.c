@@ -6,9 +6,9 @@
  * without driven vertices to a rigid body. The first level settles ordinary zones in a few passes; the fence needs passes
  * only to find the pairs that come near. Directions from the start are of little use against vertices that are driven far:
  * such zones end the piece after half of the passes, and a shorter piece is tried, as long as there is one. */
-static const double fence_share = 0.3, rigid_share = 0.75, shorten_share = 0.5;
+static const double fence_share = 0.45, whole_share = 0.6, rigid_share = 0.75, shorten_share = 0.55;
 /* Until then a zone that breaks in refinement is mended; afterwards what was certified stands. */
-static const double restore_share = 0.2;
+static const double restore_share = 0.3;
 /* Certified zones are refined towards the nearest point this often at most. */
 enum { REFINEMENTS = 6 };
 enum { DIVERGES_AFTER = 3 };
@@ -25,14 +25,16 @@ static bool all_settled(const rdl_engine *engine)
     return true;
 }
 
-static void mark_zone(rdl_engine *engine, const rdli_zone *zone, uint8_t level)
+static void mark_zone(rdl_engine *engine, const rdli_zone *zone, uint8_t level, bool violated_only)
 {
     const uint32_t *order = (const uint32_t *)engine->response.zone_contacts.data + zone->contact_first;
     rdli_contact *contacts = engine->contacts.data;
     for (uint32_t i = 0; i < zone->contact_count; i++) {
         rdli_contact *contact = &contacts[order[i]];
+        if (violated_only && !contact->violated)
+            continue;
         contact->fenced |= level >= RDL_LEVEL_FENCE;
-        contact->rigid |= level >= RDL_LEVEL_RIGID;
+        contact->rigid |= level >= RDL_LEVEL_RIGID && (contact->violated || rdli_carries_load(contact));
         contact->settled = 0;
         contact->due = 1;
     }
@@ -78,11 +80,12 @@ static bool wants_refinement(rdl_engine *engine, const rdli_piece *piece, rdli_z
     }
     if (due)
         return true;
-    if (zone->level < RDL_LEVEL_RIGID && rdli_zone_gains_energy(&engine->response, piece, contacts, zone)) {
-        zone->level++;
-        mark_zone(engine, zone, zone->level);
-        for (uint32_t i = 0; i < zone->contact_count; i++)
+    if (zone->level < RDL_LEVEL_RIGID && rdli_zone_raise_gaining(&engine->response, piece, contacts, zone)) {
+        for (uint32_t i = 0; i < zone->contact_count; i++) {
+            uint8_t level = contacts[order[i]].rigid ? RDL_LEVEL_RIGID : contacts[order[i]].fenced ? RDL_LEVEL_FENCE : 0;
+            zone->level = level > zone->level ? level : zone->level;
             contacts[order[i]].due = 0; /* solved in this very pass */
+        }
         return true;
     }
     /* A zone that took long to certify is not put at risk again for a closer answer. */
@@ -119,16 +122,16 @@ static bool restore_zone(rdl_engine *engine, const rdli_piece *piece, const rdli
     return true;
 }
 
-static uint8_t next_level(const rdli_piece *piece, const rdli_zone *zone, double share)
+/* What has been violated for long goes to the next level: first the contacts themselves, then all of their zone. */
+static void raise_zone(rdl_engine *engine, const rdli_piece *piece, rdli_zone *zone, double share)
 {
-    uint8_t level = zone->level;
-    if (zone->driven && !piece->shortest)
-        return level;
-    if (share >= fence_share && level < RDL_LEVEL_FENCE)
-        level = RDL_LEVEL_FENCE;
-    if (share >= rigid_share && !zone->driven)
-        level = RDL_LEVEL_RIGID;
-    return level;
+    if (zone->level == RDL_LEVEL_RIGID && !zone->driven)
+        mark_zone(engine, zone, RDL_LEVEL_RIGID, true); /* what runs into the rigid body becomes part of it */
+    if ((zone->driven && !piece->shortest) || share < fence_share)
+        return;
+    uint8_t level = share >= rigid_share && !zone->driven ? RDL_LEVEL_RIGID : RDL_LEVEL_FENCE;
+    mark_zone(engine, zone, level, share < whole_share);
+    zone->level = level > zone->level ? level : zone->level;
 }
 
 /* Many contacts, and a motion of many floors into each other: planes taken along such paths contradict each other, and
@@ -168,10 +171,7 @@ static bool choose_levels(rdl_engine *engine, const rdli_piece *piece, double sh
         /* The shortest piece is given twice as long to show that there is room. */
         bool lost = piece->shortest ? diverges && share >= fence_share : share >= shorten_share || diverges;
         hopeful = hopeful && !(zone->driven && lost);
-        uint8_t level = next_level(piece, zone, share);
-        if (level > RDL_LEVEL_INEQUALITY)
-            mark_zone(engine, zone, level);
-        zone->level = level;
+        raise_zone(engine, piece, zone, share);
     }
     return hopeful;
 }
@@ -184,17 +184,16 @@ static bool react(rdl_engine *engine, const rdli_piece *piece)
     for (uint32_t z = 0; z < engine->response.zone_count; z++) {
         rdli_zone *zone = &zones[z];
         /* The last solve may have parted groups that were one when the zone was judged. */
-        if (zone->settled && zone->level < RDL_LEVEL_RIGID
-            && rdli_zone_gains_energy(&engine->response, piece, engine->contacts.data, zone))
-            mark_zone(engine, zone, (uint8_t)(zone->level + 1));
+        if (zone->settled && zone->level < RDL_LEVEL_RIGID)
+            rdli_zone_raise_gaining(&engine->response, piece, engine->contacts.data, zone);
         if (!zone->infeasible && !zone->exhausted)
             continue;
         if (zone->driven && !piece->shortest)
             hopeless = hopeless || zone->infeasible || zone->exhausted;
         else if (zone->level == RDL_LEVEL_INEQUALITY)
-            mark_zone(engine, zone, RDL_LEVEL_FENCE);
+            mark_zone(engine, zone, RDL_LEVEL_FENCE, false);
         else if (!zone->driven && zone->level == RDL_LEVEL_FENCE)
-            mark_zone(engine, zone, RDL_LEVEL_RIGID);
+            mark_zone(engine, zone, RDL_LEVEL_RIGID, false);
         else if (zone->infeasible && zone->driven)
             hopeless = true;
     }

@@ -104,7 +104,8 @@ rdl_status rdli_outcome_piece(rdl_engine *engine, const rdli_piece *piece, doubl
     /* Central impulses need the contact points of the delivered positions. */
     rdli_contacts_expand(engine, piece, true);
     rdl_status status = rdli_zones_impulses(&engine->response, piece, engine->contacts.data, count,
-                                            engine->settings.restitution, engine->velocity.data, engine->impulse.data);
+                                            engine->settings.restitution, length, engine->velocity.data,
+                                            engine->impulse.data);
     double begun = engine->waypoint_count > 0
         ? ((const double *)engine->waypoint_times.data)[engine->waypoint_count - 1] : 0.0;
     if (status == RDL_OK)

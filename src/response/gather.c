@@ -128,8 +128,9 @@ static void join_loaded(rdli_response *response, const rdli_piece *piece, const 
         }
 }
 
-bool rdli_zone_gains_energy(rdli_response *response, const rdli_piece *piece, const rdli_contact *contacts,
-                            const rdli_zone *zone)
+/* Sums over the groups, at the local number of each group's root. */
+static rdli_group_sums *sum_groups(rdli_response *response, const rdli_piece *piece, const rdli_contact *contacts,
+                                   const rdli_zone *zone)
 {
     const uint32_t *vertices = (const uint32_t *)response->zone_vertices.data + zone->vertex_first;
     const uint32_t *local = response->local.data;
@@ -149,20 +150,55 @@ bool rdli_zone_gains_energy(rdli_response *response, const rdli_piece *piece, co
             sum->before += mass * (meant * meant);
         }
     }
-    for (uint32_t i = 0; i < zone->vertex_count; i++) {
-        const rdli_group_sums *sum = &sums[i];
-        if (sum->mass == 0.0 || sum->fed)
-            continue;
-        double after = sum->after, before = sum->before;
-        for (int k = 0; k < 3; k++) {
-            after -= sum->moved[k] * sum->moved[k] / sum->mass;
-            before -= sum->meant[k] * sum->meant[k] / sum->mass;
-        }
-        /* The subtraction of the common motion cancels: its rounding is a share of the whole. */
-        if (after - before > 1e-12 * before + 16.0 * 0x1p-53 * (sum->after + sum->before))
-            return true;
+    return sums;
+}
+
+static bool gains_energy(const rdli_group_sums *sum)
+{
+    if (sum->mass == 0.0 || sum->fed)
+        return false;
+    double after = sum->after, before = sum->before;
+    for (int k = 0; k < 3; k++) {
+        after -= sum->moved[k] * sum->moved[k] / sum->mass;
+        before -= sum->meant[k] * sum->meant[k] / sum->mass;
     }
-    return false;
+    /* The subtraction of the common motion cancels: its rounding is a share of the whole. */
+    return after - before > 1e-12 * before + 16.0 * 0x1p-53 * (sum->after + sum->before);
+}
+
+bool rdli_zone_raise_gaining(rdli_response *response, const rdli_piece *piece, rdli_contact *contacts,
+                             const rdli_zone *zone)
+{
+    const uint32_t *order = (const uint32_t *)response->zone_contacts.data + zone->contact_first;
+    uint32_t *parent = response->parent.data;
+    const uint32_t *local = response->local.data;
+    rdli_group_sums *sums = sum_groups(response, piece, contacts, zone);
+    bool any = false;
+    for (uint32_t i = 0; i < zone->vertex_count; i++) {
+        sums[i].gains = gains_energy(&sums[i]);
+        any = any || sums[i].gains;
+    }
+    if (!any)
+        return false;
+    bool raised = false;
+    for (uint32_t i = 0; i < zone->contact_count; i++) {
+        rdli_contact *contact = &contacts[order[i]];
+        uint32_t root = UINT32_MAX;
+        bool inside = true;
+        for (int k = 0; k < 4; k++) {
+            uint32_t v = contact->vertex[k], mine = piece->fixed[v] ? UINT32_MAX : find_root(parent, v);
+            inside = inside && mine != UINT32_MAX && (root == UINT32_MAX || root == mine);
+            root = mine;
+        }
+        if (!inside || !sums[local[root]].gains || (contact->fenced && (zone->driven || contact->rigid)))
+            continue;
+        contact->rigid = contact->fenced;
+        contact->fenced = 1;
+        contact->settled = 0;
+        contact->due = 1;
+        raised = true;
+    }
+    return raised;
 }
 
 static void number_vertices(rdli_response *response, const rdli_piece *piece, const rdli_contact *contacts)

@@ -4,11 +4,15 @@
 #include "response/response.h"
 #include "response/solve.h"
 
+/* Zones of few rows are solved to rounding, larger ones to a few digits: whatever the impulses are, they are central and keep
+ * both momenta. */
+enum { FEW_ROWS = 64 };
+
 typedef struct job {
     rdli_response *response;
     const rdli_piece *piece;
     const rdli_contact *contacts;
-    double restitution;
+    double restitution, length;
     double (*velocity)[3];
     double *impulse;
 } job;
@@ -31,6 +35,15 @@ static bool carries_load(const rdli_contact *contact, uint8_t plane)
     return contact->plane[plane].load > 0.0 || ((fenced > 0.0 || contact->rigid) && plane == contact->nearest);
 }
 
+/* What the plane pushed with in the piece: where velocities are those of the piece, about its impulse. */
+static double pushing(const rdli_contact *contact, uint8_t plane)
+{
+    double load = contact->plane[plane].load;
+    for (int d = 0; plane == contact->nearest && d < 4; d++)
+        load += contact->fence_load[d];
+    return load;
+}
+
 static void set_row(const job *j, const rdli_contact *contact, const rdli_plane *plane, rdli_row *row)
 {
     const uint32_t *local = j->response->local.data;
@@ -45,8 +58,7 @@ static void set_row(const job *j, const rdli_contact *contact, const rdli_plane 
         if (j->piece->fixed[v]) {
             row->bound -= plane->weight[k] * rdli_dot(row->normal, velocity[v]);
         } else {
-            row->weight[k] = plane->weight[k];
-            row->vertex[k] = local[v];
+            rdli_row_add(row, local[v], plane->weight[k]);
         }
     }
 }
@@ -67,7 +79,7 @@ static void solve_zone(void *data, size_t index, unsigned worker)
     for (uint32_t i = 0; i < zone->contact_count; i++)
         for (uint8_t k = 0; k < j->contacts[order[i]].plane_count; k++)
             if (carries_load(&j->contacts[order[i]], k)) {
-                load[row] = 0.0;
+                load[row] = pushing(&j->contacts[order[i]], k) / j->length;
                 set_row(j, &j->contacts[order[i]], &j->contacts[order[i]].plane[k], &rows[row++]);
             }
     if (row == 0)
@@ -78,11 +90,12 @@ static void solve_zone(void *data, size_t index, unsigned worker)
         rdli_copy((const double *)j->velocity[vertices[i]], target[i]);
         fastest = fmax(fastest, rdli_length(target[i]));
     }
+    double fine = row <= FEW_ROWS ? 0x1p-48 : 0x1p-16;
     for (uint32_t k = 0; k < row; k++)
-        rows[k].tolerance = fmax(rows[k].tolerance, fastest * 0x1p-48);
+        rows[k].tolerance = fmax(rows[k].tolerance, fastest * fine);
     rdli_problem problem = { zone->vertex_count, row, inverse, (const double (*)[3])target, rows, load,
         (double (*)[3])r->solutions.data + zone->vertex_first, (double (*)[3])r->scratch.data + zone->vertex_first,
-        (double *)r->row_work.data + 4 * (size_t)zone->row_first, NULL, j->piece->sweeps_max };
+        (double *)r->row_work.data + RDLI_SOLVE_WORK * (size_t)zone->row_first, NULL, j->piece->sweeps_max, false };
     rdli_solve(&problem);
     row = 0;
     for (uint32_t i = 0; i < zone->contact_count; i++)
@@ -94,7 +107,7 @@ static void solve_zone(void *data, size_t index, unsigned worker)
 }
 
 rdl_status rdli_zones_impulses(rdli_response *r, const rdli_piece *piece, const rdli_contact *contacts, size_t count,
-                               double restitution, double (*velocity)[3], double *impulse)
+                               double restitution, double length, double (*velocity)[3], double *impulse)
 {
     for (size_t i = 0; i < RDLI_PLANES * count; i++)
         impulse[i] = -1.0;
@@ -110,7 +123,7 @@ rdl_status rdli_zones_impulses(rdli_response *r, const rdli_piece *piece, const 
     }
     if (rdli_response_reserve(r) != RDL_OK)
         return RDL_NO_MEMORY;
-    job j = { r, piece, contacts, restitution, velocity, impulse };
+    job j = { r, piece, contacts, restitution, length, velocity, impulse };
     rdli_parallel_for(r->workers, r->zone_count, solve_zone, &j);
     return RDL_OK;
 }

@@ -5,10 +5,10 @@
 #include "base/workers.h"
 #include "flow/contacts.h"
 
-/* Sums over a group of vertices: see rdli_zone_gains_energy. */
+/* Sums over a group of vertices: see rdli_zone_raise_gaining. */
 typedef struct rdli_group_sums {
     double mass, moved[3], meant[3], after, before;
-    bool fed;
+    bool fed, gains;
 } rdli_group_sums;
 
 typedef struct rdli_response {
@@ -56,21 +56,23 @@ bool rdli_carries_load(const rdli_contact *contact);
  * vertices in the frame of the zone's centre of mass. */
 void rdli_zone_energies(const rdli_response *response, const rdli_piece *piece, rdli_zone *zone);
 
-/* Whether a group of the zone that no driven vertex feeds has more kinetic energy than was wanted, in the frame of its own
- * centre of mass and beyond rounding. A group is what contacts that carry load join: contacts that carry none pass no
- * impulse on, so that energy may not pass either. */
-bool rdli_zone_gains_energy(rdli_response *response, const rdli_piece *piece, const rdli_contact *contacts,
-                            const rdli_zone *zone);
+/* Looks for groups of the zone that no driven vertex feeds and that have more kinetic energy than was wanted, in the frame of
+ * their own centre of mass and beyond rounding, and sends the contacts inside them to the next level; true when there
+ * were any to send. A group is what contacts that carry load join: contacts that carry none pass no impulse on, so that
+ * energy may not pass either. */
+bool rdli_zone_raise_gaining(rdli_response *response, const rdli_piece *piece, rdli_contact *contacts,
+                             const rdli_zone *zone);
 
 /* Makes room for row_total rows and vertex_total vertices. */
 rdl_status rdli_response_reserve(rdli_response *response);
 
 /* Velocity impulses of the contacts that carry load: for each zone the smallest impulses along the contact normals with
- * which no contact approaches (restitution 0), or separates at `restitution` times its approach. `velocity` (in/out, m per
+ * which no contact approaches (restitution 0), or separates at `restitution` times its approach. `length`: the piece's share of
+ * the step. `velocity` (in/out, m per
  * step) gets M^-1 J' impulse added; the planes must be up to date with the delivered positions; impulse[RDLI_PLANES c + k]
  * gets the impulse of plane k of contact c (kg m per step), or -1 where the plane carried no load. */
 rdl_status rdli_zones_impulses(rdli_response *response, const rdli_piece *piece, const rdli_contact *contacts, size_t count,
-                               double restitution, double (*velocity)[3], double *impulse);
+                               double restitution, double length, double (*velocity)[3], double *impulse);
 
 /* The rigid motion nearest to the targets in the mass metric (Provot 1997; Bridson et al. 2002): linear and angular
  * momentum of target - start are kept. The rotation is the Cayley transform of the angular displacement, below 120

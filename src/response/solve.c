@@ -7,13 +7,18 @@
 typedef struct state {
     rdli_problem *problem;
     double *gradient, *direction, *image, *scaled; /* row_count each: g, p, A p, scaled multipliers */
+    uint32_t *list;                                /* the rows that matter now, see refresh */
+    size_t listed;
     double step_bar;                               /* fixed step length of the projection, 1 / |A| */
 } state;
 
 enum {
     RELAXATIONS = 32, /* Gauss-Seidel sweeps before the conjugate gradients take over */
     CONJUGATE = 96,   /* conjugate gradient steps after which the problem counts as degenerate, and relaxation goes on */
-    CHECK = 8         /* sweeps between two looks at the residuals */
+    CHECK = 8,        /* sweeps between two looks at the residuals of the listed rows */
+    REFRESH = 32,     /* conjugate gradient steps between two looks at all rows */
+    LOCAL = 64,       /* sweeps over the neighbourhood of what is not done between two looks at all rows */
+    FEW_OPEN = 16     /* fewer than one in so many rows not done: conjugate gradients on all of them would be a waste */
 };
 /* Over-relaxation of the sweeps: any number between 0 and 2 converges; common practice for contact problems. */
 static const double over_relaxation = 1.3;
@@ -21,22 +26,24 @@ static const double over_relaxation = 1.3;
 static double row_value(const rdli_row *row, const double (*x)[3])
 {
     double sum = 0.0;
-    for (int k = 0; k < 4; k++)
+    for (uint32_t k = 0; k < row->used; k++)
         sum += row->weight[k] * rdli_dot(row->normal, x[row->vertex[k]]);
     return sum;
 }
 
-/* scratch = M^-1 J' S v, with S the row scales. */
-static void spread(const rdli_problem *problem, const double *v)
+/* scratch = M^-1 J' S v over all or the listed rows, with S the row scales. */
+static void spread(const state *s, const double *v, bool all)
 {
+    const rdli_problem *problem = s->problem;
     double (*out)[3] = problem->scratch;
     memset(out, 0, problem->vertex_count * sizeof *out);
-    for (size_t r = 0; r < problem->row_count; r++) {
+    for (size_t i = 0; i < (all ? problem->row_count : s->listed); i++) {
+        size_t r = all ? i : s->list[i];
         const rdli_row *row = &problem->rows[r];
         double amount = row->scale * v[r];
         if (amount == 0.0)
             continue;
-        for (int k = 0; k < 4; k++)
+        for (uint32_t k = 0; k < row->used; k++)
             rdli_add_scaled(out[row->vertex[k]], amount * row->weight[k], row->normal);
     }
     for (size_t i = 0; i < problem->vertex_count; i++)
@@ -44,12 +51,15 @@ static void spread(const rdli_problem *problem, const double *v)
             out[i][k] *= problem->inverse_mass[i];
 }
 
-/* image = S J M^-1 J' S v */
-static void apply(const rdli_problem *problem, const double *v, double *image)
+/* image = S J M^-1 J' S v, on the listed rows */
+static void apply(const state *s, const double *v, double *image)
 {
-    spread(problem, v);
-    for (size_t r = 0; r < problem->row_count; r++)
-        image[r] = problem->rows[r].scale * row_value(&problem->rows[r], (const double (*)[3])problem->scratch);
+    const rdli_problem *problem = s->problem;
+    spread(s, v, false);
+    for (size_t i = 0; i < s->listed; i++) {
+        const rdli_row *row = &problem->rows[s->list[i]];
+        image[s->list[i]] = row->scale * row_value(row, (const double (*)[3])problem->scratch);
+    }
 }
 
 static void scale_rows(const rdli_problem *problem)
@@ -57,9 +67,8 @@ static void scale_rows(const rdli_problem *problem)
     for (size_t r = 0; r < problem->row_count; r++) {
         rdli_row *row = &problem->rows[r];
         double diagonal = 0.0, square = rdli_dot(row->normal, row->normal);
-        for (int k = 0; k < 4; k++)
-            if (row->weight[k] != 0.0)
-                diagonal += row->weight[k] * row->weight[k] * problem->inverse_mass[row->vertex[k]] * square;
+        for (uint32_t k = 0; k < row->used; k++)
+            diagonal += row->weight[k] * row->weight[k] * problem->inverse_mass[row->vertex[k]] * square;
         row->scale = diagonal > 0.0 ? 1.0 / sqrt(diagonal) : 0.0;
     }
 }
@@ -68,14 +77,16 @@ static void scale_rows(const rdli_problem *problem)
  * a projection step of one over it is safe as long as it has found half of the true value. */
 static double norm_estimate(state *s)
 {
-    size_t n = s->problem->row_count;
     double size = 0.0;
-    for (size_t r = 0; r < n; r++)
+    for (size_t i = 0; i < s->listed; i++) {
+        size_t r = s->list[i];
         s->direction[r] = (r * 2654435761u >> 16 & 1u ? 1.0 : -1.0) * (1.0 + (double)(r % 7) / 8.0);
+    }
     for (int step = 0; step < 12; step++) {
-        apply(s->problem, s->direction, s->image);
+        apply(s, s->direction, s->image);
         double square = 0.0, before = 0.0;
-        for (size_t r = 0; r < n; r++) {
+        for (size_t i = 0; i < s->listed; i++) {
+            size_t r = s->list[i];
             before += s->direction[r] * s->direction[r];
             square += s->image[r] * s->image[r];
         }
@@ -83,49 +94,72 @@ static double norm_estimate(state *s)
             return 0.0;
         size = sqrt(square / before);
         double scale = 1.0 / sqrt(square);
-        for (size_t r = 0; r < n; r++)
-            s->direction[r] = s->image[r] * scale;
+        for (size_t i = 0; i < s->listed; i++)
+            s->direction[s->list[i]] = s->image[s->list[i]] * scale;
     }
     return size;
 }
 
-/* One projected successive over-relaxation sweep over the rows, forwards or backwards (Cryer 1971). Rows that repeat each
- * other, of which stacked sheets have hundreds at a vertex, do not slow it down as they do gradient steps. */
+/* One projected successive over-relaxation sweep over the listed rows, forwards or backwards (Cryer 1971). Rows that
+ * repeat each other, of which stacked sheets have hundreds at a vertex, do not slow it down as they do gradient steps. */
 static void relax(state *s, bool backwards)
 {
     rdli_problem *problem = s->problem;
-    size_t n = problem->row_count;
-    for (size_t i = 0; i < n; i++) {
-        size_t r = backwards ? n - 1 - i : i;
+    for (size_t i = 0; i < s->listed; i++) {
+        size_t r = s->list[backwards ? s->listed - 1 - i : i];
         const rdli_row *row = &problem->rows[r];
-        if (row->scale == 0.0)
-            continue;
         double residual = row_value(row, (const double (*)[3])problem->solution) - row->bound;
         double moved = s->scaled[r] - over_relaxation * row->scale * residual;
         double change = (moved > 0.0 ? moved : 0.0) - s->scaled[r];
         if (change == 0.0)
             continue;
         s->scaled[r] += change;
-        for (int k = 0; k < 4; k++)
+        for (uint32_t k = 0; k < row->used; k++)
             rdli_add_scaled(problem->solution[row->vertex[k]],
                             change * row->scale * row->weight[k] * problem->inverse_mass[row->vertex[k]], row->normal);
     }
 }
 
-/* Solution and unscaled row residuals from the present multipliers; the gradient in scaled variables. */
-static double refresh(state *s)
+/* The gradient of the listed rows in scaled variables, from the present solution. */
+static void listed_gradient(state *s)
+{
+    const rdli_problem *problem = s->problem;
+    for (size_t i = 0; i < s->listed; i++) {
+        const rdli_row *row = &problem->rows[s->list[i]];
+        s->gradient[s->list[i]] = row->scale * (row_value(row, (const double (*)[3])problem->solution) - row->bound);
+    }
+}
+
+/* The solution that belongs to the present multipliers. */
+static void solution_of(state *s)
 {
     rdli_problem *problem = s->problem;
-    spread(problem, s->scaled);
+    spread(s, s->scaled, true);
     for (size_t i = 0; i < problem->vertex_count; i++)
         for (int k = 0; k < 3; k++)
             problem->solution[i][k] = problem->target[i][k] + problem->scratch[i][k];
+}
+
+/* A fresh solution and the residuals of all rows; then lists the rows that matter until the next look: those with a
+ * multiplier, and those that are violated or, going by the worst violation, could soon be. Returns the worst violation.
+ * Of the rows of a draped cloth one in five ends with a multiplier, and sweeps cost in proportion to the list. */
+static double refresh(state *s)
+{
+    rdli_problem *problem = s->problem;
+    solution_of(s);
     double worst = 0.0;
     for (size_t r = 0; r < problem->row_count; r++) {
         const rdli_row *row = &problem->rows[r];
         double residual = row_value(row, (const double (*)[3])problem->solution) - row->bound;
-        s->gradient[r] = row->scale * residual;
+        s->gradient[r] = residual;
         worst = row->scale > 0.0 ? fmax(worst, -residual) : worst; /* nobody can help the others */
+    }
+    s->listed = 0;
+    for (size_t r = 0; r < problem->row_count; r++) {
+        double scale = problem->rows[r].scale;
+        if (scale > 0.0 && (s->scaled[r] > 0.0 || s->gradient[r] <= worst))
+            s->list[s->listed++] = (uint32_t)r;
+        s->gradient[r] *= scale;
     }
     return worst;
 }
@@ -136,42 +170,50 @@ static bool row_done(const state *s, size_t r)
     double g = s->gradient[r], tolerance = row->scale * row->tolerance;
     if (g < -tolerance)
         return false;
-    return s->scaled[r] == 0.0 || g <= tolerance || s->scaled[r] <= s->step_bar * tolerance;
+    return s->problem->feasible_only || s->scaled[r] == 0.0 || g <= tolerance || s->scaled[r] <= s->step_bar * tolerance;
 }
 
 static bool all_done(const state *s)
 {
-    for (size_t r = 0; r < s->problem->row_count; r++)
-        if (s->problem->rows[r].scale > 0.0 && !row_done(s, r))
+    for (size_t i = 0; i < s->listed; i++)
+        if (!row_done(s, s->list[i]))
             return false;
     return true;
 }
 
+static size_t count_open(const state *s)
+{
+    size_t open = 0;
+    for (size_t i = 0; i < s->listed; i++)
+        open += !row_done(s, s->list[i]);
+    return open;
+}
+
 static void free_gradient(const state *s, double *out)
 {
-    for (size_t r = 0; r < s->problem->row_count; r++)
-        out[r] = s->scaled[r] > 0.0 ? s->gradient[r] : 0.0;
+    for (size_t i = 0; i < s->listed; i++)
+        out[s->list[i]] = s->scaled[s->list[i]] > 0.0 ? s->gradient[s->list[i]] : 0.0;
 }
 
 /* Square of the chopped gradient against the reduced free one: proportional iterates go on with conjugate gradients. */
 static bool is_proportional(const state *s)
 {
     double chopped = 0.0, reduced = 0.0;
-    for (size_t r = 0; r < s->problem->row_count; r++) {
-        double g = s->gradient[r];
-        if (s->scaled[r] > 0.0)
-            reduced += g * fmin(s->scaled[r] / s->step_bar, g);
+    for (size_t i = 0; i < s->listed; i++) {
+        double g = s->gradient[s->list[i]], load = s->scaled[s->list[i]];
+        if (load > 0.0)
+            reduced += g * fmin(load / s->step_bar, g);
         else if (g < 0.0)
             chopped += g * g;
     }
     return chopped <= reduced;
 }
 
-static double dot(size_t n, const double *a, const double *b)
+static double dot(const state *s, const double *a, const double *b)
 {
     double sum = 0.0;
-    for (size_t i = 0; i < n; i++)
-        sum += a[i] * b[i];
+    for (size_t i = 0; i < s->listed; i++)
+        sum += a[s->list[i]] * b[s->list[i]];
     return sum;
 }
 
@@ -179,15 +221,16 @@ static double dot(size_t n, const double *a, const double *b)
 static double step_to_bound(const state *s)
 {
     double step = DBL_MAX;
-    for (size_t r = 0; r < s->problem->row_count; r++)
-        if (s->direction[r] > 0.0)
-            step = fmin(step, s->scaled[r] / s->direction[r]);
+    for (size_t i = 0; i < s->listed; i++)
+        if (s->direction[s->list[i]] > 0.0)
+            step = fmin(step, s->scaled[s->list[i]] / s->direction[s->list[i]]);
     return step;
 }
 
 static void walk(state *s, double step)
 {
-    for (size_t r = 0; r < s->problem->row_count; r++) {
+    for (size_t i = 0; i < s->listed; i++) {
+        size_t r = s->list[i];
         double moved = s->scaled[r] - step * s->direction[r];
         s->scaled[r] = moved > 0.0 ? moved : 0.0;
         s->gradient[r] -= step * s->image[r];
@@ -197,30 +240,31 @@ static void walk(state *s, double step)
 /* Rows that no multiplier holds any more must not stay a rounding above zero. */
 static void expand(state *s, double step)
 {
-    size_t n = s->problem->row_count;
     walk(s, step);
-    for (size_t r = 0; r < n; r++) {
+    for (size_t i = 0; i < s->listed; i++) {
+        size_t r = s->list[i];
         if (s->scaled[r] > 0.0) {
             double moved = s->scaled[r] - s->step_bar * s->gradient[r];
             s->scaled[r] = moved > 0.0 ? moved : 0.0;
         }
     }
-    refresh(s);
+    solution_of(s);
+    listed_gradient(s);
     free_gradient(s, s->direction);
 }
 
 /* One step; false when the direction has no curvature although the gradient wants to go on: the dual is unbounded. */
 static bool advance(state *s)
 {
-    size_t n = s->problem->row_count;
     bool proportional = is_proportional(s);
-    if (!proportional)
-        for (size_t r = 0; r < n; r++)
-            s->direction[r] = s->scaled[r] == 0.0 && s->gradient[r] < 0.0 ? s->gradient[r] : 0.0;
-    apply(s->problem, s->direction, s->image);
-    double slope = dot(n, s->gradient, s->direction);
-    double curvature = dot(n, s->direction, s->image);
-    double size = dot(n, s->direction, s->direction);
+    for (size_t i = 0; !proportional && i < s->listed; i++) {
+        size_t r = s->list[i];
+        s->direction[r] = s->scaled[r] == 0.0 && s->gradient[r] < 0.0 ? s->gradient[r] : 0.0;
+    }
+    apply(s, s->direction, s->image);
+    double slope = dot(s, s->gradient, s->direction);
+    double curvature = dot(s, s->direction, s->image);
+    double size = dot(s, s->direction, s->direction);
     /* 2^-40 of the largest possible curvature: what rounding leaves of a null direction. */
     bool flat = !(curvature > size / s->step_bar * 0x1p-40);
     double to_bound = step_to_bound(s);
@@ -233,23 +277,69 @@ static bool advance(state *s)
     } else if (!flat && step <= to_bound) {
         walk(s, step);
         double beta = 0.0;
-        for (size_t r = 0; r < n; r++)
+        for (size_t i = 0; i < s->listed; i++) {
+            size_t r = s->list[i];
             beta += s->scaled[r] > 0.0 ? s->gradient[r] * s->image[r] : 0.0;
+        }
         beta /= curvature;
-        for (size_t r = 0; r < n; r++)
+        for (size_t i = 0; i < s->listed; i++) {
+            size_t r = s->list[i];
             s->direction[r] = (s->scaled[r] > 0.0 ? s->gradient[r] : 0.0) - beta * s->direction[r];
+        }
     } else {
         expand(s, to_bound);
     }
     return true;
 }
 
-static bool relax_until(state *s, rdli_solved *solved, uint32_t sweeps_max)
+/* Sweeps over the list until it is done, or `most` of them; counts them as shares of sweeps over all rows. */
+static void relax_list(state *s, double *work, uint32_t most)
 {
-    while (solved->sweeps < sweeps_max) {
+    for (uint32_t sweep = 0; sweep < most; sweep += CHECK) {
         for (int k = 0; k < CHECK; k++)
             relax(s, k % 2 != 0);
-        solved->sweeps += CHECK;
+        *work += (double)CHECK * ((double)s->listed / (double)s->problem->row_count);
+        listed_gradient(s);
+        if (all_done(s))
+            return;
+    }
+}
+
+/* Leaves on the list only rows at vertices of rows that are not done; returns how many are not. Most of a zone is done after
+ * a few sweeps, and waits for single vertices that are wedged between rows of nearly opposite directions. */
+static size_t list_neighbours(state *s)
+{
+    rdli_problem *problem = s->problem;
+    size_t open = 0, kept = 0;
+    for (size_t i = 0; i < problem->vertex_count; i++)
+        problem->scratch[i][0] = 0.0;
+    for (size_t i = 0; i < s->listed; i++) {
+        const rdli_row *row = &problem->rows[s->list[i]];
+        if (row_done(s, s->list[i]))
+            continue;
+        open++;
+        for (uint32_t k = 0; k < row->used; k++)
+            problem->scratch[row->vertex[k]][0] = 1.0;
+    }
+    for (size_t i = 0; i < s->listed; i++) {
+        const rdli_row *row = &problem->rows[s->list[i]];
+        bool near = false;
+        for (uint32_t k = 0; k < row->used; k++)
+            near = near || problem->scratch[row->vertex[k]][0] != 0.0;
+        if (near)
+            s->list[kept++] = s->list[i];
+    }
+    s->listed = kept;
+    return open;
+}
+
+/* Relaxes the neighbourhood of what is not done until a look at all rows finds nothing. */
+static bool relax_locally(state *s, double *work, double most)
+{
+    for (double rounds = 0.0; *work < most && rounds < most; rounds += 1.0) {
+        list_neighbours(s);
+        relax_list(s, work, LOCAL);
+        *work += 1.0;
         refresh(s);
         if (all_done(s))
             return true;
@@ -258,58 +348,78 @@ static bool relax_until(state *s, rdli_solved *solved, uint32_t sweeps_max)
 }
 
 /* Conjugate gradients on the faces. */
-static bool descend(state *s, rdli_solved *solved, uint32_t sweeps_max)
+static bool descend(state *s, rdli_solved *solved, double *work, uint32_t steps)
 {
+    double norm = norm_estimate(s);
+    s->step_bar = norm > 0.0 ? 1.0 / norm : 1.0;
     free_gradient(s, s->direction);
-    while (solved->sweeps < sweeps_max) {
-        if (all_done(s)) {
-            /* The recursive gradient drifts: trust only a fresh one. */
+    for (uint32_t since = 0, step = 0; step < steps; since++, step++) {
+        if (since >= REFRESH || all_done(s)) {
+            /* The recursive gradient drifts, and knows only the listed rows: trust a fresh one. */
             refresh(s);
             if (all_done(s))
                 return true;
             free_gradient(s, s->direction);
+            since = 0;
         }
-        solved->sweeps++;
+        *work += (double)s->listed / (double)s->problem->row_count;
         if (!advance(s)) {
             solved->infeasible = true;
-            return false;
+            break;
         }
     }
+    refresh(s);
     return false;
 }
+
+/* Row multipliers below this many tolerances may be let go: 1 / |A| is not known until the conjugate gradients need it, and
+ * with rows of unit diagonal a multiplier moves no other row by more than itself. */
+static const double negligible = 0x1p-4;
 
 rdli_solved rdli_solve(rdli_problem *problem)
 {
     size_t n = problem->row_count;
-    state s = { problem, problem->work, problem->work + n, problem->work + 2 * n, problem->work + 3 * n, 0.0 };
+    state s = { problem, problem->work, problem->work + n, problem->work + 2 * n, problem->work + 3 * n,
+        (uint32_t *)(problem->work + 4 * n), 0, negligible };
     rdli_solved solved = { 0, false, false, 0.0, 0.0 };
     scale_rows(problem);
-    double norm = norm_estimate(&s);
-    s.step_bar = norm > 0.0 ? 1.0 / norm : 1.0;
     memset(s.scaled, 0, n * sizeof(double));
     solved.worst_before = refresh(&s);
-    for (size_t r = 0; r < n; r++)
+    s.listed = 0;
+    for (size_t r = 0; r < n; r++) {
         s.scaled[r] = problem->rows[r].scale > 0.0 ? problem->load[r] / problem->rows[r].scale : 0.0;
+        if (s.scaled[r] > 0.0)
+            s.list[s.listed++] = (uint32_t)r;
+    }
     refresh(&s);
-    uint32_t most = problem->sweeps_max, relaxed = most < RELAXATIONS ? most : RELAXATIONS;
-    solved.converged = all_done(&s) || relax_until(&s, &solved, relaxed);
-    uint32_t conjugate = most < RELAXATIONS + CONJUGATE ? most : RELAXATIONS + CONJUGATE;
-    if (!solved.converged)
-        solved.converged = descend(&s, &solved, conjugate);
+    solved.converged = all_done(&s);
+    double most = problem->sweeps_max, work = 0.0;
+    if (!solved.converged) {
+        relax_list(&s, &work, RELAXATIONS);
+        refresh(&s);
+        solved.converged = all_done(&s);
+    }
+    if (!solved.converged && !problem->feasible_only && count_open(&s) > n / FEW_OPEN)
+        solved.converged = descend(&s, &solved, &work, CONJUGATE);
     if (!solved.converged && !solved.infeasible)
-        solved.converged = relax_until(&s, &solved, most);
+        solved.converged = relax_locally(&s, &work, most);
     if (!solved.converged && problem->dense_work != NULL && rdli_solve_dense(problem, problem->dense_work)) {
         /* The interior point leaves a trace of load on every row. Without it the answer is a little off its tolerances, on
          * rows that are now known: conjugate gradients mend that at once. */
-        for (size_t r = 0; r < n; r++)
+        s.listed = 0;
+        for (size_t r = 0; r < n; r++) {
             s.scaled[r] = problem->load[r] / problem->rows[r].scale;
+            if (s.scaled[r] > 0.0)
+                s.list[s.listed++] = (uint32_t)r;
+        }
         refresh(&s);
-        descend(&s, &solved, solved.sweeps + CONJUGATE);
+        descend(&s, &solved, &work, CONJUGATE);
         solved.converged = true;
         solved.infeasible = false;
     }
     for (size_t r = 0; r < n; r++)
         problem->load[r] = s.scaled[r] * problem->rows[r].scale;
+    solved.sweeps = (uint32_t)work;
     solved.worst_after = refresh(&s);
     return solved;
 }

@@ -7,14 +7,17 @@
 /* One half space: normal . sum_k weight[k] x[vertex[k]] >= bound. Unmovable vertices have no share here: their part is
  * already subtracted from bound. */
 typedef struct rdli_row {
-    uint32_t vertex[4];   /* local vertex numbers; unused entries have weight 0 and vertex 0 */
+    uint32_t vertex[4];   /* local vertex numbers, the used ones first; unused entries have weight 0 and vertex 0 */
     double weight[4], normal[3];
     double bound;         /* m, less what unmovable vertices contribute */
     double share;         /* how much of the contact can move, (0, 1] */
     double tolerance;     /* m, allowed violation */
     uint32_t origin;      /* row number before idle rows were left out; the solve does not look at it */
+    uint32_t used;        /* entries of vertex and weight */
     double scale;         /* 1 / sqrt(A_rr), filled by the solve; 0 = nothing in this row can move */
 } rdli_row;
+
+enum { RDLI_SOLVE_WORK = 5 }; /* doubles of work space per row */
 
 typedef struct rdli_problem {
     size_t vertex_count, row_count;
@@ -24,10 +27,18 @@ typedef struct rdli_problem {
     double *load;                   /* row_count multipliers, in/out, >= 0 */
     double (*solution)[3];          /* out */
     double (*scratch)[3];           /* vertex_count */
-    double *work;                   /* 4 * row_count */
+    double *work;                   /* RDLI_SOLVE_WORK * row_count */
     double *dense_work;             /* room for rdli_solve_dense, or NULL */
     uint32_t sweeps_max;
+    bool feasible_only;             /* stop as soon as every row is met, although some may be pushed too far */
 } rdli_problem;
+
+/* Adds a movable vertex to a row. */
+static inline void rdli_row_add(rdli_row *row, uint32_t vertex, double weight)
+{
+    row->vertex[row->used] = vertex;
+    row->weight[row->used++] = weight;
+}
 
 typedef struct rdli_solved {
     uint32_t sweeps;

@@ -22,9 +22,9 @@ static uint32_t difference_count(uint32_t kind)
     return kind == RDL_POINT_TRIANGLE ? 3 : 4;
 }
 
-static uint32_t rows_of(const rdli_contact *contact, bool fenced)
+static uint32_t rows_of(const rdli_contact *contact)
 {
-    if (fenced)
+    if (contact->fenced)
         return difference_count(contact->kind);
     return contact->plane_count;
 }
@@ -76,16 +76,15 @@ static void set_row(rdli_row *row, const job *j, const rdli_contact *contact, co
         if (piece->fixed[v]) {
             row->bound -= weight[k] * rdli_dot(normal, piece->trial[v]);
         } else {
-            row->weight[k] = weight[k];
-            row->vertex[k] = local[v];
+            rdli_row_add(row, local[v], weight[k]);
         }
     }
     row->tolerance = piece->aim_margin * contact->floor; /* the margin, for now: see set_tolerances */
 }
 
-static void fill_rows(const job *j, const rdli_contact *contact, bool fenced, rdli_row *rows, double *loads)
+static void fill_rows(const job *j, const rdli_contact *contact, rdli_row *rows, double *loads)
 {
-    if (!fenced) {
+    if (!contact->fenced) {
         for (uint8_t i = 0; i < contact->plane_count; i++) {
             set_row(&rows[i], j, contact, contact->plane[i].normal, contact->plane[i].weight, false);
             loads[i] = contact->plane[i].load;
@@ -101,9 +100,9 @@ static void fill_rows(const job *j, const rdli_contact *contact, bool fenced, rd
     }
 }
 
-static void keep_loads(rdli_contact *contact, bool fenced, const double *loads)
+static void keep_loads(rdli_contact *contact, const double *loads)
 {
-    if (!fenced) {
+    if (!contact->fenced) {
         for (uint8_t i = 0; i < contact->plane_count; i++)
             contact->plane[i].load = loads[i];
         return;
@@ -115,14 +114,9 @@ static void keep_loads(rdli_contact *contact, bool fenced, const double *loads)
 static double slack_of(const rdli_row *row, const double (*x)[3])
 {
     double value = -row->bound;
-    for (int k = 0; k < 4; k++)
+    for (uint32_t k = 0; k < row->used; k++)
         value += row->weight[k] * rdli_dot(row->normal, x[row->vertex[k]]);
     return value;
-}
-
-static bool can_move(const rdli_row *row)
-{
-    return row->weight[0] != 0.0 || row->weight[1] != 0.0 || row->weight[2] != 0.0 || row->weight[3] != 0.0;
 }
 
 /* Among the rows in which something can move. */
@@ -130,7 +124,7 @@ static double worst_violation(const rdli_problem *problem, const double (*x)[3])
 {
     double worst = 0.0;
     for (size_t r = 0; r < problem->row_count; r++) {
-        if (can_move(&problem->rows[r]))
+        if (problem->rows[r].used > 0)
             worst = fmax(worst, -slack_of(&problem->rows[r], x));
     }
     return worst;
@@ -138,11 +132,13 @@ static double worst_violation(const rdli_problem *problem, const double (*x)[3])
 
 /* Zones of few rows are solved exactly at once. */
 enum { FEW_ROWS = 64 };
+/* Zones of many rows are not tried exactly while they are violated. */
+enum { MANY_ROWS = 1024 };
 enum { REFINING_SWEEPS = 128 };
-/* A large violated zone that a short exact solve does not settle is solved to a twentieth of its violation and aims as much
+/* A large violated zone that a short exact solve does not settle is solved to half a percent of its violation and aims as much
  * above, so that every row ends above its floor although the solve is quick; each clean pass takes four fifths of that
  * back. */
-static const double slop_share = 0.05, slop_growth = 1.5, slop_kept = 0.2, slop_most = 0.5;
+static const double slop_share = 0.005, slop_growth = 1.5, slop_kept = 0.2, slop_most = 0.5;
 
 static void keep_slop(const job *j, const rdli_zone *zone, double slop)
 {
@@ -207,7 +203,7 @@ static void leave_out_idle_rows(rdli_problem *problem, double *all_loads)
         row->origin = (uint32_t)r;
         all_loads[r] = 0.0;
         bool idle = problem->load[r] == 0.0 && slack_of(row, (const double (*)[3])problem->solution) > reach;
-        if (idle || !can_move(row))
+        if (idle || row->used == 0)
             continue;
         problem->rows[kept] = *row;
         problem->load[kept] = problem->load[r];
@@ -216,20 +212,31 @@ static void leave_out_idle_rows(rdli_problem *problem, double *all_loads)
     problem->row_count = kept;
 }
 
+/* A quick solve, see slop_share: all rows are met, and how far above does not matter yet. */
+static rdli_solved solve_quickly(rdli_problem *problem)
+{
+    problem->feasible_only = true;
+    return rdli_solve(problem);
+}
+
 static rdli_solved solve_rows(const job *j, const rdli_zone *zone, rdli_problem *problem)
 {
     const uint32_t *order = (const uint32_t *)j->response->zone_contacts.data + zone->contact_first;
-    if (!zone->violated || problem->row_count <= FEW_ROWS || j->contacts[order[0]].slop > 0.0)
+    if (!zone->violated || problem->row_count <= FEW_ROWS)
         return rdli_solve(problem);
+    if (j->contacts[order[0]].slop > 0.0)
+        return solve_quickly(problem);
     uint32_t sweeps = problem->sweeps_max;
-    double *dense = problem->dense_work;
-    problem->sweeps_max = sweeps < REFINING_SWEEPS ? sweeps : REFINING_SWEEPS;
-    problem->dense_work = NULL;
-    rdli_solved solved = rdli_solve(problem);
-    problem->sweeps_max = sweeps;
-    problem->dense_work = dense;
-    if (solved.converged || solved.sweeps >= sweeps)
-        return solved;
+    if (problem->row_count <= MANY_ROWS) {
+        double *dense = problem->dense_work;
+        problem->sweeps_max = sweeps < REFINING_SWEEPS ? sweeps : REFINING_SWEEPS;
+        problem->dense_work = NULL;
+        rdli_solved solved = rdli_solve(problem);
+        problem->sweeps_max = sweeps;
+        problem->dense_work = dense;
+        if (solved.converged || solved.sweeps >= sweeps)
+            return solved;
+    }
     double floor = DBL_MAX;
     for (uint32_t i = 0; i < zone->contact_count; i++)
         floor = fmin(floor, j->contacts[order[i]].floor);
@@ -240,7 +247,7 @@ static rdli_solved solve_rows(const job *j, const rdli_zone *zone, rdli_problem 
         row->bound += row->share * slop;
         row->tolerance = fmax(row->tolerance, 0.5 * row->share * slop);
     }
-    return rdli_solve(problem);
+    return solve_quickly(problem);
 }
 
 static void account(const job *j, rdli_zone *zone, const double (*solution)[3])
@@ -327,9 +334,10 @@ static rdli_problem problem_of(const job *j, const rdli_zone *zone, unsigned wor
     problem.load = (double *)r->loads.data + zone->row_first;
     problem.solution = (double (*)[3])r->solutions.data + zone->vertex_first;
     problem.scratch = (double (*)[3])r->scratch.data + zone->vertex_first;
-    problem.work = (double *)r->row_work.data + 4 * (size_t)zone->row_first;
+    problem.work = (double *)r->row_work.data + RDLI_SOLVE_WORK * (size_t)zone->row_first;
     /* A clean zone is only refined: not at any price. */
     bool dense = zone->violated && zone->vertex_count <= RDLI_DENSE_VERTICES;
+    problem.feasible_only = false;
     problem.dense_work = dense ? (double *)r->dense.data + worker * r->dense_each : NULL;
     uint32_t sweeps = j->piece->sweeps_max;
     problem.sweeps_max = zone->violated || sweeps < REFINING_SWEEPS ? sweeps : REFINING_SWEEPS;
@@ -357,6 +365,29 @@ static double smallest_floor(const job *j, const rdli_zone *zone)
     return floor;
 }
 
+/* What the rigid contacts hold moves as one body; everything else in the zone goes where it wants to. */
+static void move_rigidly(const job *j, const rdli_zone *zone, rdli_problem *problem)
+{
+    rdli_response *r = j->response;
+    const uint32_t *order = (const uint32_t *)r->zone_contacts.data + zone->contact_first;
+    const uint32_t *vertices = (const uint32_t *)r->zone_vertices.data + zone->vertex_first, *local = r->local.data;
+    uint32_t *members = (uint32_t *)problem->work, count = 0;
+    static_assert(RDLI_SOLVE_WORK * sizeof(double) >= 4 * sizeof(uint32_t), "room for the vertices of every contact");
+    for (uint32_t i = 0; i < zone->vertex_count; i++) {
+        rdli_copy(problem->target[i], problem->solution[i]);
+        problem->scratch[i][0] = 0.0;
+    }
+    for (uint32_t i = 0; i < zone->contact_count; i++)
+        for (int k = 0; j->contacts[order[i]].rigid && k < 4; k++)
+            problem->scratch[local[j->contacts[order[i]].vertex[k]]][0] = 1.0;
+    for (uint32_t i = 0; i < zone->vertex_count; i++)
+        if (problem->scratch[i][0] != 0.0)
+            members[count++] = vertices[i];
+    rdli_rigid_motion(j->piece, members, count, smallest_floor(j, zone), problem->scratch);
+    for (uint32_t i = 0; i < count; i++)
+        rdli_copy(problem->scratch[i], problem->solution[local[members[i]]]);
+}
+
 static void solve_zone(void *data, size_t index, unsigned worker)
 {
     const job *j = data;
@@ -368,14 +399,12 @@ static void solve_zone(void *data, size_t index, unsigned worker)
     rdli_problem problem = problem_of(j, zone, worker);
     load_vertices(j, zone, j->piece->target);
     if (zone->level == RDL_LEVEL_RIGID && !zone->driven) {
-        const uint32_t *vertices = (const uint32_t *)r->zone_vertices.data + zone->vertex_first;
-        rdli_rigid_motion(j->piece, vertices, zone->vertex_count, smallest_floor(j, zone), problem.solution);
+        move_rigidly(j, zone, &problem);
     } else {
-        bool fenced = zone->level >= RDL_LEVEL_FENCE;
         uint32_t row = 0;
         for (uint32_t i = 0; i < zone->contact_count; i++) {
-            fill_rows(j, &j->contacts[order[i]], fenced, &problem.rows[row], &problem.load[row]);
-            row += rows_of(&j->contacts[order[i]], fenced);
+            fill_rows(j, &j->contacts[order[i]], &problem.rows[row], &problem.load[row]);
+            row += rows_of(&j->contacts[order[i]]);
         }
         set_tolerances(j, zone, &problem);
         double *all_loads = (double *)r->all_loads.data + zone->row_first;
@@ -389,8 +418,8 @@ static void solve_zone(void *data, size_t index, unsigned worker)
             all_loads[problem.rows[k].origin] = problem.load[k];
         row = 0;
         for (uint32_t i = 0; i < zone->contact_count; i++) {
-            keep_loads(&j->contacts[order[i]], fenced, &all_loads[row]);
-            row += rows_of(&j->contacts[order[i]], fenced);
+            keep_loads(&j->contacts[order[i]], &all_loads[row]);
+            row += rows_of(&j->contacts[order[i]]);
         }
     }
     account(j, zone, (const double (*)[3])problem.solution);
@@ -405,7 +434,7 @@ rdl_status rdli_response_reserve(rdli_response *r)
     bool fits = rdli_room_reserve(r->memory, &r->rows, rows, sizeof(rdli_row), false)
         && rdli_room_reserve(r->memory, &r->loads, rows, sizeof(double), false)
         && rdli_room_reserve(r->memory, &r->all_loads, rows, sizeof(double), false)
-        && rdli_room_reserve(r->memory, &r->row_work, 4 * rows, sizeof(double), false)
+        && rdli_room_reserve(r->memory, &r->row_work, RDLI_SOLVE_WORK * rows, sizeof(double), false)
         && rdli_room_reserve(r->memory, &r->inverse_mass, vertices, sizeof(double), false)
         && rdli_room_reserve(r->memory, &r->targets, vertices, 3 * sizeof(double), false)
         && rdli_room_reserve(r->memory, &r->solutions, vertices, 3 * sizeof(double), false)
@@ -422,7 +451,7 @@ rdl_status rdli_zones_solve(rdli_response *r, const rdli_piece *piece, rdli_cont
         zones[z].row_first = (uint32_t)r->row_total;
         zones[z].row_count = 0;
         for (uint32_t i = 0; i < zones[z].contact_count; i++)
-            zones[z].row_count += rows_of(&contacts[order[zones[z].contact_first + i]], zones[z].level >= RDL_LEVEL_FENCE);
+            zones[z].row_count += rows_of(&contacts[order[zones[z].contact_first + i]]);
         r->row_total += zones[z].row_count;
     }
     r->dense_each = 0;
