@@ -4,13 +4,22 @@
 #include "broad/marks.h"
 
 enum { VERTICES, EDGES, TRIANGLES, KINDS };
+enum { POINT_TRIANGLE, EDGE_EDGE, EDGE_TRIANGLE, QUERIES };
+
+/* Where the search for one kind of pairs stands. */
+typedef struct stretch {
+    uint32_t next, end; /* firsts that are to come */
+    uint32_t length;    /* firsts whose pairs are likely to fit the budget */
+} stretch;
 
 struct rdli_broad {
     rdli_memory *memory;
     rdli_workers *workers;
     const rdli_kernels *kernels;
     rdli_marked_tree trees[KINDS];
-    rdli_query queries[2]; /* point-triangle, edge-edge */
+    rdli_query queries[QUERIES];
+    stretch stretches[QUERIES];
+    size_t pairs_max;
     rdli_apart apart;
     rdli_room moved_room;
     bool settled; /* all trees are those of the last call's boxes */
@@ -50,6 +59,11 @@ static bool keep_point_triangle(const void *mesh, const uint32_t *a, const uint3
     return none_attached(mesh, a, 1, b, 3);
 }
 
+static bool keep_edge_triangle(const void *mesh, const uint32_t *a, const uint32_t *b)
+{
+    return none_attached(mesh, a, 2, b, 3);
+}
+
 static bool any_muted(const rdli_mesh *mesh)
 {
     uint64_t bits = (uint64_t)mesh->part_count * mesh->part_count;
@@ -59,24 +73,70 @@ static bool any_muted(const rdli_mesh *mesh)
     return false;
 }
 
-/* Point-triangle (which = 0) or edge-edge pairs (1). */
-static rdl_status collect(rdli_broad *broad, unsigned which, const rdli_mesh *mesh, const rdli_pair **list, size_t *count)
+/* Pairs of firsts in [lo, hi). */
+static rdl_status collect(rdli_broad *broad, unsigned which, const rdli_mesh *mesh, uint32_t lo, uint32_t hi,
+                          size_t pairs_max, const rdli_pair **list, size_t *count)
 {
+    static const struct {
+        unsigned a, b;
+        rdli_keep *keep;
+    } kinds[QUERIES] = {
+        {VERTICES, TRIANGLES, keep_point_triangle}, {EDGES, EDGES, keep_edge_edge}, {EDGES, TRIANGLES, keep_edge_triangle}};
     rdli_query *query = &broad->queries[which];
-    query->a = broad->trees[which == 0 ? VERTICES : EDGES].side;
-    query->b = broad->trees[which == 0 ? TRIANGLES : EDGES].side;
-    query->self = which == 1;
-    query->range_lo = 0;
-    query->range_hi = INT32_MAX;
-    query->pairs_max = SIZE_MAX;
+    query->a = broad->trees[kinds[which].a].side;
+    query->b = broad->trees[kinds[which].b].side;
+    query->self = which == EDGE_EDGE;
+    query->range_lo = lo;
+    query->range_hi = hi;
+    query->pairs_max = pairs_max;
     query->muted = mesh->muted;
     query->part_count = mesh->part_count;
-    query->keep = which == 0 ? keep_point_triangle : keep_edge_edge;
+    query->keep = kinds[which].keep;
     query->rules = mesh;
-    query->records = broad->apart.records;
-    query->vertices_b = which == 0 ? (const uint32_t *)mesh->triangles : (const uint32_t *)mesh->edges;
+    query->records = which == EDGE_TRIANGLE ? NULL : broad->apart.records;
+    query->vertices_b = which == EDGE_EDGE ? (const uint32_t *)mesh->edges : (const uint32_t *)mesh->triangles;
     rdl_status status = rdli_query_run(broad->memory, broad->workers, broad->kernels, query, count);
     return status == RDL_OK ? rdli_rows_list(broad->memory, broad->workers, &query->rows, list) : status;
+}
+
+/* The next stretch of firsts whose pairs are within the budget. What fitted is a good guess for the next call. */
+static rdl_status next_stretch(rdli_broad *broad, unsigned which, const rdli_mesh *mesh, const rdli_pair **list, size_t *count)
+{
+    stretch *s = &broad->stretches[which];
+    while (s->next < s->end) {
+        const uint32_t left = s->end - s->next, span = left < s->length ? left : s->length;
+        size_t found;
+        rdl_status status = collect(broad, which, mesh, s->next, s->next + span, span > 1 ? broad->pairs_max : SIZE_MAX, list,
+                                    &found);
+        if (status == RDL_TOO_LARGE) { /* at least halved, so this ends */
+            const double fitting = (double)span * ((double)broad->pairs_max / (double)found);
+            s->length = fitting < 0.5 * span ? (uint32_t)fitting : span / 2;
+            s->length += s->length == 0;
+            continue;
+        }
+        if (status == RDL_OK) {
+            s->next += span;
+            *count = found;
+            if (found < broad->pairs_max / 4)
+                s->length = span < UINT32_MAX / 2 ? 2 * span : UINT32_MAX;
+        }
+        return status;
+    }
+    return RDL_OK;
+}
+
+rdl_status rdli_broad_more(rdli_broad *broad, const rdli_mesh *mesh, rdli_pairs *pairs)
+{
+    stretch *s = broad->stretches;
+    rdli_pairs found = {0};
+    rdl_status status = next_stretch(broad, POINT_TRIANGLE, mesh, &found.point_triangle, &found.point_triangle_count);
+    if (status == RDL_OK && s[POINT_TRIANGLE].next == s[POINT_TRIANGLE].end)
+        status = next_stretch(broad, EDGE_EDGE, mesh, &found.edge_edge, &found.edge_edge_count);
+    if (status != RDL_OK)
+        return status;
+    found.more = s[POINT_TRIANGLE].next < s[POINT_TRIANGLE].end || s[EDGE_EDGE].next < s[EDGE_EDGE].end;
+    *pairs = found;
+    return RDL_OK;
 }
 
 rdl_status rdli_broad_create(rdli_memory *memory, rdli_workers *workers, rdli_broad **broad)
@@ -88,6 +148,7 @@ rdl_status rdli_broad_create(rdli_memory *memory, rdli_workers *workers, rdli_br
     made->memory = memory;
     made->workers = workers;
     made->kernels = rdli_kernels_choose(true);
+    rdli_broad_limit(made, RDLI_PAIRS_MAX);
     *broad = made;
     return RDL_OK;
 }
@@ -98,7 +159,7 @@ void rdli_broad_destroy(rdli_broad *broad)
         return;
     for (unsigned kind = 0; kind < KINDS; kind++)
         rdli_marks_release(broad->memory, &broad->trees[kind]);
-    for (unsigned which = 0; which < 2; which++)
+    for (unsigned which = 0; which < QUERIES; which++)
         rdli_query_release(broad->memory, &broad->queries[which]);
     rdli_room_release(broad->memory, &broad->apart.record_room);
     rdli_room_release(broad->memory, &broad->moved_room);
@@ -108,6 +169,13 @@ void rdli_broad_destroy(rdli_broad *broad)
 void rdli_broad_use_vector(rdli_broad *broad, bool vector)
 {
     broad->kernels = rdli_kernels_choose(vector);
+}
+
+void rdli_broad_limit(rdli_broad *broad, size_t pairs_max)
+{
+    broad->pairs_max = pairs_max;
+    for (unsigned which = 0; which < QUERIES; which++)
+        broad->stretches[which].length = UINT32_MAX;
 }
 
 /* motion NULL: no certificate. */
@@ -120,7 +188,6 @@ static rdl_status find_pairs(rdli_broad *broad, const rdli_mesh *mesh, const rdl
         {(const uint32_t *)mesh->triangles, 3, mesh->triangle_count, boxes->triangles},
     };
     rdli_moment moment = {mesh, awake, any_muted(mesh), NULL};
-    rdli_pairs found = {0};
     rdl_status status = RDL_OK;
     if (!rdli_room_reserve(broad->memory, &broad->moved_room, mesh->vertex_count, 1, false))
         return RDL_NO_MEMORY;
@@ -134,13 +201,12 @@ static rdl_status find_pairs(rdli_broad *broad, const rdli_mesh *mesh, const rdl
     broad->apart.records = NULL;
     if (status == RDL_OK && motion != NULL)
         status = rdli_apart_fill(broad->memory, broad->workers, &broad->apart, mesh, motion, &broad->trees[VERTICES].tree);
-    if (status == RDL_OK)
-        status = collect(broad, 0, mesh, &found.point_triangle, &found.point_triangle_count);
-    if (status == RDL_OK)
-        status = collect(broad, 1, mesh, &found.edge_edge, &found.edge_edge_count);
-    if (status == RDL_OK)
-        *pairs = found;
-    return status;
+    if (status != RDL_OK)
+        return status;
+    broad->stretches[POINT_TRIANGLE].next = broad->stretches[EDGE_EDGE].next = 0;
+    broad->stretches[POINT_TRIANGLE].end = mesh->vertex_count;
+    broad->stretches[EDGE_EDGE].end = mesh->edge_count;
+    return rdli_broad_more(broad, mesh, pairs);
 }
 
 rdl_status rdli_broad_near_pairs(rdli_broad *broad, const rdli_mesh *mesh, const rdli_motion *motion,
@@ -153,4 +219,31 @@ rdl_status rdli_broad_pairs(rdli_broad *broad, const rdli_mesh *mesh, const rdli
                             rdli_pairs *pairs)
 {
     return find_pairs(broad, mesh, NULL, boxes, awake, pairs);
+}
+
+rdl_status rdli_broad_couples_begin(rdli_broad *broad, const rdli_mesh *mesh, const rdli_boxes *boxes)
+{
+    const rdli_elements elements[KINDS] = {
+        [EDGES] = {(const uint32_t *)mesh->edges, 2, mesh->edge_count, boxes->edges},
+        [TRIANGLES] = {(const uint32_t *)mesh->triangles, 3, mesh->triangle_count, boxes->triangles},
+    };
+    rdl_status status = RDL_OK;
+    broad->settled = false;
+    for (unsigned kind = EDGES; kind < KINDS && status == RDL_OK; kind++) {
+        rdli_moment moment = {mesh, NULL, any_muted(mesh), NULL};
+        status = rdli_marks_prepare(broad->memory, broad->workers, broad->kernels, &broad->trees[kind], &elements[kind],
+                                    &moment);
+    }
+    broad->stretches[EDGE_TRIANGLE].next = 0;
+    broad->stretches[EDGE_TRIANGLE].end = mesh->edge_count;
+    return status;
+}
+
+rdl_status rdli_broad_couples(rdli_broad *broad, const rdli_mesh *mesh, const rdli_pair **couples, size_t *count, bool *more)
+{
+    const stretch *s = &broad->stretches[EDGE_TRIANGLE];
+    *count = 0;
+    rdl_status status = next_stretch(broad, EDGE_TRIANGLE, mesh, couples, count);
+    *more = s->next < s->end;
+    return status;
 }

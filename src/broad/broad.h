@@ -8,6 +8,10 @@
 #include "flow/motion.h"
 #include "flow/pairs.h"
 
+/* 16 million pairs of a kind take 200 MiB as rows and as a list. A step of a million elements in touch has some hundred
+ * thousand, wound up tightly fourteen million. */
+enum { RDLI_PAIRS_MAX = 1 << 24 };
+
 /* Trees kept from step to step, and the room of the pair list. */
 typedef struct rdli_broad rdli_broad;
 
@@ -30,5 +34,19 @@ rdl_status rdli_broad_near_pairs(rdli_broad *broad, const rdli_mesh *mesh, const
  * Errors: RDL_NO_MEMORY, RDL_CANCELLED. Allocates only when it needs more room than ever before. */
 rdl_status rdli_broad_pairs(rdli_broad *broad, const rdli_mesh *mesh, const rdli_boxes *boxes, const uint8_t *awake,
                             rdli_pairs *pairs);
+
+/* Where the pairs of a kind exceed the budget, the two functions above give the first part of the list and set pairs->more;
+ * this one gives the next part, with the same mesh, and so on until more is false. The parts one after the other, kind by
+ * kind, are the whole list. Same errors. */
+rdl_status rdli_broad_more(rdli_broad *broad, const rdli_mesh *mesh, rdli_pairs *pairs);
+/* The budget: pairs of one kind that are kept at once. The pairs of one element are never parted, so it may be exceeded by
+ * these. Starts at RDLI_PAIRS_MAX. */
+void rdli_broad_limit(rdli_broad *broad, size_t pairs_max);
+
+/* Looks for (edge, triangle) couples with overlapping boxes, by the same rules; mesh->driven NULL: nothing is driven.
+ * boxes->vertices is not read. Errors: RDL_NO_MEMORY. */
+rdl_status rdli_broad_couples_begin(rdli_broad *broad, const rdli_mesh *mesh, const rdli_boxes *boxes);
+/* The first part of their list, then the next, while *more; sorted by (edge, triangle). Errors as above. */
+rdl_status rdli_broad_couples(rdli_broad *broad, const rdli_mesh *mesh, const rdli_pair **couples, size_t *count, bool *more);
 
 #endif

@@ -352,8 +352,10 @@ static void match_group(rdli_query *query, uint32_t group, unsigned worker)
     const uint32_t packs = query->a.tree->pack_count[0], first = group * RDLI_WIDE;
     const unsigned ca = query->a.corner_count, cb = query->b.corner_count;
     for (uint32_t a = first; a < packs && a < first + RDLI_WIDE; a++) {
-        if (!query->self)
+        if (!query->self && ca == 1)
             match_pack(query, a, listed, worker, false, 1, 3);
+        else if (!query->self)
+            match_pack(query, a, listed, worker, false, 2, 3);
         else if (ca == 0)
             match_pack(query, a, listed, worker, true, 0, 0);
         else if (ca == 2)

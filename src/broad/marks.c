@@ -39,6 +39,11 @@ static bool has_attachment(const rdli_mesh *mesh, uint32_t vertex)
     return mesh->attachment_count != 0 && mesh->attached_first[vertex] != mesh->attached_first[vertex + 1];
 }
 
+static bool is_driven(const rdli_mesh *mesh, uint32_t vertex)
+{
+    return mesh->driven != NULL && mesh->driven[vertex] != 0;
+}
+
 static rdli_marks mark_elements(const mark_job *job, size_t pack)
 {
     const unsigned corner_count = job->elements->corner_count;
@@ -47,7 +52,7 @@ static rdli_marks mark_elements(const mark_job *job, size_t pack)
     for (unsigned c = 0; c < corner_count; c++)
         for (unsigned i = 0; i < RDLI_WIDE; i++) {
             uint32_t vertex = corners[c * RDLI_WIDE + i];
-            driven &= ~((unsigned)(job->moment->mesh->driven[vertex] == 0) << i);
+            driven &= ~((unsigned)!is_driven(job->moment->mesh, vertex) << i);
             awake |= (unsigned)(job->moment->awake != NULL && job->moment->awake[vertex] != 0) << i;
             attached |= (unsigned)has_attachment(job->moment->mesh, vertex) << i;
         }
@@ -200,7 +205,7 @@ static void find_classes(uint8_t *classes, const rdli_elements *elements, const 
         const uint32_t *vertices = elements->vertices == NULL ? &e : elements->vertices + (size_t)e * elements->corner_count;
         unsigned driven = 1;
         for (unsigned c = 0; c < elements->corner_count; c++)
-            driven &= mesh->driven[vertices[c]] != 0;
+            driven &= is_driven(mesh, vertices[c]);
         classes[e] = (uint8_t)(driven | (by_part ? mesh->vertex_part[vertices[0]] << 1 : 0));
     }
 }

@@ -131,7 +131,7 @@ rdl_status rdli_query_run(rdli_memory *memory, rdli_workers *workers, const rdli
         if (need > query->list_room - RDLI_WIDE) {
             query->list_room = (need + need / 4 + 3 * RDLI_WIDE) / RDLI_WIDE * RDLI_WIDE;
             status = open_scratch(memory, query, threads);
-        } else if (query->rows.full && found > query->pairs_max) {
+        } else if (found > query->pairs_max) {
             status = RDL_TOO_LARGE;
         } else if (query->rows.full) {
             status = open_rows(memory, query, threads, found + found / 8);

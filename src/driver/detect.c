@@ -40,6 +40,7 @@ typedef struct sweep {
     rdli_counts *counts; /* per chunk */
     const uint32_t *indices;
     rdli_hit *hits;
+    size_t hit_count;
 } sweep;
 
 static void pair_at(const sweep *s, size_t index, uint32_t *kind, rdli_pair *pair)
@@ -161,7 +162,7 @@ static void detail_chunk(void *data, size_t chunk, unsigned worker)
     (void)worker;
     sweep *s = data;
     rdl_engine *engine = s->engine;
-    size_t end = (chunk + 1) * CHUNK < engine->hit_count ? (chunk + 1) * CHUNK : engine->hit_count;
+    size_t end = (chunk + 1) * CHUNK < s->hit_count ? (chunk + 1) * CHUNK : s->hit_count;
     for (size_t i = chunk * CHUNK; i < end; i++) {
         rdli_examined examined;
         rdli_pair pair;
@@ -194,8 +195,14 @@ static void add_counts(rdli_counts *sum, const rdli_counts *part)
     }
 }
 
+/* Of one part of the pair list; its hits are appended. */
 static rdl_status find_touches(rdl_engine *engine, sweep *s)
 {
+    s->total = s->pairs.point_triangle_count + s->pairs.edge_edge_count;
+    if (s->total == 0)
+        return RDL_OK;
+    if (s->total > UINT32_MAX)
+        return RDL_TOO_LARGE;
     size_t chunks = (s->total + CHUNK - 1) / CHUNK;
     if (!rdli_room_reserve(&engine->memory, &engine->flags, s->total, 1, false)
         || !rdli_room_reserve(&engine->memory, &engine->chunk_counts, chunks, sizeof(rdli_counts), false))
@@ -206,20 +213,24 @@ static rdl_status find_touches(rdl_engine *engine, sweep *s)
     for (size_t c = 0; c < chunks; c++)
         add_counts(&engine->counts, &s->counts[c]);
     size_t count = 0;
+    const size_t before = engine->hit_count;
     for (size_t i = 0; i < s->total; i++)
         count += s->flags[i] == PAIR_HIT;
     if (!rdli_room_reserve(&engine->memory, &engine->indices, count, sizeof(uint32_t), false)
-        || !rdli_room_reserve(&engine->memory, &engine->hits, count, sizeof(rdli_hit), false))
+        || !rdli_room_reserve(&engine->memory, &engine->hits, before + count, sizeof(rdli_hit),
+                              before > 0))
         return RDL_NO_MEMORY;
     uint32_t *indices = engine->indices.data;
-    engine->hit_count = 0;
+    size_t next = 0;
     for (size_t i = 0; i < s->total; i++)
         if (s->flags[i] == PAIR_HIT)
-            indices[engine->hit_count++] = (uint32_t)i;
+            indices[next++] = (uint32_t)i;
     s->indices = indices;
-    s->hits = engine->hits.data;
+    s->hits = (rdli_hit *)engine->hits.data + before;
+    s->hit_count = count;
     rdli_parallel_for(engine->workers, (count + CHUNK - 1) / CHUNK, detail_chunk, s);
-    for (size_t h = 0; h < engine->hit_count; h++)
+    engine->hit_count = before + count;
+    for (size_t h = 0; h < count; h++)
         engine->violation_count += !s->hits[h].close;
     return RDL_OK;
 }
@@ -238,16 +249,23 @@ rdl_status rdli_detect(rdl_engine *engine, const rdli_look *look)
     sweep s = { .engine = engine, .look = look };
     rdl_status status = rdli_broad_near_pairs(engine->broad, &mesh, &motion, &engine->boxes, &s.pairs);
     double paired = rdli_now();
-    s.total = s.pairs.point_triangle_count + s.pairs.edge_edge_count;
-    if (status == RDL_OK && s.total > UINT32_MAX)
-        status = RDL_TOO_LARGE;
-    if (status == RDL_OK && s.total > 0)
-        status = find_touches(engine, &s);
     engine->seconds[RDL_TIME_BOXES] += boxed - begun;
     engine->seconds[RDL_TIME_PAIRS] += paired - boxed;
-    engine->seconds[RDL_TIME_TOUCHES] += rdli_now() - paired;
     if (status == RDL_OK)
-        rdli_watch_detection(engine, &s.pairs);
+        rdli_watch_boxes(engine);
+    while (status == RDL_OK) {
+        rdli_watch_pairs(engine, &s.pairs);
+        status = find_touches(engine, &s);
+        double decided = rdli_now();
+        engine->seconds[RDL_TIME_TOUCHES] += decided - paired;
+        if (status != RDL_OK || !s.pairs.more)
+            break;
+        status = rdli_broad_more(engine->broad, &mesh, &s.pairs);
+        paired = rdli_now();
+        engine->seconds[RDL_TIME_PAIRS] += paired - decided;
+    }
+    if (status == RDL_OK)
+        rdli_watch_touches(engine);
     engine->watch_detections++;
     return status;
 }

@@ -1,20 +1,19 @@
-/* driver/rest.c: see rest.h. One tree over edges and triangles; exact predicate for each edge-triangle couple. */
+/* driver/rest.c: see rest.h. The broad phase finds the couples, an exact predicate decides each. */
 #include "driver/rest.h"
 
-#include "broad/selfpairs.h"
-#include "intake/intake.h"
+#include "broad/broad.h"
 #include "narrow/narrow.h"
 
 typedef struct search {
     const rdli_mesh *mesh;
     const double (*positions)[3];
-    bool include_driven;
-    const rdli_pair *pairs;
-    size_t pair_count;
+    rdli_boxes boxes;
+    const rdli_pair *couples;
+    size_t couple_count;
     uint8_t *relation;
 } search;
 
-enum { CHUNK = 512 };
+enum { CHUNK = 512, BOX_CHUNK = 4096 }; /* couples, and elements, per task */
 
 static float down(double x)
 {
@@ -40,74 +39,73 @@ static void box_of(const double (*positions)[3], const uint32_t *corner, int cor
     }
 }
 
-static bool attached(const rdli_mesh *mesh, uint32_t a, uint32_t b)
+/* Chunks of edges, then of triangles, in one loop. */
+static void box_chunk(void *data, size_t chunk, unsigned worker)
 {
-    for (uint32_t i = mesh->attached_first[a]; i < mesh->attached_first[a + 1]; i++)
-        if (mesh->attached[i] == b)
-            return true;
-    return false;
-}
-
-bool rdli_rest_excluded(const rdli_mesh *mesh, uint32_t edge, uint32_t triangle, bool include_driven)
-{
-    const uint32_t *e = mesh->edges[edge], *t = mesh->triangles[triangle];
-    bool driven = mesh->driven[e[0]] && mesh->driven[e[1]];
-    for (int j = 0; j < 3; j++)
-        driven = driven && mesh->driven[t[j]];
-    if (driven && !include_driven)
-        return true;
-    if (rdli_is_muted(mesh->muted, mesh->part_count, mesh->vertex_part[e[0]], mesh->vertex_part[t[0]]))
-        return true;
-    for (int i = 0; i < 2; i++)
-        for (int j = 0; j < 3; j++)
-            if (e[i] == t[j] || (mesh->attachment_count > 0 && attached(mesh, e[i], t[j])))
-                return true;
-    return false;
+    (void)worker;
+    const search *s = data;
+    const rdli_mesh *mesh = s->mesh;
+    const size_t edge_chunks = ((size_t)mesh->edge_count + BOX_CHUNK - 1) / BOX_CHUNK;
+    const bool edges = chunk < edge_chunks;
+    const size_t first = (edges ? chunk : chunk - edge_chunks) * BOX_CHUNK, count = edges ? mesh->edge_count : mesh->triangle_count;
+    for (size_t i = first; i < first + BOX_CHUNK && i < count; i++)
+        if (edges)
+            box_of(s->positions, mesh->edges[i], 2, &s->boxes.edges[i]);
+        else
+            box_of(s->positions, mesh->triangles[i], 3, &s->boxes.triangles[i]);
 }
 
 static void relate_chunk(void *data, size_t chunk, unsigned worker)
 {
     (void)worker;
     search *s = data;
-    const rdli_mesh *mesh = s->mesh;
-    size_t end = (chunk + 1) * CHUNK < s->pair_count ? (chunk + 1) * CHUNK : s->pair_count;
+    size_t end = (chunk + 1) * CHUNK < s->couple_count ? (chunk + 1) * CHUNK : s->couple_count;
     for (size_t i = chunk * CHUNK; i < end; i++) {
-        uint32_t a = s->pairs[i].first, b = s->pairs[i].second;
-        s->relation[i] = RDL_REST_APART;
-        if (a >= mesh->edge_count || b < mesh->edge_count) /* edges come first: only edge-triangle couples */
-            continue;
-        uint32_t triangle = b - mesh->edge_count;
-        if (rdli_rest_excluded(mesh, a, triangle, s->include_driven))
-            continue;
+        const uint32_t *e = s->mesh->edges[s->couples[i].first], *t = s->mesh->triangles[s->couples[i].second];
         double edge[2][3], corner[3][3];
         for (int k = 0; k < 2; k++)
-            memcpy(edge[k], s->positions[mesh->edges[a][k]], sizeof edge[k]);
+            memcpy(edge[k], s->positions[e[k]], sizeof edge[k]);
         for (int k = 0; k < 3; k++)
-            memcpy(corner[k], s->positions[mesh->triangles[triangle][k]], sizeof corner[k]);
+            memcpy(corner[k], s->positions[t[k]], sizeof corner[k]);
         s->relation[i] = (uint8_t)rdli_edge_against_triangle((const double (*)[3])edge, (const double (*)[3])corner);
     }
 }
 
-static rdl_status collect(rdli_memory *memory, rdli_workers *workers, search *s, rdli_room *out, size_t *count)
+/* Decides the couples and appends to the rows in *out. */
+static rdl_status relate(rdli_memory *memory, rdli_workers *workers, search *s, rdli_room *relations, rdli_room *out,
+                         size_t *count)
 {
-    rdli_room relations = { NULL, 0 };
-    if (!rdli_room_reserve(memory, &relations, s->pair_count, 1, false))
+    if (!rdli_room_reserve(memory, relations, s->couple_count, 1, false))
         return RDL_NO_MEMORY;
-    s->relation = relations.data;
-    rdli_parallel_for(workers, (s->pair_count + CHUNK - 1) / CHUNK, relate_chunk, s);
-    size_t found = 0;
-    for (size_t i = 0; i < s->pair_count; i++)
+    s->relation = relations->data;
+    rdli_parallel_for(workers, (s->couple_count + CHUNK - 1) / CHUNK, relate_chunk, s);
+    size_t found = *count;
+    for (size_t i = 0; i < s->couple_count; i++)
         found += s->relation[i] != RDL_REST_APART;
-    rdl_status status = rdli_room_reserve(memory, out, found, sizeof(rdl_tangle), false) ? RDL_OK : RDL_NO_MEMORY;
+    if (!rdli_room_reserve(memory, out, found, sizeof(rdl_tangle), true))
+        return RDL_NO_MEMORY;
     rdl_tangle *items = out->data;
-    *count = 0;
-    for (size_t i = 0; status == RDL_OK && i < s->pair_count; i++)
+    for (size_t i = 0; i < s->couple_count; i++)
         if (s->relation[i] != RDL_REST_APART) {
             rdl_tangle *item = &items[(*count)++];
-            memcpy(item->edge, s->mesh->edges[s->pairs[i].first], sizeof item->edge);
-            item->triangle = s->pairs[i].second - s->mesh->edge_count;
+            memcpy(item->edge, s->mesh->edges[s->couples[i].first], sizeof item->edge);
+            item->triangle = s->couples[i].second;
             item->relation = s->relation[i];
         }
+    return RDL_OK;
+}
+
+static rdl_status search_all(rdli_memory *memory, rdli_workers *workers, rdli_broad *broad, search *s, rdli_room *out,
+                             size_t *count)
+{
+    rdli_room relations = { NULL, 0 };
+    bool more = true;
+    rdl_status status = rdli_broad_couples_begin(broad, s->mesh, &s->boxes);
+    while (status == RDL_OK && more) {
+        status = rdli_broad_couples(broad, s->mesh, &s->couples, &s->couple_count, &more);
+        if (status == RDL_OK && s->couple_count > 0)
+            status = relate(memory, workers, s, &relations, out, count);
+    }
     rdli_room_release(memory, &relations);
     return status;
 }
@@ -116,24 +114,23 @@ rdl_status rdli_rest_find(rdli_memory *memory, rdli_workers *workers, const rdli
                           const double (*positions)[3], bool include_driven, rdli_room *out, size_t *count)
 {
     *count = 0;
-    uint32_t total = mesh->edge_count + mesh->triangle_count;
     if (mesh->triangle_count == 0)
         return RDL_OK;
+    rdli_mesh ruled = *mesh;
+    if (include_driven)
+        ruled.driven = NULL;
+    const size_t total = (size_t)mesh->edge_count + mesh->triangle_count;
+    const size_t chunks = total / BOX_CHUNK + 2;
     rdl_box *boxes = rdli_take(memory, total, sizeof *boxes);
     if (boxes == NULL)
         return RDL_NO_MEMORY;
-    for (uint32_t e = 0; e < mesh->edge_count; e++)
-        box_of(positions, mesh->edges[e], 2, &boxes[e]);
-    for (uint32_t t = 0; t < mesh->triangle_count; t++)
-        box_of(positions, mesh->triangles[t], 3, &boxes[mesh->edge_count + t]);
-    rdli_selfpairs *pairs = NULL;
-    search s = { .mesh = mesh, .positions = positions, .include_driven = include_driven };
-    rdl_status status = rdli_selfpairs_create(memory, workers, boxes, total, &pairs);
+    search s = { .mesh = &ruled, .positions = positions, .boxes = { NULL, boxes, boxes + mesh->edge_count } };
+    rdli_parallel_for(workers, chunks, box_chunk, &s);
+    rdli_broad *broad = NULL;
+    rdl_status status = rdli_broad_create(memory, workers, &broad);
     if (status == RDL_OK)
-        status = rdli_selfpairs_find(pairs, NULL, &s.pairs, &s.pair_count);
-    if (status == RDL_OK)
-        status = collect(memory, workers, &s, out, count);
-    rdli_selfpairs_destroy(pairs);
+        status = search_all(memory, workers, broad, &s, out, count);
+    rdli_broad_destroy(broad);
     rdli_give(memory, boxes, total, sizeof *boxes);
     return status;
 }

@@ -12,7 +12,4 @@
 rdl_status rdli_rest_find(rdli_memory *memory, rdli_workers *workers, const rdli_mesh *mesh,
                           const double (*positions)[3], bool include_driven, rdli_room *out, size_t *count);
 
-/* True where the rules leave the couple out. */
-bool rdli_rest_excluded(const rdli_mesh *mesh, uint32_t edge, uint32_t triangle, bool include_driven);
-
 #endif

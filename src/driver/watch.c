@@ -51,11 +51,41 @@ static void tell_pairs(teller *t, uint32_t kind, const rdli_pair *pairs, size_t 
         tell(t, RDL_EVENT_PAIR, kind, pairs[i].first, pairs[i].second);
 }
 
-static void tell_touches(teller *t)
+void rdli_watch_boxes(const rdl_engine *engine)
 {
-    const rdli_hit *hits = t->engine->hits.data;
-    for (size_t h = 0; h < t->engine->hit_count; h++) {
-        rdl_event *event = tell(t, RDL_EVENT_TOUCH, hits[h].kind, hits[h].first, hits[h].second);
+    if (!engine->watch_events || engine->watch_detections != 0)
+        return;
+    teller t;
+    t.engine = engine;
+    t.count = 0;
+    tell_boxes(&t, 0, engine->boxes.vertices, engine->mesh.vertex_count);
+    tell_boxes(&t, 1, engine->boxes.edges, engine->mesh.edge_count);
+    tell_boxes(&t, 2, engine->boxes.triangles, engine->mesh.triangle_count);
+    flush(&t);
+}
+
+void rdli_watch_pairs(const rdl_engine *engine, const rdli_pairs *pairs)
+{
+    if (!engine->watch_events)
+        return;
+    teller t;
+    t.engine = engine;
+    t.count = 0;
+    tell_pairs(&t, RDL_POINT_TRIANGLE, pairs->point_triangle, pairs->point_triangle_count);
+    tell_pairs(&t, RDL_EDGE_EDGE, pairs->edge_edge, pairs->edge_edge_count);
+    flush(&t);
+}
+
+void rdli_watch_touches(const rdl_engine *engine)
+{
+    if (!engine->watch_events)
+        return;
+    teller t;
+    t.engine = engine;
+    t.count = 0;
+    const rdli_hit *hits = engine->hits.data;
+    for (size_t h = 0; h < engine->hit_count; h++) {
+        rdl_event *event = tell(&t, RDL_EVENT_TOUCH, hits[h].kind, hits[h].first, hits[h].second);
         event->value[0] = hits[h].time;
         event->value[1] = hits[h].gap;
         event->value[2] = hits[h].floor;
@@ -63,23 +93,6 @@ static void tell_touches(teller *t)
         event->value[4] = (hits[h].reaches_path ? RDL_TOUCH_PATH : 0) + (hits[h].below_end ? RDL_TOUCH_END : 0) +
                           (hits[h].contact_at_start ? RDL_TOUCH_AT_START : 0) + (hits[h].close ? RDL_TOUCH_CLOSE : 0);
     }
-}
-
-void rdli_watch_detection(const rdl_engine *engine, const rdli_pairs *pairs)
-{
-    if (!engine->watch_events)
-        return;
-    teller t;
-    t.engine = engine;
-    t.count = 0;
-    if (engine->watch_detections == 0) {
-        tell_boxes(&t, 0, engine->boxes.vertices, engine->mesh.vertex_count);
-        tell_boxes(&t, 1, engine->boxes.edges, engine->mesh.edge_count);
-        tell_boxes(&t, 2, engine->boxes.triangles, engine->mesh.triangle_count);
-    }
-    tell_pairs(&t, RDL_POINT_TRIANGLE, pairs->point_triangle, pairs->point_triangle_count);
-    tell_pairs(&t, RDL_EDGE_EDGE, pairs->edge_edge, pairs->edge_edge_count);
-    tell_touches(&t);
     flush(&t);
 }
 

@@ -6,7 +6,9 @@
 #include "flow/pairs.h"
 
 /* Events; nothing happens where no watch wants any. */
-void rdli_watch_detection(const rdl_engine *engine, const rdli_pairs *pairs);
+void rdli_watch_boxes(const rdl_engine *engine); /* in a step's first detection */
+void rdli_watch_pairs(const rdl_engine *engine, const rdli_pairs *pairs); /* one part of the list */
+void rdli_watch_touches(const rdl_engine *engine);
 void rdli_watch_zones(const rdl_engine *engine);
 void rdli_watch_piece(const rdl_engine *engine, uint32_t what, double reached, double length);
 

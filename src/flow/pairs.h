@@ -2,6 +2,7 @@
 #ifndef RDLI_FLOW_PAIRS_H
 #define RDLI_FLOW_PAIRS_H
 
+#include <stdbool.h>
 #include <stddef.h>
 #include <stdint.h>
 
@@ -12,6 +13,7 @@ typedef struct rdli_pair {
 typedef struct rdli_pairs {
     const rdli_pair *point_triangle, *edge_edge;
     size_t point_triangle_count, edge_edge_count;
+    bool more; /* a part of the list: the pairs of each kind go on in the next part */
 } rdli_pairs;
 
 #endif

@@ -134,6 +134,26 @@ void free_scene(scene *s)
     free(s);
 }
 
+bool wanted(const scene *s, const uint8_t *awake, const uint32_t *a, unsigned na, const uint32_t *b, unsigned nb)
+{
+    bool any_free = false, any_awake = awake == NULL;
+    for (unsigned i = 0; i < na + nb; i++) {
+        uint32_t v = i < na ? a[i] : b[i - na];
+        any_free |= !s->driven[v];
+        any_awake |= awake != NULL && awake[v];
+    }
+    for (unsigned i = 0; i < na; i++)
+        for (unsigned j = 0; j < nb; j++) {
+            if (a[i] == b[j])
+                return false;
+            for (uint32_t r = s->attached_first[a[i]]; s->mesh.attachment_count != 0 && r < s->attached_first[a[i] + 1]; r++)
+                if (s->attached[r] == b[j])
+                    return false;
+        }
+    uint64_t bit = (uint64_t)s->vertex_part[a[0]] * PARTS + s->vertex_part[b[0]];
+    return any_free && any_awake && !(s->muted[bit / 64] >> bit % 64 & 1);
+}
+
 void mute(scene *s, uint32_t p, uint32_t q)
 {
     uint64_t bits[2] = {(uint64_t)p * PARTS + q, (uint64_t)q * PARTS + p};

@@ -27,6 +27,9 @@ void mute(scene *s, uint32_t p, uint32_t q);
 /* One attachment: vertices v < w. */
 void attach(scene *s, uint32_t v, uint32_t w);
 
+/* Whether the rules allow a pair of elements with the vertices a and b. */
+bool wanted(const scene *s, const uint8_t *awake, const uint32_t *a, unsigned na, const uint32_t *b, unsigned nb);
+
 typedef struct stage {
     ledger ledger;
     rdl_host host;

@@ -3,26 +3,6 @@
 
 #include "scene.h"
 
-static bool wanted(const scene *s, const uint8_t *awake, const uint32_t *a, unsigned na, const uint32_t *b, unsigned nb)
-{
-    bool any_free = false, any_awake = awake == NULL;
-    for (unsigned i = 0; i < na + nb; i++) {
-        uint32_t v = i < na ? a[i] : b[i - na];
-        any_free |= !s->driven[v];
-        any_awake |= awake != NULL && awake[v];
-    }
-    for (unsigned i = 0; i < na; i++)
-        for (unsigned j = 0; j < nb; j++) {
-            if (a[i] == b[j])
-                return false;
-            for (uint32_t r = s->attached_first[a[i]]; s->mesh.attachment_count != 0 && r < s->attached_first[a[i] + 1]; r++)
-                if (s->attached[r] == b[j])
-                    return false;
-        }
-    uint64_t bit = (uint64_t)s->vertex_part[a[0]] * PARTS + s->vertex_part[b[0]];
-    return any_free && any_awake && !(s->muted[bit / 64] >> bit % 64 & 1);
-}
-
 /* Compares with every pair, in order; returns how many there are. */
 static size_t check_pairs(const scene *s, const uint8_t *awake, const rdli_pairs *pairs)
 {
