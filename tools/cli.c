@@ -155,9 +155,12 @@ bool cli_settings(const cli_spec *spec, const cli_line *line, rdl_settings *sett
     const rdl_setting_info *table = rdl_settings_table(&count);
     for (size_t row = 0; row < count && row < CLI_SETTINGS_MAX; row++) {
         double value = 0;
-        if (line->settings[row] == NULL)
+        const char *text = line->settings[row];
+        if (text == NULL)
             continue;
-        if (!cli_number(spec, table[row].name, line->settings[row], table[row].lowest, table[row].highest,
+        if (strcmp(table[row].unit, "switch") == 0 && (strcmp(text, "on") == 0 || strcmp(text, "off") == 0))
+            text = strcmp(text, "on") == 0 ? "1" : "0";
+        if (!cli_number(spec, table[row].name, text, table[row].lowest, table[row].highest,
                         table[row].whole != 0, &value))
             return false;
         memcpy((char *)settings + table[row].offset, &value, sizeof value);

@@ -26,7 +26,7 @@ typedef struct cli_option {
     const char *help;
 } cli_option;
 
-enum { CLI_OPTIONS_MAX = 24, CLI_SETTINGS_MAX = 64, CLI_OPERANDS_MAX = 64 };
+enum { CLI_OPTIONS_MAX = 24, CLI_SETTINGS_MAX = 64, CLI_OPERANDS_MAX = 4096 };
 
 typedef struct cli_spec {
     const char *verb, *operands, *summary; /* "check", "SHOT", one sentence */
@@ -48,7 +48,7 @@ bool cli_read(const cli_spec *spec, int argc, char **argv, cli_line *line, int *
 /* A number of an option within bounds; whole: no fraction. False: an error was printed. */
 bool cli_number(const cli_spec *spec, const char *option, const char *text, double lowest, double highest, bool whole,
                 double *value);
-/* Settings of the command line over *settings. */
+/* Settings of the command line over *settings; switches take on and off as well as 1 and 0. */
 bool cli_settings(const cli_spec *spec, const cli_line *line, rdl_settings *settings);
 /* -1, or the index of the option. */
 int cli_find_option(const cli_spec *spec, const char *name);

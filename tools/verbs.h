@@ -8,5 +8,7 @@ int verb_info(int argc, char **argv);
 int verb_resolve(int argc, char **argv);
 int verb_check(int argc, char **argv);
 int verb_export(int argc, char **argv);
+int verb_replay(int argc, char **argv);
+int verb_reduce(int argc, char **argv);
 
 #endif

@@ -124,11 +124,18 @@ RDL_API rdl_status rdl_shot_read_frame(rdl_shot *shot, size_t frame, rdl_shot_fr
 /* ---- traces: what the stages of a frame's step did, in the shot's own group /trace ---- */
 
 struct rdl_event; /* raddle/watch.h */
-/* Puts the events of a frame into the shot PATH, in place of older ones. The file is copied, and replaced when the copy
- * is complete. note: UTF-8, kept with them. Errors: those of rdl_shot_open, RDL_OUT_OF_RANGE (no such frame),
- * RDL_BAD_ARGUMENT (PATH ends in .part), RDL_WRITE_FAILED. */
-RDL_API rdl_status rdl_shot_trace_write(const char *path, size_t frame, const struct rdl_event *events, size_t count,
-                                        const char *note, rdl_fault *fault);
+typedef struct rdl_shot_tracer rdl_shot_tracer;
+/* Puts events into the shot PATH, in place of older ones of the same frame: begin copies the file, finish replaces it by
+ * the copy. The shot may stay open for reading meanwhile. Errors: those of rdl_shot_open, RDL_BAD_ARGUMENT (an
+ * unfinished recording), RDL_OUT_OF_RANGE (no such frame), RDL_WRITE_FAILED. */
+RDL_API rdl_status rdl_shot_trace_begin(const char *path, rdl_shot_tracer **tracer, rdl_fault *fault);
+/* note: UTF-8, kept with the events, or NULL. */
+RDL_API rdl_status rdl_shot_trace_add(rdl_shot_tracer *tracer, size_t frame, const struct rdl_event *events,
+                                      size_t count, const char *note, rdl_fault *fault);
+/* The tracer is gone afterwards, also on error: the shot is then as it was. */
+RDL_API rdl_status rdl_shot_trace_finish(rdl_shot_tracer *tracer, rdl_fault *fault);
+/* Leaves the shot as it was. NULL is fine. */
+RDL_API void rdl_shot_trace_discard(rdl_shot_tracer *tracer);
 /* *events: owned by the shot until its next call of this kind; *count 0 where the frame has no trace. */
 RDL_API rdl_status rdl_shot_trace_read(rdl_shot *shot, size_t frame, const struct rdl_event **events, size_t *count,
                                        rdl_fault *fault);

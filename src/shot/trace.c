@@ -91,60 +91,142 @@ static bool write_events(hid_t group, const char *name, const rdl_event *events,
     return done;
 }
 
-static bool add_trace(const char *path, const char *name, const rdl_event *events, size_t count, const char *note)
+struct rdl_shot_tracer {
+    rdli_memory memory;
+    hid_t file, group;
+    char *path, *copy; /* the shot, and the file that is to take its name */
+    size_t path_bytes, copy_bytes, frame_count;
+};
+
+static void release(rdl_shot_tracer *tracer)
 {
-    hid_t access = H5Pcreate(H5P_FILE_ACCESS);
-    hid_t file = H5I_INVALID_HID, group = H5I_INVALID_HID;
-    bool present = false;
-    if (access >= 0 && H5Pset_libver_bounds(access, H5F_LIBVER_V110, H5F_LIBVER_V110) >= 0 &&
-        H5Pset_file_locking(access, false, true) >= 0)
-        file = H5Fopen(path, H5F_ACC_RDWR, access);
-    if (file >= 0) {
-        group = rdli_object_open(file, "trace", H5I_GROUP, &present);
-        if (!present)
-            group = H5Gcreate2(file, "trace", H5P_DEFAULT, H5P_DEFAULT, H5P_DEFAULT);
-    }
-    bool done = group >= 0;
-    if (done && H5Lexists(group, name, H5P_DEFAULT) > 0)
-        done = H5Ldelete(group, name, H5P_DEFAULT) >= 0;
-    done = done && write_events(group, name, events, count, note);
-    if (group >= 0)
-        H5Gclose(group);
-    if (file >= 0)
-        done = H5Fclose(file) >= 0 && done;
-    if (access >= 0)
-        H5Pclose(access);
-    return done;
+    rdli_memory memory = tracer->memory;
+    rdli_give(&memory, tracer->path, tracer->path_bytes, 1);
+    rdli_give(&memory, tracer->copy, tracer->copy_bytes, 1);
+    rdli_give(&memory, tracer, 1, sizeof *tracer);
 }
 
-rdl_status rdl_shot_trace_write(const char *path, size_t frame, const rdl_event *events, size_t count,
-                                const char *note, rdl_fault *fault)
+static rdl_shot_tracer *new_tracer(const char *path)
+{
+    enum { ENDING = 32 };
+    rdli_memory memory;
+    if (rdli_memory_init(&memory, NULL) != RDL_OK)
+        return NULL;
+    rdl_shot_tracer *tracer = rdli_take(&memory, 1, sizeof *tracer);
+    if (tracer == NULL)
+        return NULL;
+    memset(tracer, 0, sizeof *tracer);
+    tracer->memory = memory;
+    tracer->file = tracer->group = H5I_INVALID_HID;
+    tracer->path_bytes = strlen(path) + 1;
+    tracer->copy_bytes = tracer->path_bytes + ENDING;
+    tracer->path = rdli_take(&tracer->memory, tracer->path_bytes, 1);
+    tracer->copy = rdli_take(&tracer->memory, tracer->copy_bytes, 1);
+    if (tracer->path == NULL || tracer->copy == NULL) {
+        release(tracer);
+        return NULL;
+    }
+    memcpy(tracer->path, path, tracer->path_bytes);
+    snprintf(tracer->copy, tracer->copy_bytes, "%s.trace-%ld", path, (long)getpid());
+    return tracer;
+}
+
+static bool open_copy(rdl_shot_tracer *tracer)
+{
+    hid_t access = H5Pcreate(H5P_FILE_ACCESS);
+    bool present = false;
+    if (access >= 0 && H5Pset_libver_bounds(access, H5F_LIBVER_V110, H5F_LIBVER_V110) >= 0 &&
+        H5Pset_fclose_degree(access, H5F_CLOSE_STRONG) >= 0 && H5Pset_file_locking(access, false, true) >= 0)
+        tracer->file = H5Fopen(tracer->copy, H5F_ACC_RDWR, access);
+    if (access >= 0)
+        H5Pclose(access);
+    if (tracer->file < 0)
+        return false;
+    tracer->group = rdli_object_open(tracer->file, "trace", H5I_GROUP, &present);
+    if (!present)
+        tracer->group = H5Gcreate2(tracer->file, "trace", H5P_DEFAULT, H5P_DEFAULT, H5P_DEFAULT);
+    return tracer->group >= 0;
+}
+
+static bool close_copy(rdl_shot_tracer *tracer)
+{
+    bool done = tracer->group < 0 || H5Gclose(tracer->group) >= 0;
+    return (tracer->file < 0 || H5Fclose(tracer->file) >= 0) && done;
+}
+
+rdl_status rdl_shot_trace_begin(const char *path, rdl_shot_tracer **tracer, rdl_fault *fault)
 {
     rdl_shot *shot = NULL;
-    char copy[4096], name[32];
-    if (path == NULL || (events == NULL && count > 0))
-        return rdli_fault_set(fault, RDL_BAD_ARGUMENT, path == NULL ? "path" : "events", 0);
+    if (path == NULL || tracer == NULL)
+        return rdli_fault_set(fault, RDL_BAD_ARGUMENT, path == NULL ? "path" : "tracer", 0);
     rdl_status status = rdl_shot_open(path, &shot, fault);
     if (status != RDL_OK)
         return status;
-    bool complete = shot->info.complete, there = frame < shot->info.frame_count;
+    bool complete = shot->info.complete != 0;
+    size_t frames = shot->info.frame_count;
     rdl_shot_close(shot);
-    if (!complete || !there)
-        return rdli_fault_set(fault, complete ? RDL_OUT_OF_RANGE : RDL_BAD_ARGUMENT, complete ? "frame" : "file", frame);
-    int length = snprintf(copy, sizeof copy, "%s.trace-%ld", path, (long)getpid());
-    snprintf(name, sizeof name, "frame_%zu", frame);
-    if (length < 0 || (size_t)length >= sizeof copy)
-        return rdli_fault_set(fault, RDL_TOO_LARGE, "path", 0);
+    if (!complete)
+        return rdli_fault_set(fault, RDL_BAD_ARGUMENT, "file", 0);
+    rdl_shot_tracer *made = new_tracer(path);
+    if (made == NULL)
+        return RDL_NO_MEMORY;
+    made->frame_count = frames;
     rdli_quiet quiet;
     rdli_quiet_begin(&quiet);
-    bool done = copy_file(path, copy) && add_trace(copy, name, events, count, note);
+    bool begun = copy_file(path, made->copy) && open_copy(made);
     rdli_quiet_end(&quiet);
-    status = done ? rdli_publish_rename(copy, path, true) : RDL_WRITE_FAILED;
+    if (!begun) {
+        rdl_shot_trace_discard(made);
+        return rdli_fault_set(fault, RDL_WRITE_FAILED, "file", 0);
+    }
+    *tracer = made;
+    return RDL_OK;
+}
+
+rdl_status rdl_shot_trace_add(rdl_shot_tracer *tracer, size_t frame, const rdl_event *events, size_t count,
+                              const char *note, rdl_fault *fault)
+{
+    char name[32];
+    if (tracer == NULL || (events == NULL && count > 0))
+        return rdli_fault_set(fault, RDL_BAD_ARGUMENT, tracer == NULL ? "tracer" : "events", 0);
+    if (frame >= tracer->frame_count)
+        return rdli_fault_set(fault, RDL_OUT_OF_RANGE, "frame", frame);
+    snprintf(name, sizeof name, "frame_%zu", frame);
+    rdli_quiet quiet;
+    rdli_quiet_begin(&quiet);
+    bool done = H5Lexists(tracer->group, name, H5P_DEFAULT) <= 0 || H5Ldelete(tracer->group, name, H5P_DEFAULT) >= 0;
+    done = done && write_events(tracer->group, name, events, count, note);
+    rdli_quiet_end(&quiet);
+    return done ? RDL_OK : rdli_fault_set(fault, RDL_WRITE_FAILED, "file", frame);
+}
+
+rdl_status rdl_shot_trace_finish(rdl_shot_tracer *tracer, rdl_fault *fault)
+{
+    if (tracer == NULL)
+        return rdli_fault_set(fault, RDL_BAD_ARGUMENT, "tracer", 0);
+    rdli_quiet quiet;
+    rdli_quiet_begin(&quiet);
+    bool closed = close_copy(tracer);
+    rdli_quiet_end(&quiet);
+    rdl_status status = closed ? rdli_publish_rename(tracer->copy, tracer->path, true) : RDL_WRITE_FAILED;
     if (status != RDL_OK) {
-        (void)unlink(copy);
+        (void)unlink(tracer->copy);
         rdli_fault_set(fault, status, "file", 0);
     }
+    release(tracer);
     return status;
+}
+
+void rdl_shot_trace_discard(rdl_shot_tracer *tracer)
+{
+    if (tracer == NULL)
+        return;
+    rdli_quiet quiet;
+    rdli_quiet_begin(&quiet);
+    (void)close_copy(tracer);
+    rdli_quiet_end(&quiet);
+    (void)unlink(tracer->copy);
+    release(tracer);
 }
 
 /* ---- reading ---- */

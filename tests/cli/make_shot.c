@@ -120,6 +120,9 @@ static int build(const char *kind, plan *p)
     else if (strcmp(kind, "long") == 0) {
         to_resolve(p);
         p->frames = 2000;
+    } else if (strcmp(kind, "wrong") == 0) { /* what no engine would deliver for frames 0 and 2 */
+        to_resolve(p);
+        p->contents = RDL_SHOT_STEP;
     } else if (strcmp(kind, "poses") == 0) {
         cross(p);
         p->contents = RDL_SHOT_DELIVERED;
@@ -225,12 +228,47 @@ static int spoil(const char *path)
     return H5Fclose(file) >= 0 && done;
 }
 
+/* Changes the digest of frame 0 of an existing shot. */
+static int flip_digest(const char *path)
+{
+    const hsize_t start[2] = {0, 0}, count[2] = {1, 32};
+    uint8_t digest[32];
+    hid_t file = H5Fopen(path, H5F_ACC_RDWR, H5P_DEFAULT), set = H5Dopen2(file, "frames/digest", H5P_DEFAULT);
+    hid_t space = H5Dget_space(set), room = H5Screate_simple(2, count, NULL);
+    H5Sselect_hyperslab(space, H5S_SELECT_SET, start, NULL, count, NULL);
+    int done = H5Dread(set, H5T_NATIVE_UINT8, room, space, H5P_DEFAULT, digest) >= 0;
+    digest[7] ^= 1;
+    done = H5Dwrite(set, H5T_NATIVE_UINT8, room, space, H5P_DEFAULT, digest) >= 0 && done;
+    H5Sclose(room);
+    H5Sclose(space);
+    H5Dclose(set);
+    return H5Fclose(file) >= 0 && done;
+}
+
+/* Adds a setting from the future to an existing shot. */
+static int add_setting(const char *path)
+{
+    const double value = 1;
+    hid_t file = H5Fopen(path, H5F_ACC_RDWR, H5P_DEFAULT), group = H5Gopen2(file, "settings", H5P_DEFAULT);
+    hid_t space = H5Screate(H5S_SCALAR);
+    hid_t attribute = H5Acreate2(group, "stickiness", H5T_IEEE_F64LE, space, H5P_DEFAULT, H5P_DEFAULT);
+    int done = H5Awrite(attribute, H5T_NATIVE_DOUBLE, &value) >= 0;
+    H5Aclose(attribute);
+    H5Sclose(space);
+    H5Gclose(group);
+    return H5Fclose(file) >= 0 && done;
+}
+
 int main(int argc, char **argv)
 {
     static plan p;
     rdl_fault fault = {0, ""};
     if (argc != 3)
         return 2;
+    if (strcmp(argv[1], "flip-digest") == 0)
+        return flip_digest(argv[2]) ? EXIT_SUCCESS : 3;
+    if (strcmp(argv[1], "odd-setting") == 0)
+        return add_setting(argv[2]) ? EXIT_SUCCESS : 3;
     int nan_wanted = strcmp(argv[1], "nan") == 0;
     if (!build(nan_wanted ? "resolve" : argv[1], &p)) {
         fprintf(stderr, "make_shot: no such kind: %s\n", argv[1]);

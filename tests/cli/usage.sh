@@ -3,12 +3,12 @@ try usage-nothing 2
 try usage-help 0 --help
 try usage-version 0 --version
 try usage-unknown 2 bogus
-for verb in info check resolve import export; do
+for verb in info check resolve replay import export; do
     try "usage-help-$verb" 0 "$verb" --help
     try "usage-none-$verb" 2 "$verb"
     try "usage-option-$verb" 2 "$verb" --no-such-option
 done
-for verb in info check; do
+for verb in info check replay; do
     try "usage-absent-$verb" 2 "$verb" absent.h5
 done
 for verb in resolve import export; do
