@@ -1,9 +1,10 @@
-/* tests/bench/bench_broad.c: rdl_tree against general-purpose libraries, and the engine's pair lists. Prints two Markdown
+/* tests/bench/bench_broad.c: rdl_tree against general-purpose libraries, and the engine's pair lists. Prints Markdown
  * tables. Arguments: numbers of elements (default 10000 and 100000). Fails when two engines disagree on the number of pairs, or
  * brute force (up to 20 thousand elements) on the pairs themselves.
  *
- * Times are the least of several steps. With one thread they are processor time, so that other processes disturb them
- * little; with two threads they are wall time. All engines only count what they find; rdl_tree sorts it as well. */
+ * Times are the least of several steps. What is compared with one thread is processor time, so that other processes disturb it
+ * little; two threads are compared with one by wall time. All engines only count what they find; rdl_tree with one thread
+ * sorts it as well. Our tree and Embree's refitted one, the best anchor nearly everywhere, take their steps in turn. */
 #include <math.h>
 #include <stdbool.h>
 #include <stdio.h>
@@ -14,12 +15,18 @@
 #include "bench_broad_lists.h"
 #include "bench_broad_scenes.h"
 
-enum { STEPS = 6, BRUTE_FORCE = 20000 };
+enum { STEPS = 9, FEW_STEPS = 4, BRUTE_FORCE = 20000, MANY_PAIRS = 200000000, SIZES = 8 };
 
 typedef struct result {
     double build, update, pairs; /* s */
-    size_t count;
+    size_t count;                /* in the last step */
 } result;
+
+/* How the time grows from one size to the next. */
+static struct growth {
+    size_t elements, pairs;
+    double seconds;
+} measured[SCENE_COUNT][SIZES];
 
 typedef struct counted {
     size_t count;
@@ -49,8 +56,7 @@ static uint64_t pair_hash(uint32_t a, uint32_t b)
 
 static void sum_block(void *user, unsigned worker, const uint32_t (*pairs)[2], size_t count)
 {
-    (void)worker;
-    counted *c = user;
+    counted *c = (counted *)user + worker;
     for (size_t i = 0; i < count; i++)
         c->sum += pair_hash(pairs[i][0], pairs[i][1]);
     c->count += count;
@@ -58,7 +64,7 @@ static void sum_block(void *user, unsigned worker, const uint32_t (*pairs)[2], s
 
 static bool brute_force_agrees(const bench_scene *scene, const rdl_tree *tree)
 {
-    counted want = {0}, got = {0};
+    counted want = {0}, got[2] = {{0}, {0}}; /* got: per worker */
     const rdl_box *boxes = scene->boxes;
     for (uint32_t i = 0; i < scene->element_count; i++)
         for (uint32_t j = i + 1; j < scene->element_count; j++)
@@ -67,9 +73,11 @@ static bool brute_force_agrees(const bench_scene *scene, const rdl_tree *tree)
                 want.count++;
                 want.sum += pair_hash(i, j);
             }
-    return rdl_tree_self_pairs(tree, NULL, sum_block, &got) == RDL_OK && got.count == want.count && got.sum == want.sum;
+    return rdl_tree_self_pairs(tree, NULL, sum_block, got) == RDL_OK && got[0].count + got[1].count == want.count &&
+           got[0].sum + got[1].sum == want.sum;
 }
 
+/* The least sum of both. */
 static void keep_best(result *best, double update, double pairs)
 {
     if (update + pairs < best->update + best->pairs) {
@@ -78,102 +86,144 @@ static void keep_best(result *best, double update, double pairs)
     }
 }
 
-static bool run_raddle(bench_scene *scene, unsigned threads, clockid_t clock, result *r)
+static double total(const result *r)
 {
-    const rdl_host host = {.size = sizeof host, .threads = threads};
-    rdl_tree *tree;
-    bool fine = true;
-    *r = (result){.update = 1e9, .pairs = 1e9};
-    bench_scene_move(scene, 0);
-    double before = seconds_of(clock);
-    if (rdl_tree_create(scene->boxes, scene->element_count, &host, &tree, NULL) != RDL_OK)
-        return false;
-    r->build = seconds_of(clock) - before;
-    for (int step = 0; step < STEPS && fine; step++) {
-        bench_scene_move(scene, step);
-        before = seconds_of(clock);
-        fine = rdl_tree_update(tree, scene->boxes, NULL) == RDL_OK;
-        double middle = seconds_of(clock);
-        r->count = 0;
-        fine = fine && rdl_tree_self_pairs(tree, NULL, count_block, &r->count) == RDL_OK;
-        if (step > 0)
-            keep_best(r, middle - before, seconds_of(clock) - middle);
+    return r->update + r->pairs;
+}
+
+static const result NOT_YET = {.update = 1e9, .pairs = 1e9};
+
+/* One step of one tree, by processor time and by wall time. */
+static bool step_tree(rdl_tree *tree, const bench_scene *scene, bool warm, result *cpu, result *wall)
+{
+    double c[3], w[3];
+    c[0] = seconds_of(CLOCK_PROCESS_CPUTIME_ID);
+    w[0] = seconds_of(CLOCK_MONOTONIC);
+    bool fine = rdl_tree_update(tree, scene->boxes, NULL) == RDL_OK;
+    c[1] = seconds_of(CLOCK_PROCESS_CPUTIME_ID);
+    w[1] = seconds_of(CLOCK_MONOTONIC);
+    cpu->count = 0;
+    fine = fine && rdl_tree_self_pairs(tree, NULL, count_block, &cpu->count) == RDL_OK;
+    c[2] = seconds_of(CLOCK_PROCESS_CPUTIME_ID);
+    w[2] = seconds_of(CLOCK_MONOTONIC);
+    if (warm) {
+        keep_best(cpu, c[1] - c[0], c[2] - c[1]);
+        keep_best(wall, w[1] - w[0], w[2] - w[1]);
     }
-    if (fine && threads == 1 && scene->element_count <= BRUTE_FORCE)
-        fine = brute_force_agrees(scene, tree);
-    rdl_tree_destroy(tree);
+    return fine;
+}
+
+static bool create_tree(const bench_scene *scene, unsigned threads, rdl_host *host, rdl_tree **tree, result *r)
+{
+    *host = (rdl_host){.size = sizeof *host, .threads = threads};
+    double before = seconds_of(CLOCK_PROCESS_CPUTIME_ID);
+    bool fine = rdl_tree_create(scene->boxes, scene->element_count, host, tree, NULL) == RDL_OK;
+    *r = NOT_YET;
+    r->build = seconds_of(CLOCK_PROCESS_CPUTIME_ID) - before;
     return fine;
 }
 
 #ifdef BENCH_EMBREE
-static result run_embree(bench_scene *scene, int mode)
+static void step_embree(void *embree, const bench_scene *scene, bool warm, result *r)
 {
-    result r = {.update = 1e9, .pairs = 1e9};
-    bench_scene_move(scene, 0);
+    double before = seconds_of(CLOCK_PROCESS_CPUTIME_ID);
+    embree_update(embree, scene->boxes);
+    double middle = seconds_of(CLOCK_PROCESS_CPUTIME_ID);
+    r->count = embree_pairs(embree);
+    if (warm)
+        keep_best(r, middle - before, seconds_of(CLOCK_PROCESS_CPUTIME_ID) - middle);
+}
+
+static void *open_embree(const bench_scene *scene, int mode, result *r)
+{
     double before = seconds_of(CLOCK_PROCESS_CPUTIME_ID);
     void *embree = embree_open(scene->boxes, scene->element_count, 1, mode);
-    r.build = seconds_of(CLOCK_PROCESS_CPUTIME_ID) - before;
-    for (int step = 0; step < STEPS; step++) {
+    *r = NOT_YET;
+    r->build = seconds_of(CLOCK_PROCESS_CPUTIME_ID) - before;
+    return embree;
+}
+#endif
+
+/* All that take steps in turn. */
+typedef struct turns {
+    int steps;
+    result one, two, refitted, wall_one, wall_two;
+} turns;
+
+static bool run_turns(bench_scene *scene, turns *t)
+{
+    rdl_host hosts[2];
+    rdl_tree *one = NULL, *two = NULL;
+    t->wall_one = t->wall_two = NOT_YET;
+    bench_scene_move(scene, 0);
+    bool fine = create_tree(scene, 1, &hosts[0], &one, &t->one) && create_tree(scene, 2, &hosts[1], &two, &t->two);
+#ifdef BENCH_EMBREE
+    void *embree = open_embree(scene, 3, &t->refitted);
+    fine = fine && embree != NULL;
+#endif
+    t->steps = STEPS;
+    for (int step = 0; step < t->steps && fine; step++) {
         bench_scene_move(scene, step);
-        before = seconds_of(CLOCK_PROCESS_CPUTIME_ID);
-        embree_update(embree, scene->boxes);
-        double middle = seconds_of(CLOCK_PROCESS_CPUTIME_ID);
-        r.count = embree_pairs(embree);
-        if (step > 0)
-            keep_best(&r, middle - before, seconds_of(CLOCK_PROCESS_CPUTIME_ID) - middle);
+        fine = step_tree(one, scene, step > 0, &t->one, &t->wall_one) && step_tree(two, scene, step > 0, &t->two, &t->wall_two) &&
+               t->one.count == t->two.count;
+        if (t->one.count > MANY_PAIRS)
+            t->steps = FEW_STEPS;
+#ifdef BENCH_EMBREE
+        step_embree(embree, scene, step > 0, &t->refitted);
+        fine = fine && t->refitted.count == t->one.count;
+#endif
     }
+    if (fine && scene->element_count <= BRUTE_FORCE)
+        fine = brute_force_agrees(scene, one) && brute_force_agrees(scene, two);
+#ifdef BENCH_EMBREE
     embree_close(embree);
-    return r;
-}
 #endif
-
-#ifdef BENCH_CGAL
-static result run_cgal(bench_scene *scene, size_t cutoff)
-{
-    result r = {.update = 1e9, .pairs = 1e9};
-    for (int step = STEPS - 3; step < STEPS; step++) {
-        bench_scene_move(scene, step);
-        double before = seconds_of(CLOCK_PROCESS_CPUTIME_ID);
-        r.count = cgal_pairs(scene->boxes, scene->element_count, cutoff);
-        keep_best(&r, 0, seconds_of(CLOCK_PROCESS_CPUTIME_ID) - before);
-    }
-    return r;
-}
-#endif
-
-static bool print_row(const char *name, const result *r)
-{
-    printf("| | %s | %.1f | %.2f | %.1f | %.1f | %.1f | |\n", name, 1e3 * r->build, 1e3 * r->update, 1e3 * r->pairs,
-           1e3 * (r->update + r->pairs), 1e9 * (r->update + r->pairs) / (double)r->count);
-    return true;
+    rdl_tree_destroy(one);
+    rdl_tree_destroy(two);
+    return fine;
 }
 
-/* The best total of all anchors; 0 when none is built in. false: a count differs. */
-static bool run_anchors(bench_scene *scene, size_t count, double *best, double *refit)
+static void print_row(const char *name, const result *r, double build)
+{
+    if (build > 0)
+        printf("| | %s | %.1f | %.2f | %.1f | %.1f | %.1f | |\n", name, 1e3 * build, 1e3 * r->update, 1e3 * r->pairs,
+               1e3 * total(r), 1e9 * total(r) / (double)r->count);
+    else
+        printf("| | %s | | | %.1f | %.1f | %.1f | |\n", name, 1e3 * r->pairs, 1e3 * total(r), 1e9 * total(r) / (double)r->count);
+}
+
+/* The anchors that start afresh in every step: the least time of the last two steps. Lowers *best to the best of them. */
+static bool run_fresh(bench_scene *scene, const turns *t, double *best)
 {
     bool same = true;
-    *best = *refit = 0;
+    const int last = t->steps - 1;
     (void)scene;
-    (void)count;
 #ifdef BENCH_EMBREE
-    static const char *const modes[4] = {"Embree, low quality", "Embree, medium quality", "Embree, high quality",
-                                         "Embree, refitted"};
-    for (int mode = 0; mode < 4; mode++) {
-        result r = run_embree(scene, mode);
-        same = print_row(modes[mode], &r) && same && r.count == count;
-        if (*best == 0 || r.update + r.pairs < *best)
-            *best = r.update + r.pairs;
-        if (mode == 3)
-            *refit = r.update;
+    static const char *const modes[3] = {"Embree, low quality", "Embree, medium quality", "Embree, high quality"};
+    for (int mode = 0; mode < 3 && t->steps == STEPS; mode++) {
+        result r;
+        bench_scene_move(scene, last - 1);
+        void *embree = open_embree(scene, mode, &r);
+        step_embree(embree, scene, true, &r);
+        bench_scene_move(scene, last);
+        step_embree(embree, scene, true, &r);
+        embree_close(embree);
+        print_row(modes[mode], &r, r.build);
+        same = same && r.count == t->one.count;
+        *best = fmin(*best, total(&r));
     }
 #endif
 #ifdef BENCH_CGAL
-    result cgal = run_cgal(scene, 1000), other = run_cgal(scene, 100);
-    if (other.pairs < cgal.pairs)
-        cgal = other;
-    same = print_row("CGAL", &cgal) && same && cgal.count == count && other.count == count;
-    if (*best == 0 || cgal.pairs < *best)
-        *best = cgal.pairs;
+    result cgal = NOT_YET;
+    for (int run = 0; run < 4; run++) {
+        bench_scene_move(scene, last - 1 + run % 2);
+        double before = seconds_of(CLOCK_PROCESS_CPUTIME_ID);
+        cgal.count = cgal_pairs(scene->boxes, scene->element_count, run < 2 ? 1000 : 100);
+        keep_best(&cgal, 0, seconds_of(CLOCK_PROCESS_CPUTIME_ID) - before);
+    }
+    print_row("CGAL", &cgal, 0);
+    same = same && cgal.count == t->one.count;
+    *best = fmin(*best, total(&cgal));
 #endif
     return same;
 }
@@ -196,28 +246,47 @@ static void measure_floor(bench_scene *scene, double *stream, double *make)
     }
 }
 
-static bool bench_tree(bench_scene *scene)
+static bool bench_tree(bench_scene *scene, int size)
 {
-    result one, two, wall;
-    double best, refit, stream, make;
-    bool fine = run_raddle(scene, 1, CLOCK_PROCESS_CPUTIME_ID, &one);
-    fine = fine && run_raddle(scene, 1, CLOCK_MONOTONIC, &wall) && run_raddle(scene, 2, CLOCK_MONOTONIC, &two);
-    if (!fine)
+    turns t;
+    double best = INFINITY, stream, make;
+    if (!run_turns(scene, &t))
         return false;
+    measured[scene->kind][size] = (struct growth){scene->element_count, t.one.count, total(&t.one)};
     measure_floor(scene, &stream, &make);
     printf("| **%s** %zu elements, %zu pairs | streaming %.2f ms, making the boxes %.2f ms | | | | | | |\n",
-           bench_scene_name(scene->kind), scene->element_count, one.count, 1e3 * stream, 1e3 * make);
-    fine = run_anchors(scene, one.count, &best, &refit) && two.count == one.count && wall.count == one.count;
-    printf("| | **rdl_tree** | %.1f | %.2f | %.1f | **%.1f** | %.1f | ", 1e3 * one.build, 1e3 * one.update, 1e3 * one.pairs,
-           1e3 * (one.update + one.pairs), 1e9 * (one.update + one.pairs) / (double)one.count);
-    if (best > 0)
-        printf("**%.2f** of the best", (one.update + one.pairs) / best);
-    if (refit > 0)
-        printf(", update %.2f of a refit", one.update / refit);
-    printf(" |\n| | rdl_tree, 2 threads | %.1f | %.2f | %.1f | %.1f | %.1f | %.2f times 1 thread (wall time) |\n",
-           1e3 * two.build, 1e3 * two.update, 1e3 * two.pairs, 1e3 * (two.update + two.pairs),
-           1e9 * (two.update + two.pairs) / (double)two.count, (wall.update + wall.pairs) / (two.update + two.pairs));
-    return fine;
+           bench_scene_name(scene->kind), scene->element_count, t.one.count, 1e3 * stream, 1e3 * make);
+    bool same = run_fresh(scene, &t, &best);
+#ifdef BENCH_EMBREE
+    print_row("Embree, refitted", &t.refitted, t.refitted.build);
+    best = fmin(best, total(&t.refitted));
+#endif
+    printf("| | **rdl_tree** | %.1f | %.2f | %.1f | **%.1f** | %.1f | ", 1e3 * t.one.build, 1e3 * t.one.update,
+           1e3 * t.one.pairs, 1e3 * total(&t.one), 1e9 * total(&t.one) / (double)t.one.count);
+    if (best < INFINITY)
+        printf("**%.2f** of the best", total(&t.one) / best);
+#ifdef BENCH_EMBREE
+    printf(", update %.2f of a refit", t.one.update / t.refitted.update);
+#endif
+    printf(" |\n| | rdl_tree, 2 threads, wall time | | %.2f | %.1f | %.1f | %.1f | %.2f times 1 thread |\n", 1e3 * t.wall_two.update,
+           1e3 * t.wall_two.pairs, 1e3 * total(&t.wall_two), 1e9 * total(&t.wall_two) / (double)t.one.count,
+           total(&t.wall_one) / total(&t.wall_two));
+    return same;
+}
+
+static void print_growth(int sizes)
+{
+    printf("\n| scene | elements | pairs per element | exponent over elements | exponent over pairs |\n|---|---|---|---|---|\n");
+    for (int kind = 0; kind < SCENE_COUNT; kind++)
+        for (int i = 1; i < sizes; i++) {
+            const struct growth *from = &measured[kind][i - 1], *to = &measured[kind][i];
+            if (from->elements == 0 || to->elements == 0)
+                continue;
+            const double longer = log(to->seconds / from->seconds);
+            printf("| %s | %zu to %zu | %.1f to %.1f | %.2f | %.2f |\n", bench_scene_name(kind), from->elements, to->elements,
+                   (double)from->pairs / (double)from->elements, (double)to->pairs / (double)to->elements,
+                   longer / log((double)to->elements / (double)from->elements), longer / log((double)to->pairs / (double)from->pairs));
+        }
 }
 
 static bool bench_lists_row(const bench_scene *scene, double push, const char *note)
@@ -232,16 +301,20 @@ static bool bench_lists_row(const bench_scene *scene, double push, const char *n
         printf("%.1f to %.2f", (double)l.box_pairs / l.touches, (double)l.near_pairs / l.touches);
     else
         printf("no touch in the sample");
-    printf(" | %.0f |\n", l.bytes * 0x1p-20);
+    printf(" | %.0f, %.0f bytes each | ", l.bytes * 0x1p-20,
+           l.bytes / (double)(l.vertex_count + l.edge_count + l.triangle_count));
+    if (l.culled_seconds < 1e9)
+        printf("%zu pairs, %.1f, %.1f", l.culled_pairs, 1e3 * l.culled_seconds, 1e3 * l.culled_near_seconds);
+    printf(" |\n");
     return true;
 }
 
-static bool run(size_t elements, bool (*bench)(bench_scene *scene))
+static bool run(size_t elements, int size, bool (*bench)(bench_scene *scene, int size))
 {
     bool fine = true;
     for (int kind = 0; kind < SCENE_COUNT; kind++) {
         bench_scene *scene = bench_scene_new(kind, elements);
-        if (scene == NULL || !bench(scene)) {
+        if (scene == NULL || !bench(scene, size)) {
             printf("\n**%s, %zu elements: the engines disagree, or there is no memory.**\n\n", bench_scene_name(kind), elements);
             fine = false;
         }
@@ -251,10 +324,13 @@ static bool run(size_t elements, bool (*bench)(bench_scene *scene))
     return fine;
 }
 
-static bool bench_scene_lists(bench_scene *scene)
+static bool bench_scene_lists(bench_scene *scene, int size)
 {
+    (void)size;
     bench_scene_move(scene, 1);
-    bool fine = scene->kind == SCENE_FLYING || bench_lists_row(scene, 0, "");
+    if (scene->kind == SCENE_FLYING || scene->kind == SCENE_ASLANT)
+        return true;
+    bool fine = bench_lists_row(scene, 0, "");
     if (scene->kind == SCENE_STRANDS)
         fine = fine && bench_lists_row(scene, 0.002, ", pushed 2 mm as a whole");
     return fine;
@@ -264,16 +340,18 @@ int main(int argc, char **argv)
 {
     const char *const standard[] = {"", "10000", "100000"};
     const char *const *sizes = argc > 1 ? (const char *const *)argv : standard;
-    const int count = argc > 1 ? argc : 3;
+    const int count = argc > SIZES ? SIZES : argc > 1 ? argc : 3;
     bool fine = true;
     printf("| scene | engine | build, ms | update, ms | pairs, ms | update + pairs, ms | ns per pair | ratio |\n"
            "|---|---|---|---|---|---|---|---|\n");
     for (int i = 1; i < count; i++)
-        fine = run(strtoul(sizes[i], NULL, 10), bench_tree) && fine;
+        fine = run(strtoul(sizes[i], NULL, 10), i - 1, bench_tree) && fine;
+    print_growth(count - 1);
     printf("\n| scene | vertices / edges / triangles | boxes, ms | pairs by boxes | separate trees, ms | one tree, "
-           "representatives, ms | near pairs | with certificate, ms | pairs per touch | MiB |\n"
-           "|---|---|---|---|---|---|---|---|---|---|\n");
+           "representatives, ms | near pairs | with certificate, ms | pairs per touch | MiB | sheets ignore themselves: "
+           "pairs by boxes, ms, ms with certificate |\n"
+           "|---|---|---|---|---|---|---|---|---|---|---|\n");
     for (int i = 1; i < count; i++)
-        fine = run(strtoul(sizes[i], NULL, 10), bench_scene_lists) && fine;
+        fine = run(strtoul(sizes[i], NULL, 10), i - 1, bench_scene_lists) && fine;
     return fine ? 0 : 1;
 }

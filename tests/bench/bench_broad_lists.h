@@ -14,7 +14,10 @@ typedef struct bench_lists {
     double touches;                   /* near pairs that touch; estimated from a sample */
     size_t assigned_pairs;            /* representative assignment: must equal box_pairs */
     double assigned_seconds;          /* s: update, search, elementary box tests; lists neither written nor sorted */
-    double bytes;                     /* that the broad phase holds */
+    double bytes;                     /* that the broad phase holds for the near pairs */
+    /* Every sheet ignores itself: the bounds of what culling flat regions could save; seconds 1e9 where there is no sheet. */
+    size_t culled_pairs;
+    double culled_seconds, culled_near_seconds;
 } bench_lists;
 
 /* One thread; the best of several runs. push: m, added to the proposed place of every vertex. False: no memory. */

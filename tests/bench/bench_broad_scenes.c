@@ -2,6 +2,7 @@
 #include "bench_broad_scenes.h"
 
 #include <math.h>
+#include <stdbool.h>
 #include <stdlib.h>
 #include <string.h>
 
@@ -11,7 +12,8 @@ static const double CELL = 0.005; /* side of a cloth cell */
 const char *bench_scene_name(int kind)
 {
     static const char *const names[SCENE_COUNT] = {"stacked cloth", "curly strands", "cloth round rope",
-                                                   "mixed", "tiny in huge", "flying sheets"};
+                                                   "mixed", "tiny in huge", "flying sheets",
+                                                   "sheets flying aslant", "one quiet sheet"};
     return names[kind];
 }
 
@@ -33,8 +35,7 @@ static size_t sheet_side(size_t elements, size_t sheets)
 
 static size_t sheet_count(const bench_scene *scene, size_t elements)
 {
-    (void)scene;
-    return elements < 5000 ? 5 : 20;
+    return scene->kind == SCENE_QUIET ? 1 : elements < 5000 ? 5 : 20;
 }
 
 static void add_sheet(bench_scene *scene, size_t first_vertex, size_t side)
@@ -78,11 +79,16 @@ static void sheet_place(const bench_scene *scene, const bench_layout *l, size_t 
         x[0] = radius * cos(turn + 0.02 * t);
         x[1] = radius * sin(turn + 0.02 * t);
         x[2] = w + 0.0005 * sin(40 * u) + 0.001 * t;
-    } else if (scene->kind == SCENE_FLYING) {
-        double direction = sheet % 2 == 0 ? 1 : -1;
-        x[0] = u + 0.002 * sin(30 * w + s);
-        x[1] = w + 0.002 * sin(35 * u + s);
-        x[2] = 0.008 * s + direction * 0.1 * (t - 2) + 0.01 * sin(20 * u + s) * cos(25 * w);
+    } else if (scene->kind == SCENE_FLYING || scene->kind == SCENE_ASLANT) {
+        const bool aslant = scene->kind == SCENE_ASLANT;
+        double way = (sheet % 2 == 0 ? 1 : -1) * (fabs(fmod(t, 4) - 2) - 1), aside = aslant ? 0.01 * way : 0;
+        x[0] = u + 0.002 * sin(30 * w + s) + aside;
+        x[1] = w + 0.002 * sin(35 * u + s) + aside;
+        x[2] = (aslant ? 0.002 : 0.008) * s + 0.1 * way + 0.01 * sin(20 * u + s) * cos(25 * w);
+    } else if (scene->kind == SCENE_QUIET) {
+        x[0] = u;
+        x[1] = w + 0.002 * t;
+        x[2] = 0.02 * sin(9 * u + 0.2 * t) * cos(7 * w) + 0.001 * sin(60 * u + 0.3 * t);
     } else {
         double wave = 0.008 * sin(70 * u + 0.03 * t) * cos(55 * w) + 0.004 * sin(190 * w + 110 * u);
         x[0] = u + 0.0005 * t * (sheet % 2 == 0 ? 1 : -1) + 0.0008 * (scatter(v, 1) - 0.5);
@@ -123,7 +129,7 @@ bench_scene *bench_scene_new(int kind, size_t elements)
     if (scene == NULL)
         return NULL;
     scene->kind = kind;
-    scene->half = (const double[SCENE_COUNT]){0.0003, 0.00005, 0.0003, 0.0001, 0.00003, 0.0003}[kind];
+    scene->half = (const double[SCENE_COUNT]){0.0003, 0.00005, 0.0003, 0.0001, 0.00003, 0.0003, 0.0003, 0.0003}[kind];
     bench_layout l = layout_of(scene, elements);
     scene->layout = l;
     size_t triangles = l.sheets > 0 ? l.sheets * 2 * (l.side - 1) * (l.side - 1) : 0;

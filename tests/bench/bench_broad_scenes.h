@@ -14,6 +14,8 @@ enum {
     SCENE_MIXED,   /* half sheets, half curls that lie on them */
     SCENE_TINY,    /* a tenth of the elements in a knot of a few millimetres, the rest scattered over a kilometre */
     SCENE_FLYING,  /* sheets that fly through each other, 10 cm a step */
+    SCENE_ASLANT,  /* the same, closer and obliquely: five hundred pairs per box */
+    SCENE_QUIET,   /* one sheet with long waves that touches nothing, not even itself */
     SCENE_COUNT
 };
 
