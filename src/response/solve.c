@@ -22,6 +22,9 @@ enum {
 };
 /* Over-relaxation of the sweeps: any number between 0 and 2 converges; common practice for contact problems. */
 static const double over_relaxation = 1.3;
+/* Less of it where the sweeps start from a point ahead, and not too far ahead: of 4, 8, 16 and of 1.0, 1.15, 1.3 the pair with
+ * the fewest sweeps over the scenes of stacked sheets. */
+static const double over_ahead = 1.15, momentum_most = 8.0;
 
 static double row_value(const rdli_row *row, const double (*x)[3])
 {
@@ -102,14 +105,14 @@ static double norm_estimate(state *s)
 
 /* One projected successive over-relaxation sweep over the listed rows, forwards or backwards (Cryer 1971). Rows that
  * repeat each other, of which stacked sheets have hundreds at a vertex, do not slow it down as they do gradient steps. */
-static void relax(state *s, bool backwards)
+static void relax(state *s, bool backwards, double over)
 {
     rdli_problem *problem = s->problem;
     for (size_t i = 0; i < s->listed; i++) {
         size_t r = s->list[backwards ? s->listed - 1 - i : i];
         const rdli_row *row = &problem->rows[r];
         double residual = row_value(row, (const double (*)[3])problem->solution) - row->bound;
-        double moved = s->scaled[r] - over_relaxation * row->scale * residual;
+        double moved = s->scaled[r] - over * row->scale * residual;
         double change = (moved > 0.0 ? moved : 0.0) - s->scaled[r];
         if (change == 0.0)
             continue;
@@ -292,13 +295,54 @@ static bool advance(state *s)
     return true;
 }
 
+/* One sweep forwards and one backwards from a point ahead of the last iterate, in the direction of the last step (Nesterov
+ * 1983), and back to plain sweeps where that direction no longer points down (O'Donoghue & Candes 2015, eq. 12). The point
+ * ahead may have negative multipliers; the sweeps visit every listed row and leave none. `direction` and `scratch` hold the
+ * iterate before the last one. */
+static void relax_ahead(state *s, double *momentum)
+{
+    rdli_problem *problem = s->problem;
+    double next = 0.5 * (1.0 + sqrt(1.0 + 4.0 * *momentum * *momentum)), ahead = (*momentum - 1.0) / next;
+    for (size_t i = 0; i < s->listed; i++) {
+        size_t r = s->list[i];
+        double last = s->scaled[r];
+        s->scaled[r] = s->image[r] = last + ahead * (last - s->direction[r]);
+        s->direction[r] = last;
+    }
+    for (size_t i = 0; i < problem->vertex_count; i++)
+        for (int k = 0; k < 3; k++) {
+            double last = problem->solution[i][k];
+            problem->solution[i][k] = last + ahead * (last - problem->scratch[i][k]);
+            problem->scratch[i][k] = last;
+        }
+    relax(s, false, over_ahead);
+    relax(s, true, over_ahead);
+    double uphill = 0.0;
+    for (size_t i = 0; i < s->listed; i++) {
+        size_t r = s->list[i];
+        uphill += (s->image[r] - s->scaled[r]) * (s->scaled[r] - s->direction[r]);
+    }
+    *momentum = uphill > 0.0 ? 1.0 : fmin(next, momentum_most);
+}
+
 /* Sweeps over the list until it is done, or `most` of them; counts them as shares of sweeps over all rows. */
 static void relax_list(state *s, double *work, uint32_t most)
 {
+    rdli_problem *problem = s->problem;
+    double momentum = 1.0;
+    bool plain = s->listed < problem->vertex_count; /* going ahead moves all vertices */
+    for (size_t i = 0; i < s->listed; i++)
+        s->direction[s->list[i]] = s->scaled[s->list[i]];
+    memcpy(problem->scratch, problem->solution, plain ? 0 : problem->vertex_count * sizeof problem->scratch[0]);
     for (uint32_t sweep = 0; sweep < most; sweep += CHECK) {
-        for (int k = 0; k < CHECK; k++)
-            relax(s, k % 2 != 0);
-        *work += (double)CHECK * ((double)s->listed / (double)s->problem->row_count);
+        for (int k = 0; k < CHECK; k += 2)
+            if (plain) {
+                relax(s, false, over_relaxation);
+                relax(s, true, over_relaxation);
+            } else {
+                relax_ahead(s, &momentum);
+            }
+        *work += (double)CHECK * ((double)s->listed / (double)problem->row_count);
         listed_gradient(s);
         if (all_done(s))
             return;
@@ -376,6 +420,9 @@ static bool descend(state *s, rdli_solved *solved, double *work, uint32_t steps)
  * with rows of unit diagonal a multiplier moves no other row by more than itself. */
 static const double negligible = 0x1p-4;
 
+/* What is left of the worst violation when relaxing is given up: below, the next pass does better than a dense solve. */
+static const double hopeless = 0.125;
+
 rdli_solved rdli_solve(rdli_problem *problem)
 {
     size_t n = problem->row_count;
@@ -403,7 +450,8 @@ rdli_solved rdli_solve(rdli_problem *problem)
         solved.converged = descend(&s, &solved, &work, CONJUGATE);
     if (!solved.converged && !solved.infeasible)
         solved.converged = relax_locally(&s, &work, most);
-    if (!solved.converged && problem->dense_work != NULL && rdli_solve_dense(problem, problem->dense_work)) {
+    bool lost = !solved.converged && refresh(&s) > hopeless * solved.worst_before;
+    if (lost && problem->dense_work != NULL && rdli_solve_dense(problem, problem->dense_work)) {
         /* The interior point leaves a trace of load on every row. Without it the answer is a little off its tolerances, on
          * rows that are now known: conjugate gradients mend that at once. */
         s.listed = 0;

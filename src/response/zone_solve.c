@@ -305,7 +305,6 @@ static void write_back(const job *j, rdli_zone *zone, const double (*solution)[3
         zone->settled = 1;
         return;
     }
-    bool stuck = true;
     for (uint32_t i = 0; i < zone->vertex_count; i++) {
         uint32_t v = vertices[i];
         for (int k = 0; k < 3; k++) {
@@ -313,13 +312,15 @@ static void write_back(const job *j, rdli_zone *zone, const double (*solution)[3
             if (x != piece->trial[v][k]) {
                 piece->trial[v][k] = x;
                 j->awake[v] = 1;
-                stuck = false;
             }
         }
     }
     /* A violation that the solve did not touch is still there: it must be seen again. */
-    for (uint32_t i = 0; stuck && i < zone->vertex_count; i++)
-        j->awake[vertices[i]] = 1;
+    const uint32_t *order = (const uint32_t *)j->response->zone_contacts.data + zone->contact_first;
+    for (uint32_t i = 0; i < zone->contact_count; i++)
+        for (int k = 0; j->contacts[order[i]].violated && k < 4; k++)
+            if (!piece->fixed[j->contacts[order[i]].vertex[k]])
+                j->awake[j->contacts[order[i]].vertex[k]] = 1;
 }
 
 static rdli_problem problem_of(const job *j, const rdli_zone *zone, unsigned worker)
