@@ -11,6 +11,8 @@ static const double fence_share = 0.45, whole_share = 0.6, rigid_share = 0.75, s
 static const double restore_share = 0.3;
 /* Certified zones are refined towards the nearest point this often at most. */
 enum { REFINEMENTS = 6 };
+/* And goes back to what was certified this often, before that stands. */
+enum { RESTORES = 1 };
 enum { DIVERGES_AFTER = 3 };
 /* A zone of so many contacts that goes deeper than so many floors is worth a shorter piece before any solve. */
 enum { DEEP_CONTACTS = 256 };
@@ -72,9 +74,12 @@ static bool wants_refinement(rdl_engine *engine, const rdli_piece *piece, rdli_z
         memcpy(contact->saved, contact->plane, sizeof contact->saved);
         contact->saved_count = contact->plane_count;
         contact->clean = (uint8_t)(contact->clean + (contact->clean < UINT8_MAX));
-        contact->ahead = shorter_lead(contact->ahead, contact->floor);
+        /* A lead that has just been found too short is kept for one more try. */
+        if (!contact->restored)
+            contact->ahead = shorter_lead(contact->ahead, contact->floor);
+        contact->restored = 0;
         least = contact->clean < least ? contact->clean : least;
-        frozen = frozen || contact->frozen;
+        frozen = frozen || contact->restores >= RESTORES;
         due = due || contact->due;
         contact->due = 0;
     }
@@ -92,7 +97,8 @@ static bool wants_refinement(rdl_engine *engine, const rdli_piece *piece, rdli_z
     return !frozen && least <= REFINEMENTS && share < fence_share;
 }
 
-/* A zone that was certified and broke in refinement goes back to what was certified, once. */
+/* A zone that was certified and broke in refinement goes back to what was certified. The contacts that broke aim higher in
+ * the next try. */
 static bool restore_zone(rdl_engine *engine, const rdli_piece *piece, const rdli_zone *zone)
 {
     const uint32_t *order = (const uint32_t *)engine->response.zone_contacts.data + zone->contact_first;
@@ -102,7 +108,7 @@ static bool restore_zone(rdl_engine *engine, const rdli_piece *piece, const rdli
     bool was_clean = false;
     for (uint32_t i = 0; i < zone->contact_count; i++) {
         const rdli_contact *contact = &contacts[order[i]];
-        if (contact->frozen || (contact->violated ? !contact->relapsed : contact->clean == 0))
+        if (contact->restores >= RESTORES || (contact->violated ? !contact->relapsed : contact->clean == 0))
             return false;
         was_clean = was_clean || contact->clean > 0 || contact->ahead > 0.0;
     }
@@ -110,7 +116,8 @@ static bool restore_zone(rdl_engine *engine, const rdli_piece *piece, const rdli
         return false;
     for (uint32_t i = 0; i < zone->contact_count; i++) {
         rdli_contact *contact = &contacts[order[i]];
-        contact->frozen = 1;
+        contact->restores++;
+        contact->restored = 1;
         memcpy(contact->plane, contact->saved, sizeof contact->plane);
         contact->plane_count = contact->saved_count; /* none where the contact is new: it carried nothing */
     }

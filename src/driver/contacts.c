@@ -254,12 +254,56 @@ rdl_status rdli_contacts_merge(rdl_engine *engine, const rdli_piece *piece)
     return RDL_OK;
 }
 
+/* The room that a turned fence leaves at the start beyond what the end is to keep: margins and rounding fit in. */
+static const double fence_room = 1e-4;
+
 static bool is_far(const rdli_piece *piece, const rdli_contact *contact, const rdli_plane *plane)
 {
     double distance = 0.0;
     for (int k = 0; k < 4; k++)
         distance += plane->weight[k] * rdli_dot(plane->normal, piece->trial[contact->vertex[k]]);
     return distance > 2.0 * contact->floor;
+}
+
+/* How far all of one feature lies beyond all of the other at the start of the piece, along a unit direction. */
+static double start_support(const rdli_piece *piece, const rdli_contact *contact, const double direction[3])
+{
+    int split = contact->kind == RDL_POINT_TRIANGLE ? 1 : 2;
+    double least = DBL_MAX, most = -DBL_MAX;
+    for (int k = 0; k < 4; k++) {
+        double value = rdli_dot(direction, piece->start[contact->vertex[k]]);
+        if (k < split)
+            least = fmin(least, value);
+        else
+            most = fmax(most, value);
+    }
+    return least - most;
+}
+
+/* Turns a fence from the separating direction of the start towards that of the present end, as far as the start of the piece
+ * stays beyond it: so it takes no more than the pair's distance demands, and the set of ends still holds the start, which
+ * is what makes it lawful. Never with less room at the start than the end asks for. */
+static void turn_fence(const rdli_piece *piece, rdli_contact *contact)
+{
+    rdli_plane begin, now;
+    if (!closest_at(piece, contact, 0.0, &begin) || !closest_at(piece, contact, 1.0, &now))
+        return;
+    rdli_copy(begin.normal, contact->fence);
+    if (!(rdli_dot(begin.normal, now.normal) > 0.0))
+        return;
+    double wanted = (1.0 + fence_room) * (contact->floor + contact->slop);
+    for (double share = 1.0; share > 0.0; share -= 0.125) {
+        double direction[3];
+        for (int k = 0; k < 3; k++)
+            direction[k] = (1.0 - share) * begin.normal[k] + share * now.normal[k];
+        double length = rdli_length(direction);
+        for (int k = 0; k < 3; k++)
+            direction[k] /= length;
+        if (start_support(piece, contact, direction) >= wanted) {
+            rdli_copy(direction, contact->fence);
+            return;
+        }
+    }
 }
 
 static void expand_chunk(void *data, size_t chunk, unsigned worker)
@@ -271,6 +315,8 @@ static void expand_chunk(void *data, size_t chunk, unsigned worker)
     for (size_t c = chunk * CHUNK; c < end; c++) {
         rdli_contact *contact = &j->contacts[c];
         bool idle = contact->zone == UINT32_MAX || zones[contact->zone].settled;
+        if (contact->fenced && !idle && !j->all)
+            turn_fence(j->piece, contact);
         if ((contact->violated || idle) && !j->all)
             continue;
         if (j->all) { /* for the books: what carried load, as it lies in the delivered positions */

@@ -38,7 +38,8 @@ typedef struct rdli_contact {
     uint8_t rigid;            /* the zone fell back to moving as one rigid body */
     uint8_t settled;          /* the zone's last solve changed nothing that matters */
     uint8_t relapsed;         /* violated after a clean detection, or new */
-    uint8_t frozen;           /* refining the zone broke it once: the next certified answer stands */
+    uint8_t restores;         /* how often refining the zone broke it, and it went back to the certified answer */
+    uint8_t restored;         /* in the last pass */
     uint8_t clean;            /* detections in a row without a violation in the zone, saturating */
 } rdli_contact;
 
