@@ -314,7 +314,8 @@ static void expand_chunk(void *data, size_t chunk, unsigned worker)
     size_t end = (chunk + 1) * CHUNK < j->count ? (chunk + 1) * CHUNK : j->count;
     for (size_t c = chunk * CHUNK; c < end; c++) {
         rdli_contact *contact = &j->contacts[c];
-        bool idle = contact->zone == UINT32_MAX || zones[contact->zone].settled;
+        /* For the books there may be no zones: pairs that were merely close are settled before any is made. */
+        bool idle = !j->all && (contact->zone == UINT32_MAX || zones[contact->zone].settled);
         if (contact->fenced && !idle && !j->all)
             turn_fence(j->piece, contact);
         if ((contact->violated || idle) && !j->all)
