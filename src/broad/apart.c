@@ -7,7 +7,7 @@ typedef struct fill_job {
     const rdli_mesh *mesh;
     const rdli_motion *motion;
     rdli_record *records;
-    double centre[3], per_step; /* 1 / q */
+    double centre[3], end_centre[3], per_step; /* centre of the grid at the start and at the end; 1 / q */
 } fill_job;
 
 static const double REACH = 0x1p29; /* steps from the centre to the border of the grid */
@@ -30,7 +30,7 @@ static void fill_block(void *data, size_t block, unsigned worker)
         bool inside = true;
         for (unsigned k = 0; k < 3; k++) {
             record.start[k] = on_grid((job->motion->start[v][k] - job->centre[k]) * job->per_step, &inside);
-            record.end[k] = on_grid((job->motion->end[v][k] - job->centre[k]) * job->per_step, &inside);
+            record.end[k] = on_grid((job->motion->end[v][k] - job->end_centre[k]) * job->per_step, &inside);
         }
         /* The factor outweighs the rounding of normal floats, the summand that of smaller ones. */
         double half = job->mesh->vertex_half[v] * job->per_step;
@@ -40,7 +40,7 @@ static void fill_block(void *data, size_t block, unsigned worker)
 }
 
 rdl_status rdli_apart_fill(rdli_memory *memory, rdli_workers *workers, rdli_apart *apart, const rdli_mesh *mesh,
-                           const rdli_motion *motion, const rdli_tree *vertices)
+                           const rdli_motion *motion, const rdli_tree *vertices, const double shift[3])
 {
     apart->records = NULL;
     if (mesh->vertex_count == 0)
@@ -53,6 +53,7 @@ rdl_status rdli_apart_fill(rdli_memory *memory, rdli_workers *workers, rdli_apar
     for (unsigned k = 0; k < 3; k++) {
         double lo = (double)crown->lo[k][0], hi = (double)crown->hi[k][0];
         job.centre[k] = 0.5 * (lo + hi);
+        job.end_centre[k] = job.centre[k] + shift[k]; /* its rounding moves all vertices alike */
         reach = fmax(reach, 0.5 * (hi - lo));
     }
     int exponent;

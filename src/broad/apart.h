@@ -21,8 +21,9 @@ typedef struct rdli_apart {
     const rdli_record *records;
 } rdli_apart;
 
-/* Fills the records. vertices: the tree of all vertex boxes, which enclose the whole motion. Errors: RDL_NO_MEMORY. */
+/* Fills the records. vertices: the tree of all vertex boxes, which enclose the whole motion in the frame that moves by
+ * `shift`; the records are those of that frame. Errors: RDL_NO_MEMORY. */
 rdl_status rdli_apart_fill(rdli_memory *memory, rdli_workers *workers, rdli_apart *apart, const rdli_mesh *mesh,
-                           const rdli_motion *motion, const rdli_tree *vertices);
+                           const rdli_motion *motion, const rdli_tree *vertices, const double shift[3]);
 
 #endif

@@ -200,7 +200,8 @@ static rdl_status find_pairs(rdli_broad *broad, const rdli_mesh *mesh, const rdl
     broad->settled = status == RDL_OK;
     broad->apart.records = NULL;
     if (status == RDL_OK && motion != NULL)
-        status = rdli_apart_fill(broad->memory, broad->workers, &broad->apart, mesh, motion, &broad->trees[VERTICES].tree);
+        status = rdli_apart_fill(broad->memory, broad->workers, &broad->apart, mesh, motion, &broad->trees[VERTICES].tree,
+                                 boxes->shift);
     if (status != RDL_OK)
         return status;
     broad->stretches[POINT_TRIANGLE].next = broad->stretches[EDGE_EDGE].next = 0;

@@ -34,13 +34,15 @@ static rdl_event *tell(teller *t, uint32_t stage, uint32_t kind, uint32_t first,
     return event;
 }
 
+/* The boxes are those of a moving frame; what is told encloses them all the way. */
 static void tell_boxes(teller *t, uint32_t kind, const rdl_box *boxes, uint32_t count)
 {
+    const double *shift = t->engine->boxes.shift;
     for (uint32_t i = 0; i < count; i++) {
         rdl_event *event = tell(t, RDL_EVENT_BOX, kind, i, 0);
         for (int k = 0; k < 3; k++) {
-            event->value[k] = (double)boxes[i].lo[k];
-            event->value[k + 3] = (double)boxes[i].hi[k];
+            event->value[k] = (double)boxes[i].lo[k] + fmin(shift[k], 0.0);
+            event->value[k + 3] = (double)boxes[i].hi[k] + fmax(shift[k], 0.0);
         }
     }
 }

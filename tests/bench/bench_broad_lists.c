@@ -105,7 +105,7 @@ static bool copy_mesh(const bench_scene *scene, double push, mesh_copy *m)
     m->edge_owner = malloc(3 * e * sizeof(uint32_t));
     m->vertex_owner = malloc(n * sizeof(uint32_t));
     m->element_triangle = malloc(e * sizeof(uint32_t));
-    m->boxes = (rdli_boxes){malloc(n * sizeof(rdl_box)), malloc(3 * e * sizeof(rdl_box)), malloc(e * sizeof(rdl_box))};
+    m->boxes = (rdli_boxes){malloc(n * sizeof(rdl_box)), malloc(3 * e * sizeof(rdl_box)), malloc(e * sizeof(rdl_box)), {0}};
     if (m->edges == NULL || m->triangles == NULL || m->part == NULL || m->half == NULL || m->start == NULL ||
         m->end == NULL || m->driven == NULL || m->edge_owner == NULL || m->vertex_owner == NULL ||
         m->element_triangle == NULL || m->boxes.vertices == NULL || m->boxes.edges == NULL || m->boxes.triangles == NULL)

@@ -39,7 +39,7 @@ START_TEST(test_bounds)
         rdli_mesh mesh = {.vertex_count = 2, .part_count = 1, .vertex_part = part, .vertex_half = half};
         rdli_motion motion = {(const double(*)[3])start, (const double(*)[3])end, NULL};
         rdl_box vertices[2];
-        rdli_boxes boxes = {vertices, NULL, NULL};
+        rdli_boxes boxes = {.vertices = vertices};
         rdli_bounds_fill(&mesh, &motion, workers, &boxes);
         fine = fine && boxes_overlap(&vertices[0], &vertices[1]);
         for (int v = 0; v < 2; v++)
@@ -66,7 +66,7 @@ START_TEST(test_bounds_clamped)
     rdli_mesh mesh = {.vertex_count = 4, .part_count = 1, .vertex_part = part, .vertex_half = half};
     rdli_motion motion = {(const double(*)[3])start, (const double(*)[3])start, NULL};
     rdl_box vertices[4];
-    rdli_boxes boxes = {vertices, NULL, NULL};
+    rdli_boxes boxes = {.vertices = vertices};
     rdli_bounds_fill(&mesh, &motion, workers, &boxes);
     for (int v = 0; v < 4; v++)
         for (int k = 0; k < 3; k++)
@@ -78,6 +78,56 @@ START_TEST(test_bounds_clamped)
     rdli_workers_destroy(&memory, workers);
 }
 END_TEST
+
+/* Many vertices that share their motion but for a little, two of which come down to the sum of their half-thicknesses on
+ * the way: their boxes overlap, whatever the sizes, and nothing of the common motion is in any box. Where there is none, or a
+ * quarter of the vertices moves alone, that changes nothing. */
+START_TEST(test_common_motion)
+{
+    enum { COUNT = 1500 };
+    static double start[COUNT][3], end[COUNT][3], half[COUNT];
+    static uint32_t part[COUNT];
+    static rdl_box vertices[COUNT];
+    rdli_memory memory;
+    rdli_workers *workers = open_workers(&memory);
+    uint64_t seed = 21;
+    for (int trial = 0; trial < 300; trial++) {
+        const double scale = ldexp(1, (int)(draw(&seed) * 180) - 90), common = scale * ldexp(1, (int)(draw(&seed) * 12)) * (draw(&seed) - 0.5);
+        const double offset = trial % 3 == 0 ? 1e7 * scale : 0;
+        const bool alone = trial % 2 == 0;
+        for (int v = 0; v < COUNT; v++) {
+            half[v] = 0.01 * draw(&seed) * scale;
+            for (int k = 0; k < 3; k++) {
+                start[v][k] = scale * draw(&seed) + offset;
+                end[v][k] = start[v][k] + 1e-3 * scale * (draw(&seed) - 0.5) + (alone && v % 4 == 0 ? 0 : (k + 1) * common);
+            }
+        }
+        /* Vertex 2 ends beside vertex 1 on axis 0, apart by the sum or a little less, and nowhere further away on the others. */
+        for (int k = 0; k < 3; k++)
+            end[2][k] = end[1][k];
+        end[2][0] = end[1][0] + (half[1] + half[2]);
+        while (end[2][0] - end[1][0] > half[1] + half[2])
+            end[2][0] = nextafter(end[2][0], -INFINITY);
+        rdli_mesh mesh = {.vertex_count = COUNT, .part_count = 1, .vertex_part = part, .vertex_half = half};
+        rdli_motion motion = {(const double(*)[3])start, (const double(*)[3])end, NULL};
+        rdli_boxes boxes = {.vertices = vertices};
+        rdli_bounds_fill(&mesh, &motion, workers, &boxes);
+        ck_assert(boxes_overlap(&vertices[1], &vertices[2]));
+        if (fabs(common) < 0.1 * scale)
+            continue;
+        for (int k = 0; k < 3; k++)
+            ck_assert(fabs(boxes.shift[k] - (k + 1) * common) < 2e-3 * scale + fabs(offset) * 1e-15);
+        for (int v = 3; v < COUNT; v++)
+            for (int k = 0; k < 3; k++) {
+                const double size = (double)vertices[v].hi[k] - (double)vertices[v].lo[k];
+                const double want = alone && v % 4 == 0 ? (k + 1) * fabs(common) : 0;
+                ck_assert(fabs(size - want - 2 * half[v]) < 3e-3 * scale + offset * 0x1p-20 + want * 0x1p-20);
+            }
+    }
+    rdli_workers_destroy(&memory, workers);
+}
+END_TEST
+
 int main(void)
 {
     Suite *suite = suite_create("bounds");
@@ -85,6 +135,7 @@ int main(void)
     tcase_set_timeout(all, 60);
     tcase_add_test(all, test_bounds);
     tcase_add_test(all, test_bounds_clamped);
+    tcase_add_test(all, test_common_motion);
     suite_add_tcase(suite, all);
     SRunner *runner = srunner_create(suite);
     srunner_set_fork_status(runner, CK_NOFORK);

@@ -190,9 +190,8 @@ void close_stage(stage *st)
     ck_assert_uint_eq(st->memory.bytes_in_use, 0);
 }
 
-void fill(const scene *s, stage *st)
+void fill(scene *s, stage *st)
 {
     rdli_motion motion = {(const double(*)[3])s->start, (const double(*)[3])s->end, NULL};
-    rdli_boxes boxes = s->boxes;
-    rdli_bounds_fill(&s->mesh, &motion, st->workers, &boxes);
+    rdli_bounds_fill(&s->mesh, &motion, st->workers, &s->boxes);
 }

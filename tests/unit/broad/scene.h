@@ -42,6 +42,6 @@ typedef struct stage {
 rdl_status open_stage(stage *st, unsigned threads, size_t fail_at);
 void close_stage(stage *st);
 /* All boxes of the scene. */
-void fill(const scene *s, stage *st);
+void fill(scene *s, stage *st);
 
 #endif

@@ -106,6 +106,8 @@ START_TEST(test_few_awake)
     rdli_pairs pairs;
     uint64_t seed = 77;
     ck_assert_int_eq(open_stage(&st, 2, 0), RDL_OK);
+    for (uint32_t v = 0; v < s->mesh.vertex_count; v++)
+        s->end[v][0] += 0.3; /* motion that all share */
     fill(s, &st);
     for (int step = 0; step < 12; step++) {
         memset(s->awake, 0, s->mesh.vertex_count);
@@ -117,10 +119,13 @@ START_TEST(test_few_awake)
         }
         memcpy(full->start, s->start, s->mesh.vertex_count * sizeof *s->start);
         memcpy(full->end, s->end, s->mesh.vertex_count * sizeof *s->end);
-        fill(full, &st);
         rdli_motion motion = {(const double(*)[3])s->start, (const double(*)[3])s->end, step % 5 == 4 ? NULL : s->awake};
-        rdli_boxes boxes = s->boxes;
-        rdli_bounds_fill(&s->mesh, &motion, st.workers, &boxes);
+        rdli_bounds_fill(&s->mesh, &motion, st.workers, &s->boxes);
+        const rdli_motion every = {motion.start, motion.end, full->awake};
+        memcpy(full->boxes.shift, s->boxes.shift, sizeof s->boxes.shift);
+        memset(full->awake, 1, s->mesh.vertex_count);
+        rdli_bounds_fill(&full->mesh, &every, st.workers, &full->boxes);
+        ck_assert(s->boxes.shift[0] > 0.25 && s->boxes.shift[1] == 0);
         ck_assert_mem_eq(s->boxes.vertices, full->boxes.vertices, s->mesh.vertex_count * sizeof(rdl_box));
         ck_assert_mem_eq(s->boxes.edges, full->boxes.edges, s->mesh.edge_count * sizeof(rdl_box));
         ck_assert_mem_eq(s->boxes.triangles, full->boxes.triangles, s->mesh.triangle_count * sizeof(rdl_box));
