@@ -7,6 +7,7 @@ const scene scenes[] = {
     {"rest", 60, ALSO_LARGE, build_rest, NULL, NULL, accept_free, NULL, finish_rest},
     {"slide", 20, ALSO_FLOAT32 | QUICK, build_slide, NULL, NULL, accept_free, inspect_slide, finish_slide},
     {"funnel", 60, 0, build_funnel, drive_funnel, NULL, accept_free, NULL, finish_funnel},
+    {"dense", 12, 0, build_dense, NULL, NULL, accept_free, NULL, finish_dense},
     {"links", 50, ALSO_FLOAT32 | ALSO_SMALL | QUICK, build_links, drive_links, NULL, accept_free, NULL, finish_links},
     {"knot", 100, ALSO_SMALL | QUICK, build_knot, drive_knot, NULL, accept_free, inspect_knot, finish_knot},
     {"curtain_0.1", 30, 0, build_curtain_0_1, drive_curtain_0_1, NULL, accept_free, NULL, finish_curtain},

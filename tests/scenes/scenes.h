@@ -12,6 +12,8 @@ void finish_rest(judge *j, unsigned steps, const uint64_t verdicts[4]);
 void build_funnel(world *w);
 void drive_funnel(const world *w, unsigned step, double (*proposed)[3]);
 void finish_funnel(judge *j, unsigned steps, const uint64_t verdicts[4]);
+void build_dense(world *w);
+void finish_dense(judge *j, unsigned steps, const uint64_t verdicts[4]);
 
 /* scenes_loops.c */
 void build_links(world *w);

@@ -95,3 +95,38 @@ void finish_funnel(judge *j, unsigned steps, const uint64_t verdicts[4])
     if (through < 13)
         judge_fault(j, steps, "only %zu vertices fell into the spout", through);
 }
+
+/* A cloth of 5 mm mesh and a strand of 5 mm pieces, both 6 mm half thick, fall on a plate: every pair of either starts
+ * below its gap and may only move apart. */
+void build_dense(world *w)
+{
+    const double corner[3] = {0.0, 0.0, 0.0}, u[3] = {0.04, 0.0, 0.002}, v[3] = {0.0, 0.04, -0.004};
+    const double a[3] = {0.1, 0.0, 0.0}, b[3] = {0.16, 0.0, -0.01};
+    big_plate(w, -0.03, 0.002);
+    world_part(w, "thick cloth", RDL_CLOTH, 0.006);
+    world_sheet(w, corner, u, v, 8, 8, 0.001);
+    world_part(w, "thick strand", RDL_STRANDS, 0.006);
+    world_line(w, a, b, 17, 0.001);
+    w->by_impulse = true;
+    w->gravity[2] = -9.81;
+    w->drag = 0.05;
+}
+
+void finish_dense(judge *j, unsigned steps, const uint64_t verdicts[4])
+{
+    const world *w = j->w;
+    uint32_t top = w->part_first[1], end = w->part_first[2];
+    double width = stretch_between(w, top, top + 72), height = stretch_between(w, top, top + 8);
+    double length = stretch_between(w, end, end + 17);
+    (void)verdicts;
+    if (width > 0.04 * 1.15 || height > 0.04 * 1.15)
+        judge_fault(j, steps, "the cloth grew to %g x %g m", width, height);
+    if (length > 0.0848528 * 1.15)
+        judge_fault(j, steps, "the strand grew to %g m", length);
+    for (size_t i = 0; i < w->link_count; i++)
+        if (stretch_between(w, w->links[i].a, w->links[i].b) > 1.3 * w->links[i].rest / w->scale) {
+            judge_fault(j, steps, "link %zu is at %g of its length", i,
+                        stretch_between(w, w->links[i].a, w->links[i].b) * w->scale / w->links[i].rest);
+            return;
+        }
+}
