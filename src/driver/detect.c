@@ -4,6 +4,7 @@
 #include "driver/watch.h"
 
 enum { CHUNK = 512 }; /* pairs per task: enough to hide the hand-out, few enough to share evenly */
+enum { BLOCK = 64 };  /* pairs that the narrow phase looks at together */
 
 enum { PAIR_QUIET = 0, PAIR_NEAR = 1, PAIR_HIT = 2 };
 
@@ -79,55 +80,108 @@ static void load_motion(const double (*from)[3], const double (*to)[3], const ui
     }
 }
 
-/* Floors are taken from the start of the step, which is not the start of every piece; and where there is no room they
- * are squeezed. */
-static void examine(const sweep *s, uint32_t kind, const uint32_t vertex[4], double gap, rdli_examined *examined)
+/* Pairs of one kind, looked at together: the narrow phase takes them four at a time. */
+typedef struct block {
+    uint32_t kind;
+    size_t count;
+    size_t index[BLOCK]; /* of the pair in the sweep */
+    uint32_t vertex[BLOCK][4];
+    rdl_motion motion[BLOCK];
+    double gap[BLOCK], squeeze[BLOCK];
+    rdli_examined examined[BLOCK];
+} block;
+
+/* Adds a pair to the block, unless it is of no interest now. */
+static void add_pair(const sweep *s, size_t index, block *b)
 {
     const rdl_engine *engine = s->engine;
-    const rdli_look *look = s->look;
-    double share = engine->settings.path_floor_share, squeeze = squeeze_of(look, vertex);
-    rdl_motion motion;
-    load_motion(look->from, look->to, vertex, &motion);
-    rdli_examine((int)kind, &motion, gap * squeeze, share, NULL, examined);
-    if (examined->quiet || (look->first_piece && squeeze == 1.0))
+    rdli_pair pair;
+    size_t at = b->count;
+    pair_at(s, index, &b->kind, &pair);
+    rdli_pair_vertices(&engine->mesh, b->kind, pair.first, pair.second, b->vertex[at]);
+    if (engine->crossing_count > 0 && is_released(engine, b->vertex[at]))
         return;
-    double begin[4][3];
-    for (int k = 0; k < 4; k++)
-        memcpy(begin[k], ((const double (*)[3])engine->start.data)[vertex[k]], sizeof begin[k]);
-    rdli_closest closest;
-    rdli_closest_points((int)kind, (const double (*)[3])begin, &closest);
-    double floor_distance[2] = { closest.distance_lo * squeeze, closest.distance_hi * squeeze };
-    rdli_examine((int)kind, &motion, gap * squeeze, share, floor_distance, examined);
-    if (squeeze == 1.0 && examined->below_end) {
-        /* The enclosure's upper end is a little above the exact floor: what did not move at all must not fail by that. */
-        rdl_motion whole;
-        memcpy(whole.start, begin, sizeof whole.start);
-        memcpy(whole.end, motion.end, sizeof whole.end);
-        examined->below_end = !rdli_end_keeps_floor((int)kind, &whole, gap);
+    b->index[at] = index;
+    b->squeeze[at] = squeeze_of(s->look, b->vertex[at]);
+    b->gap[at] = rdli_pair_gap(&engine->mesh, b->kind, pair.first, pair.second) * b->squeeze[at];
+    load_motion(s->look->from, s->look->to, b->vertex[at], &b->motion[at]);
+    b->count++;
+}
+
+/* Floors are taken from the start of the step, which is not the start of every piece; and where there is no room they
+ * are squeezed. Looks again at those pairs of the block that are not quiet. */
+static void examine_from_start(const sweep *s, block *b)
+{
+    const rdl_engine *engine = s->engine;
+    double share = engine->settings.path_floor_share;
+    for (size_t i = 0; i < b->count; i++) {
+        rdli_examined *examined = &b->examined[i];
+        if (examined->quiet || (s->look->first_piece && b->squeeze[i] == 1.0))
+            continue;
+        double begin[4][3];
+        for (int k = 0; k < 4; k++)
+            memcpy(begin[k], ((const double (*)[3])engine->start.data)[b->vertex[i][k]], sizeof begin[k]);
+        rdli_closest closest;
+        rdli_closest_points((int)b->kind, (const double (*)[3])begin, &closest);
+        double floor_distance[2] = { closest.distance_lo * b->squeeze[i], closest.distance_hi * b->squeeze[i] };
+        rdli_examine((int)b->kind, &b->motion[i], b->gap[i], share, floor_distance, examined);
+        if (b->squeeze[i] == 1.0 && examined->below_end) {
+            /* The enclosure's upper end is a little above the exact floor: what did not move at all must not fail by that. */
+            rdl_motion whole;
+            memcpy(whole.start, begin, sizeof whole.start);
+            memcpy(whole.end, b->motion[i].end, sizeof whole.end);
+            examined->below_end = !rdli_end_keeps_floor((int)b->kind, &whole, b->gap[i]);
+        }
     }
 }
 
-static bool look_at(const sweep *s, size_t index, rdli_examined *examined, uint32_t *kind, rdli_pair *pair,
-                    uint32_t vertex[4])
+static void examine(const sweep *s, block *b)
 {
-    pair_at(s, index, kind, pair);
-    rdli_pair_vertices(&s->engine->mesh, *kind, pair->first, pair->second, vertex);
-    if (s->engine->crossing_count > 0 && is_released(s->engine, vertex))
-        return false;
-    examine(s, *kind, vertex, rdli_pair_gap(&s->engine->mesh, *kind, pair->first, pair->second), examined);
-    return true;
+    rdli_examine_list((int)b->kind, b->count, b->motion, b->gap, s->engine->settings.path_floor_share, NULL, b->examined);
+    examine_from_start(s, b);
 }
 
-static bool ends_close(const sweep *s, uint32_t kind, const uint32_t vertex[4], const rdli_examined *examined)
+static bool is_close(const sweep *s, const rdli_examined *examined)
 {
-    double x[4][3];
-    rdli_closest closest;
-    if (!s->look->wants_close)
-        return false;
-    for (int k = 0; k < 4; k++)
-        memcpy(x[k], s->look->to[vertex[k]], sizeof x[k]);
-    rdli_closest_points((int)kind, (const double (*)[3])x, &closest);
-    return closest.distance_lo < close_share * examined->end_floor;
+    return s->look->wants_close && examined->end_lo < close_share * examined->end_floor;
+}
+
+static void flag_block(const sweep *s, block *b, rdli_counts *counts)
+{
+    examine(s, b);
+    for (size_t i = 0; i < b->count; i++) {
+        const rdli_examined *examined = &b->examined[i];
+        counts->pairs++;
+        counts->decided[examined->quiet ? RDL_STAGE_DIRECTION : examined->touch.stage]++;
+        if (examined->quiet)
+            continue;
+        counts->orders[examined->touch.order < 15 ? examined->touch.order : 15]++;
+        counts->depths[examined->touch.depth < 15 ? examined->touch.depth : 15]++;
+        bool hit = examined->reaches_path || examined->below_end;
+        counts->touches += hit;
+        bool listed = hit || examined->contact_at_start || is_close(s, examined);
+        s->flags[b->index[i]] = listed ? PAIR_HIT : PAIR_NEAR;
+    }
+}
+
+/* The next block: up to BLOCK pairs of one kind out of [*next, end) of the sweep, or of its list of indices. */
+static bool next_block(const sweep *s, bool listed, size_t *next, size_t end, block *b)
+{
+    size_t split = s->pairs.point_triangle_count;
+    b->count = 0;
+    while (*next < end && b->count < BLOCK) {
+        size_t index = listed ? s->indices[*next] : *next;
+        if (b->count > 0 && (index < split) != (b->kind == RDL_POINT_TRIANGLE))
+            break;
+        add_pair(s, index, b);
+        ++*next;
+    }
+    return b->count > 0;
+}
+
+static size_t chunk_end(size_t chunk, size_t total)
+{
+    return (chunk + 1) * CHUNK < total ? (chunk + 1) * CHUNK : total;
 }
 
 static void flag_chunk(void *data, size_t chunk, unsigned worker)
@@ -135,51 +189,45 @@ static void flag_chunk(void *data, size_t chunk, unsigned worker)
     (void)worker;
     sweep *s = data;
     rdli_counts *counts = &s->counts[chunk];
+    size_t next = chunk * CHUNK, end = chunk_end(chunk, s->total);
+    block b;
     memset(counts, 0, sizeof *counts);
-    size_t end = (chunk + 1) * CHUNK < s->total ? (chunk + 1) * CHUNK : s->total;
-    for (size_t i = chunk * CHUNK; i < end; i++) {
-        rdli_examined examined;
-        rdli_pair pair;
-        uint32_t kind, vertex[4];
-        s->flags[i] = PAIR_QUIET;
-        if (!look_at(s, i, &examined, &kind, &pair, vertex))
-            continue;
-        counts->pairs++;
-        counts->decided[examined.quiet ? RDL_STAGE_DIRECTION : examined.touch.stage]++;
-        if (examined.quiet)
-            continue;
-        counts->orders[examined.touch.order < 15 ? examined.touch.order : 15]++;
-        counts->depths[examined.touch.depth < 15 ? examined.touch.depth : 15]++;
-        bool hit = examined.reaches_path || examined.below_end;
-        counts->touches += hit;
-        bool listed = hit || examined.contact_at_start || ends_close(s, kind, vertex, &examined);
-        s->flags[i] = listed ? PAIR_HIT : PAIR_NEAR;
-    }
+    memset(s->flags + next, PAIR_QUIET, end - next);
+    while (next_block(s, false, &next, end, &b))
+        flag_block(s, &b, counts);
 }
 
+static void fill_hit(const sweep *s, const block *b, size_t i, rdli_hit *hit)
+{
+    const rdli_examined *examined = &b->examined[i];
+    rdli_pair pair;
+    memset(hit, 0, sizeof *hit);
+    pair_at(s, b->index[i], &hit->kind, &pair);
+    memcpy(hit->vertex, b->vertex[i], sizeof hit->vertex);
+    hit->first = pair.first;
+    hit->second = pair.second;
+    hit->gap = rdli_pair_gap(&s->engine->mesh, hit->kind, pair.first, pair.second);
+    hit->start_distance[0] = examined->start_lo;
+    hit->start_distance[1] = examined->start_hi;
+    hit->floor = examined->end_floor;
+    hit->time = examined->touch.time_lo;
+    hit->reaches_path = examined->reaches_path;
+    hit->below_end = examined->below_end;
+    hit->contact_at_start = examined->contact_at_start;
+    hit->close = !examined->reaches_path && !examined->below_end && !examined->contact_at_start;
+}
+
+/* Only pairs of interest are listed, so every one of them has a place in a block. */
 static void detail_chunk(void *data, size_t chunk, unsigned worker)
 {
     (void)worker;
     sweep *s = data;
-    rdl_engine *engine = s->engine;
-    size_t end = (chunk + 1) * CHUNK < s->hit_count ? (chunk + 1) * CHUNK : s->hit_count;
-    for (size_t i = chunk * CHUNK; i < end; i++) {
-        rdli_examined examined;
-        rdli_pair pair;
-        rdli_hit *hit = &s->hits[i];
-        memset(hit, 0, sizeof *hit);
-        look_at(s, s->indices[i], &examined, &hit->kind, &pair, hit->vertex);
-        hit->first = pair.first;
-        hit->second = pair.second;
-        hit->gap = rdli_pair_gap(&engine->mesh, hit->kind, pair.first, pair.second);
-        hit->start_distance[0] = examined.start_lo;
-        hit->start_distance[1] = examined.start_hi;
-        hit->floor = examined.end_floor;
-        hit->time = examined.touch.time_lo;
-        hit->reaches_path = examined.reaches_path;
-        hit->below_end = examined.below_end;
-        hit->contact_at_start = examined.contact_at_start;
-        hit->close = !examined.reaches_path && !examined.below_end && !examined.contact_at_start;
+    size_t next = chunk * CHUNK, end = chunk_end(chunk, s->hit_count), filled = next;
+    block b;
+    while (next_block(s, true, &next, end, &b)) {
+        examine(s, &b);
+        for (size_t i = 0; i < b.count; i++)
+            fill_hit(s, &b, i, &s->hits[filled++]);
     }
 }
 

@@ -3,10 +3,6 @@
 #include "narrow/filter.h"
 #include "narrow/stages.h"
 
-/* An enclosure narrower than this, relative to the distance, needs no exact arithmetic: two orders finer than any margin
- * that the response works with. */
-#define TIGHT 0x1p-36
-
 static const double unit = 0x1p-52;
 
 static double size_of(const double v[3])
@@ -52,26 +48,35 @@ static __attribute__((noinline)) bool wide_enclosure(int kind, const double x[4]
     return exact_enclosure(limbs, RDLI_LARGE_ROOM, kind, x, lo, hi);
 }
 
-static __attribute__((noinline)) void certain_enclosure(int kind, const double x[4][3], double *lo, double *hi)
+__attribute__((noinline)) void rdli_exact_enclosure(int kind, const double x[4][3], rdli_enclosure *enclosure)
 {
     mp_limb_t limbs[RDLI_SMALL_ROOM];
-    if (!exact_enclosure(limbs, RDLI_SMALL_ROOM, kind, x, lo, hi))
-        wide_enclosure(kind, x, lo, hi);
+    if (!exact_enclosure(limbs, RDLI_SMALL_ROOM, kind, x, &enclosure->lo, &enclosure->hi))
+        wide_enclosure(kind, x, &enclosure->lo, &enclosure->hi);
 }
 
-/* Where the difference of the closest points cancels although they do not meet: the features' common normal, on the side
- * that doubles see; any direction where there is none. */
-static void normal_of_features(int kind, const rdli_frame *f, double normal[3])
+/* Where the difference of the closest points cancels: the unit normal of the features, on the side of d; zero where there
+ * is none. */
+static void normal_of_features(const rdli_frame *f, const double d[3], double normal[3])
 {
-    double n[3] = {f->u[1] * f->v[2] - f->u[2] * f->v[1], f->u[2] * f->v[0] - f->u[0] * f->v[2],
-        f->u[0] * f->v[1] - f->u[1] * f->v[0]};
-    double length = sqrt(n[0] * n[0] + n[1] * n[1] + n[2] * n[2]);
-    double side = f->w[0] * n[0] + f->w[1] * n[1] + f->w[2] * n[2];
-    double sign = (side < 0) == (kind == RDL_POINT_TRIANGLE) ? -1 : 1;
-    normal[0] = 1;
-    normal[1] = normal[2] = 0;
-    for (int k = 0; length > 0 && k < 3; k++)
-        normal[k] = sign * n[k] / length;
+    rdli_cross(f->u, f->v, normal);
+    double length = rdli_length(normal);
+    for (int k = 0; k < 3; k++)
+        normal[k] = length > 0 ? normal[k] / length : 0;
+    if (rdli_dot(normal, d) < 0)
+        for (int k = 0; k < 3; k++)
+            normal[k] = -normal[k];
+}
+
+/* The features do not meet, but doubles see no distance: their normal on the side that doubles see, or any direction. */
+static void any_normal(int kind, const rdli_frame *f, double normal[3])
+{
+    double w[3];
+    for (int k = 0; k < 3; k++)
+        w[k] = kind == RDL_POINT_TRIANGLE ? f->w[k] : -f->w[k];
+    normal_of_features(f, w, normal);
+    if (rdli_dot(normal, normal) == 0)
+        normal[0] = 1;
 }
 
 void rdli_closest_points(int kind, const double x[4][3], rdli_closest *closest)
@@ -89,16 +94,25 @@ void rdli_closest_points(int kind, const double x[4][3], rdli_closest *closest)
     double size = size_of(frame.w) + size_of(frame.u) + size_of(frame.v);
     double hi = length * (1 + 8 * unit) + 8 * unit * size + RDLI_UNDERFLOW;
     double lo = rdli_least_along(kind, (const double (*)[3])scaled, closest->normal) * (1 - 8 * unit);
-    if (lo > 0 && hi - lo <= TIGHT * hi) {
-        closest->distance_lo = shift ? nextafter(ldexp(lo, -shift), 0) : lo;
-        closest->distance_hi = shift ? nextafter(ldexp(hi, -shift), (double)INFINITY) : hi;
+    if (!(lo > 0 && hi - lo <= RDLI_TIGHT * hi)) {
+        double normal[3];
+        normal_of_features(&frame, closest->normal, normal);
+        double other = rdli_least_along(kind, (const double (*)[3])scaled, normal) * (1 - 8 * unit);
+        lo = other > lo ? other : lo;
+    }
+    if (lo > 0 && hi - lo <= RDLI_TIGHT * hi) {
+        closest->distance_lo = rdli_unscaled(lo, shift, 0);
+        closest->distance_hi = rdli_unscaled(hi, shift, (double)INFINITY);
         return;
     }
-    certain_enclosure(kind, x, &closest->distance_lo, &closest->distance_hi);
+    rdli_enclosure exact;
+    rdli_exact_enclosure(kind, x, &exact);
+    closest->distance_lo = exact.lo;
+    closest->distance_hi = exact.hi;
     if (closest->distance_hi == 0)
         memset(closest->normal, 0, sizeof closest->normal);
     else if (length == 0)
-        normal_of_features(kind, &frame, closest->normal);
+        any_normal(kind, &frame, closest->normal);
 }
 
 /* Sign of distance(end) - other, where other is a length or, where it is negative, the distance at the start. */
@@ -142,23 +156,20 @@ static bool nothing_moves(const rdl_motion *motion)
     return true;
 }
 
-/* distance(end) >= length, exactly; `end` holds what doubles know of it. */
-static bool end_reaches(int kind, const rdl_motion *motion, const rdli_closest *end, double length)
+bool rdli_end_reaches(int kind, const rdl_motion *motion, const rdli_enclosure *end, double length)
 {
-    if (end->distance_lo >= length)
+    if (end->lo >= length)
         return true;
-    if (end->distance_hi < length)
+    if (end->hi < length)
         return false;
     return certain_compare(kind, motion, length) >= 0;
 }
 
-static bool end_keeps(int kind, const rdl_motion *motion, double gap, const rdli_closest *start, const rdli_closest *end)
+bool rdli_end_keeps(int kind, const rdl_motion *motion, double gap, const rdli_enclosure ends[2])
 {
-    if (end_reaches(kind, motion, end, gap))
+    if (nothing_moves(motion) || rdli_end_reaches(kind, motion, &ends[1], gap) || ends[0].hi <= ends[1].lo)
         return true;
-    if (start->distance_hi <= end->distance_lo)
-        return true;
-    if (end->distance_hi < start->distance_lo)
+    if (ends[1].hi < ends[0].lo)
         return false;
     return certain_compare(kind, motion, -1) >= 0;
 }
@@ -172,49 +183,6 @@ bool rdli_end_keeps_floor(int kind, const rdl_motion *motion, double gap)
     if (end.distance_lo >= gap)
         return true;
     rdli_closest_points(kind, motion->start, &start);
-    return end_keeps(kind, motion, gap, &start, &end);
-}
-
-void rdli_examine_open(int kind, const rdl_motion *motion, double gap, double share, const double floor_distance[2],
-                       rdli_examined *examined)
-{
-    rdli_closest start, end;
-    rdli_sized sized;
-    rdli_sized_of(motion, &sized);
-    rdli_frame first = rdli_frame_of(kind, (const double (*)[3])sized.motion.start);
-    rdli_frame last = rdli_frame_of(kind, (const double (*)[3])sized.motion.end);
-    double apart = rdli_frames_apart(kind, &first, &last); /* in units of the scaled motion */
-    *examined = (rdli_examined){.quiet = apart > ldexp(gap, sized.shift)};
-    if (examined->quiet)
-        return;
-    rdli_closest_points(kind, motion->start, &start);
-    rdli_closest_points(kind, motion->end, &end);
-    examined->start_lo = start.distance_lo;
-    examined->start_hi = start.distance_hi;
-    examined->contact_at_start = start.distance_hi == 0;
-    double from = floor_distance ? floor_distance[1] : start.distance_hi;
-    examined->end_floor = from < gap ? from : gap;
-    /* never below the exact product */
-    examined->path_floor = examined->end_floor > 0 ? nextafter(share * examined->end_floor, (double)INFINITY) : 0;
-    if (floor_distance)
-        examined->below_end = !end_reaches(kind, motion, &end, examined->end_floor);
-    else
-        examined->below_end = !nothing_moves(motion) && !end_keeps(kind, motion, gap, &start, &end);
-    if (apart > ldexp(examined->path_floor, sized.shift))
-        examined->touch = (rdl_touch){.time_lo = 1, .time_hi = 1, .stage = RDL_STAGE_DIRECTION, .order = 1};
-    else
-        rdli_find_open_touch(kind, motion, &sized, examined->path_floor, &examined->touch);
-    examined->reaches_path = examined->touch.touches;
-}
-
-void rdli_examine(int kind, const rdl_motion *motion, double gap, double share, const double floor_distance[2],
-                  rdli_examined *examined)
-{
-    rdl_touch touch;
-    rdli_sized sized;
-    rdli_sized_of(motion, &sized);
-    if (rdli_screen_one(rdli_screen_choose(), kind, &sized, gap, &touch))
-        *examined = (rdli_examined){.quiet = 1};
-    else
-        rdli_examine_open(kind, motion, gap, share, floor_distance, examined);
+    rdli_enclosure ends[2] = {{start.distance_lo, start.distance_hi}, {end.distance_lo, end.distance_hi}};
+    return rdli_end_keeps(kind, motion, gap, ends);
 }

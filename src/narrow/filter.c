@@ -25,6 +25,14 @@ int rdli_scale_points(const double *x, size_t count, double *scaled)
     return -exponent;
 }
 
+double rdli_unscaled(double length, int shift, double towards)
+{
+    if (shift == 0)
+        return length;
+    double metres = ldexp(length, -shift);
+    return ldexp(metres, shift) == length ? metres : nextafter(metres, towards);
+}
+
 static double dot_absolute(const double a[3], const double b[3])
 {
     return fabs(a[0] * b[0]) + fabs(a[1] * b[1]) + fabs(a[2] * b[2]);
@@ -90,17 +98,4 @@ double rdli_frame_least(int kind, const rdli_frame *frame, const double d[3])
         return w - (most > 0 ? most : 0);
     }
     return (u < 0 ? u : 0) - w - (v > 0 ? v : 0);
-}
-
-double rdli_frames_apart(int kind, const rdli_frame *start, const rdli_frame *end)
-{
-    double a = rdli_frame_size(start), b = rdli_frame_size(end), pad = 0x1p-46 * (a > b ? a : b) + RDLI_UNDERFLOW;
-    rdli_frame middle;
-    rdli_nearest nearest;
-    rdli_frame_mix(start, end, 0.5, &middle);
-    rdli_nearest_points(kind, &middle, &nearest);
-    a = rdli_frame_least(kind, start, nearest.d);
-    b = rdli_frame_least(kind, end, nearest.d);
-    double length = rdli_length(nearest.d), least = a < b ? a : b;
-    return length > RDLI_UNDERFLOW ? least / length * (1 - 16 * unit) - pad : 0;
 }

@@ -15,6 +15,9 @@ typedef struct rdli_frame {
  * shift (0 for ordinary sizes, and then x is only copied). count is a multiple of 4. */
 int rdli_scale_points(const double *x, size_t count, double *scaled);
 
+/* length 2^-shift, rounded towards `towards` where it is too small to be exact. */
+double rdli_unscaled(double length, int shift, double towards);
+
 rdli_frame rdli_frame_of(int kind, const double x[4][3]);
 
 /* A vector of the frame between two points of the features, from nearly the closest points: the first feature's point
@@ -34,9 +37,9 @@ double rdli_frame_size(const rdli_frame *frame);
 /* Least d . e over the control points of the frame; its rounding is at most 2^-47 size |d|. */
 double rdli_frame_least(int kind, const rdli_frame *frame, const double d[3]);
 
-/* A length that the distance certainly stays above while the frame goes from start to end, by the direction of the
- * closest points in the middle; 0 or less where that direction shows nothing. */
-double rdli_frames_apart(int kind, const rdli_frame *start, const rdli_frame *end);
+/* An enclosure narrower than this, relative to the distance, needs no exact arithmetic: two orders finer than any margin
+ * that the response works with. */
+#define RDLI_TIGHT 0x1p-36
 
 /* A bound of the effect of underflow on any expression here, for ordinary sizes: far above 2^-1074 times the number of
  * operations times the largest factor, far below the rounding of anything of relevant size. */

@@ -32,6 +32,7 @@ typedef struct rdli_examined {
     uint8_t below_end;        /* end distance < end floor, exactly (as rdli_end_keeps_floor) */
     uint8_t contact_at_start; /* the start distance is exactly 0 (floors are 0, the touch is at gap 0) */
     double start_lo, start_hi;/* enclosure of the start distance */
+    double end_lo;            /* not above the end distance */
     double end_floor;         /* min(gap, start_hi): not below the exact floor */
     double path_floor;        /* share * end_floor */
     rdl_touch touch;          /* of the path floor */
@@ -42,11 +43,12 @@ typedef struct rdli_examined {
 void rdli_examine(int kind, const rdl_motion *motion, double gap, double share, const double floor_distance[2],
                   rdli_examined *examined);
 
-/* The cheap first look of rdli_examine at many pairs, four lanes at a time: quiet[i] = 1 is certified. A pair that it
- * leaves open goes to rdli_examine_open, which is rdli_examine without that first look. */
+/* The same for many pairs, in blocks, four lanes at a time; floor_distances may be NULL. Same bits as one by one. */
+void rdli_examine_list(int kind, size_t count, const rdl_motion motions[], const double gaps[], double share,
+                       const double (*floor_distances)[2], rdli_examined examined[]);
+
+/* The cheap first look of rdli_examine_list alone: quiet[i] = 1 is certified. */
 void rdli_screen_list(int kind, size_t count, const rdl_motion motions[], const double gaps[], uint8_t quiet[]);
-void rdli_examine_open(int kind, const rdl_motion *motion, double gap, double share, const double floor_distance[2],
-                       rdli_examined *examined);
 
 /* Exact predicate at rest: see rdl_edge_against_triangle. */
 int rdli_edge_against_triangle(const double edge[2][3], const double triangle[3][3]);

@@ -1,101 +1,27 @@
-/* narrow/screen_kernel.h: body of the screen; included once per instruction set with SCREEN_NAME and SCREEN_WIDTH set.
- *
- * Every lane does the same operations in the same order whatever the width, so all variants give the same bits. The only
- * choices are selections by comparisons. */
-#include "narrow/filter.h"
-#include "narrow/screen.h"
+/* narrow/screen_kernel.h: the first look in lanes: two directions, then the signs of the cubic. Included after lane.h. */
 
-static_assert(RDLI_LANES % SCREEN_WIDTH == 0, "whole vectors");
-
-typedef double vec __attribute__((vector_size(8 * SCREEN_WIDTH)));
-typedef int64_t bits __attribute__((vector_size(8 * SCREEN_WIDTH)));
-
-#define SCREEN_INLINE static inline __attribute__((always_inline))
-
-typedef struct vec3 {
-    vec c[3];
-} vec3;
-
-/* Difference vectors as in rdli_frame, [0] at the start and [1] at the end. */
 typedef struct block {
-    vec3 w[2], u[2], v[2];
+    frames at[2];
     vec gap, pad;
 } block;
 
-SCREEN_INLINE vec pick(bits which, vec a, vec b)
+LANE_INLINE block block_of(int kind, const points *p, vec gap)
 {
-    return (vec)((which & (bits)a) | (~which & (bits)b));
-}
-
-SCREEN_INLINE vec absolute(vec a)
-{
-    return (vec)((bits)a & INT64_MAX);
-}
-
-SCREEN_INLINE vec larger(vec a, vec b)
-{
-    return pick(a > b, a, b);
-}
-
-SCREEN_INLINE vec smaller(vec a, vec b)
-{
-    return pick(a < b, a, b);
-}
-
-SCREEN_INLINE vec dot(const vec3 *a, const vec3 *b)
-{
-    return a->c[0] * b->c[0] + a->c[1] * b->c[1] + a->c[2] * b->c[2];
-}
-
-SCREEN_INLINE vec load(const double *from)
-{
-    vec a;
-    memcpy(&a, from, sizeof a);
-    return a;
-}
-
-SCREEN_INLINE vec3 difference(const rdli_lanes *lanes, int half, int end, int i, int j)
-{
-    vec3 d;
-    for (int k = 0; k < 3; k++)
-        d.c[k] = load(&lanes->x[12 * end + 3 * i + k][half]) - load(&lanes->x[12 * end + 3 * j + k][half]);
-    return d;
-}
-
-SCREEN_INLINE block load_block(int kind, const rdli_lanes *lanes, int half)
-{
-    block b;
-    bool edges = kind == RDL_EDGE_EDGE;
-    vec size = load(lanes->gap + half) * 0;
-    for (int end = 0; end < 2; end++) {
-        b.w[end] = difference(lanes, half, end, edges ? 2 : 0, edges ? 0 : 1);
-        b.u[end] = difference(lanes, half, end, edges ? 1 : 2, edges ? 0 : 1);
-        b.v[end] = difference(lanes, half, end, 3, edges ? 2 : 1);
-        for (int k = 0; k < 3; k++)
-            size = larger(larger(size, absolute(b.w[end].c[k])), larger(absolute(b.u[end].c[k]), absolute(b.v[end].c[k])));
-    }
-    b.gap = load(lanes->gap + half);
+    block b = {{frames_of(kind, p->x[0]), frames_of(kind, p->x[1])}, gap, all(0)};
+    vec size = larger(frames_size(&b.at[0]), frames_size(&b.at[1]));
     /* three rounded vectors, five roundings in a dot product of terms up to size |d|: 3 x 6 x sqrt(3) x 2^-52 < 2^-47 */
     b.pad = 0x1p-47 * size + RDLI_UNDERFLOW;
     return b;
 }
 
-/* Least projection of the control points at one end, from those of w, u, v. */
-SCREEN_INLINE vec least(int kind, vec w, vec u, vec v)
-{
-    if (kind == RDL_POINT_TRIANGLE)
-        return w - larger(larger(u, v), u * 0);
-    return smaller(u, u * 0) - w - larger(v, v * 0);
-}
-
 /* All ones where the direction d, or its opposite, separates by more than the gap during the whole motion. */
-SCREEN_INLINE bits separates(int kind, const block *b, const vec3 *d)
+LANE_INLINE bits separates(int kind, const block *b, const vec3 *d)
 {
     vec w[2], u[2], v[2];
     for (int end = 0; end < 2; end++) {
-        w[end] = dot(&b->w[end], d);
-        u[end] = dot(&b->u[end], d);
-        v[end] = dot(&b->v[end], d);
+        w[end] = dot(&b->at[end].w, d);
+        u[end] = dot(&b->at[end].u, d);
+        v[end] = dot(&b->at[end].v, d);
     }
     vec one = smaller(least(kind, w[0], u[0], v[0]), least(kind, w[1], u[1], v[1]));
     vec other = smaller(least(kind, -w[0], -u[0], -v[0]), least(kind, -w[1], -u[1], -v[1]));
@@ -103,71 +29,97 @@ SCREEN_INLINE bits separates(int kind, const block *b, const vec3 *d)
     return (best > RDLI_UNDERFLOW) & (best * best > bound + RDLI_UNDERFLOW);
 }
 
-SCREEN_INLINE vec3 middle(const vec3 a[2])
+LANE_INLINE bits by_directions(int kind, const block *b)
 {
-    vec3 m;
-    for (int k = 0; k < 3; k++)
-        m.c[k] = 0.5 * (a[0].c[k] + a[1].c[k]);
-    return m;
-}
-
-/* Component k of a x b. */
-SCREEN_INLINE vec cross(const vec3 *a, const vec3 *b, int k)
-{
-    int i = (k + 1) % 3, j = (k + 2) % 3;
-    return a->c[i] * b->c[j] - a->c[j] * b->c[i];
-}
-
-SCREEN_INLINE bits by_directions(int kind, const block *b)
-{
-    vec3 w = middle(b->w), u = middle(b->u), v = middle(b->v), n, c;
+    const frames *f = b->at;
+    vec3 w = mixed(&f[0].w, &f[1].w, all(0.5), all(0.5)), u = mixed(&f[0].u, &f[1].u, all(0.5), all(0.5));
+    vec3 v = mixed(&f[0].v, &f[1].v, all(0.5), all(0.5)), n, c;
     for (int k = 0; k < 3; k++) {
         n.c[k] = cross(&u, &v, k);
         c.c[k] = kind == RDL_POINT_TRIANGLE ? 3 * w.c[k] - (u.c[k] + v.c[k]) : 2 * w.c[k] + (v.c[k] - u.c[k]);
     }
-    return separates(kind, b, &n) | separates(kind, b, &c);
+    bits apart = separates(kind, b, &n);
+    if (mask_of(~apart))
+        apart |= separates(kind, b, &c);
+    if (kind == RDL_EDGE_EDGE && mask_of(~apart)) {
+        vec uu = dot(&u, &u), cu = dot(&c, &u);
+        vec3 q;
+        for (int k = 0; k < 3; k++)
+            q.c[k] = uu * c.c[k] - cu * u.c[k];
+        apart |= separates(kind, b, &q);
+    }
+    return apart;
 }
 
-/* All ones where the four coefficients of w . (u x v) have one certified sign. */
-SCREEN_INLINE bits by_cubic(const block *b)
+/* f = w . (u x v): coefficients times 1, 3, 3, 1, and a bound for all four. */
+LANE_INLINE void cubic_of(const block *b, vec f[4], vec *bound)
 {
-    vec f[4], size = b->gap * 0;
+    const frames *at = b->at;
+    vec size = all(0);
     for (int i = 0; i < 4; i++)
         f[i] = size;
     for (int k = 0; k < 3; k++) {
         int i = (k + 1) % 3, j = (k + 2) % 3;
-        vec n0 = cross(&b->u[0], &b->v[0], k), n2 = cross(&b->u[1], &b->v[1], k), w0 = b->w[0].c[k], w1 = b->w[1].c[k];
-        vec n1 = cross(&b->u[0], &b->v[1], k) + cross(&b->u[1], &b->v[0], k); /* twice the middle coefficient */
+        vec w0 = at[0].w.c[k], w1 = at[1].w.c[k];
+        vec n0 = cross(&at[0].u, &at[0].v, k), n2 = cross(&at[1].u, &at[1].v, k);
+        vec n1 = cross(&at[0].u, &at[1].v, k) + cross(&at[1].u, &at[0].v, k); /* twice the middle coefficient */
         f[0] += w0 * n0;
-        f[1] += w0 * n1 + w1 * n0; /* three times the coefficient */
+        f[1] += w0 * n1 + w1 * n0;
         f[2] += w1 * n1 + w0 * n2;
         f[3] += w1 * n2;
-        vec ui = larger(absolute(b->u[0].c[i]), absolute(b->u[1].c[i]));
-        vec uj = larger(absolute(b->u[0].c[j]), absolute(b->u[1].c[j]));
-        vec vi = larger(absolute(b->v[0].c[i]), absolute(b->v[1].c[i]));
-        vec vj = larger(absolute(b->v[0].c[j]), absolute(b->v[1].c[j]));
+        vec ui = larger(absolute(at[0].u.c[i]), absolute(at[1].u.c[i]));
+        vec uj = larger(absolute(at[0].u.c[j]), absolute(at[1].u.c[j]));
+        vec vi = larger(absolute(at[0].v.c[i]), absolute(at[1].v.c[i]));
+        vec vj = larger(absolute(at[0].v.c[j]), absolute(at[1].v.c[j]));
         size += larger(absolute(w0), absolute(w1)) * (ui * vj + uj * vi);
     }
     /* at most three times size in a sum; 3 differences, 2 products, 2 sums in n, 1 + 3 sums: 11 roundings */
-    vec bound = size * (64 * 0x1p-52) + RDLI_UNDERFLOW;
+    *bound = size * (64 * UNIT) + RDLI_UNDERFLOW;
+}
+
+/* All ones where the four coefficients have one certified sign. */
+LANE_INLINE bits one_sign(const vec f[4], vec bound)
+{
     bits plus = (f[0] > bound) & (f[1] > bound) & (f[2] > bound) & (f[3] > bound);
     bits minus = (-f[0] > bound) & (-f[1] > bound) & (-f[2] > bound) & (-f[3] > bound);
     return plus | minus;
 }
 
-void SCREEN_NAME(int kind, const rdli_lanes *lanes, uint8_t verdict[RDLI_LANES])
+/* Largest coordinate outside the range of rdli_scale_points, and not 0. */
+LANE_INLINE bits is_odd_size(const points *p)
 {
-    for (int half = 0; half < RDLI_LANES; half += SCREEN_WIDTH) {
-        block b = load_block(kind, lanes, half);
-        bits apart = kind == RDL_POINT_TRIANGLE ? by_directions(RDL_POINT_TRIANGLE, &b) : by_directions(RDL_EDGE_EDGE, &b);
-        bits undecided = ~apart & (b.gap == 0);
-        bool ask = false;
-        for (int i = 0; i < SCREEN_WIDTH; i++)
-            ask = ask || undecided[i];
-        bits cubic = undecided;
-        if (ask)
-            cubic &= by_cubic(&b);
-        for (int i = 0; i < SCREEN_WIDTH; i++)
-            verdict[half + i] = apart[i] ? RDLI_SCREEN_DIRECTION : ask && cubic[i] ? RDLI_SCREEN_CUBIC : RDLI_SCREEN_OPEN;
+    vec four[4] = {all(0), all(0), all(0), all(0)};
+    for (int end = 0; end < 2; end++)
+        for (int i = 0; i < 4; i++)
+            four[i] = largest_of(four[i], &p->x[end][i]);
+    vec size = larger(larger(four[0], four[1]), larger(four[2], four[3]));
+    return (size != 0) & ~((size > 0x1p-20) & (size < 0x1p20));
+}
+
+LANE_INLINE void screen_half(int kind, const rdli_quad *quad, int half, uint8_t verdict[RDLI_LANES])
+{
+    points p;
+    load_points(quad, half, &p);
+    block b = block_of(kind, &p, load(quad->gap + half));
+    bits odd = is_odd_size(&p), apart = by_directions(kind, &b) & ~odd, cubic = apart & 0;
+    bits undecided = ~(apart | odd) & (b.gap == 0);
+    if (mask_of(undecided)) {
+        vec f[4], bound;
+        cubic_of(&b, f, &bound);
+        cubic = undecided & one_sign(f, bound);
+    }
+    unsigned a = mask_of(apart), c = mask_of(cubic), o = mask_of(odd);
+    for (int i = 0; i < LANE_WIDTH; i++)
+        verdict[half + i] = (uint8_t)((a >> i & 1) * RDLI_SCREEN_DIRECTION + (c >> i & 1) * RDLI_SCREEN_CUBIC +
+                                      (o >> i & 1) * RDLI_SCREEN_RESIZE);
+}
+
+static void screen(int kind, const rdli_quad *quad, uint8_t verdict[RDLI_LANES])
+{
+    for (int half = 0; half < RDLI_LANES; half += LANE_WIDTH) {
+        if (kind == RDL_POINT_TRIANGLE)
+            screen_half(RDL_POINT_TRIANGLE, quad, half, verdict);
+        else
+            screen_half(RDL_EDGE_EDGE, quad, half, verdict);
     }
 }

@@ -1,5 +1,6 @@
 /* bench/narrow/bench_narrow.c: the narrow phase against the textbook method, family by family, in one run on one core.
- * Writes Markdown tables. Argument: queries per family and kind (default 400). Truth is the exact oracle of tests/oracle.
+ * Writes Markdown tables. Arguments: queries per family and kind (default 400), and a part of
+ * a family's name, for some families only. Truth is the exact oracle of tests/oracle.
  * Figures: ns per query, ratio textbook / ours, wrong answers of both, share decided by each stage, 99.99th percentile. */
 #define _POSIX_C_SOURCE 200809L
 #include <math.h>
@@ -20,6 +21,7 @@ typedef struct batch {
     rdl_motion *motions;
     double *gaps;
     rdl_touch *touches;
+    rdli_examined *examined;
     double *singles; /* ns of each query by itself, the least of three */
 } batch;
 
@@ -79,19 +81,12 @@ static double time_textbook(const batch *b)
 static double time_engine(const batch *b)
 {
     double best = INFINITY;
-    uint8_t *quiet = calloc((size_t)b->count, 1);
     for (int i = 0; i < REPEATS; i++) {
         double from = now();
-        rdli_screen_list(b->kind, (size_t)b->count, b->motions, b->gaps, quiet);
-        for (int j = 0; j < b->count; j++) {
-            rdli_examined examined;
-            if (!quiet[j])
-                rdli_examine_open(b->kind, &b->motions[j], b->gaps[j], 0.5, NULL, &examined);
-        }
+        rdli_examine_list(b->kind, (size_t)b->count, b->motions, b->gaps, 0.5, NULL, b->examined);
         double took = now() - from;
         best = took < best ? took : best;
     }
-    free(quiet);
     return best / b->count;
 }
 
@@ -212,21 +207,24 @@ static void sliding(batch *b, double relative, const char *title, int count, fau
 int main(int argc, char **argv)
 {
     int usual = argc > 1 ? atoi(argv[1]) : 400;
+    const char *only = argc > 2 ? argv[2] : "";
     if (usual < 1) {
-        fprintf(stderr, "usage: bench_narrow [queries per family]\n");
+        fprintf(stderr, "usage: bench_narrow [queries per family [part of a family's name]]\n");
         return EXIT_FAILURE;
     }
     size_t room = (size_t)usual * 2 + 1;
     batch b = {0, 0, calloc(room, sizeof(rdl_motion)), calloc(room, sizeof(double)), calloc(room, sizeof(rdl_touch)),
-        calloc(room, sizeof(double))};
+        calloc(room, sizeof(rdli_examined)), calloc(room, sizeof(double))};
     faults sum = {0, 0, 0};
-    if (!b.motions || !b.gaps || !b.touches || !b.singles)
+    if (!b.motions || !b.gaps || !b.touches || !b.examined || !b.singles)
         return EXIT_FAILURE;
     for (int gapped = 0; gapped < 2; gapped++) {
         heading(gapped ? "Gap > 0 (textbook: cubic, and distance at both ends and at the roots)" : "Gap 0");
         for (int f = 0; f < motion_family_count; f++) {
             const motion_family *family = &motion_families[f];
             int count = usual * (family->percent < 100 ? family->percent : 100) / 100;
+            if (!strstr(family->name, only))
+                continue;
             for (b.kind = 0; b.kind < 2; b.kind++) {
                 fill(&b, family, count > 0 ? count : 1);
                 for (int i = 0; i < b.count && gapped; i++)
@@ -244,6 +242,7 @@ int main(int argc, char **argv)
     free(b.motions);
     free(b.gaps);
     free(b.touches);
+    free(b.examined);
     free(b.singles);
     return sum.missed || sum.invented || sum.late ? EXIT_FAILURE : EXIT_SUCCESS;
 }

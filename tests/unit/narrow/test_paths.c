@@ -8,7 +8,6 @@
 #include "cases.h"
 #include "families.h"
 #include "narrow/exact_pair.h"
-#include "narrow/screen.h"
 #include "narrow/stages.h"
 
 enum { COUNT = 60 };
@@ -22,26 +21,123 @@ static void make(int family, int kind, rdl_motion motions[COUNT], double gaps[CO
     }
 }
 
+static bool same_double(double a, double b)
+{
+    return memcmp(&a, &b, sizeof a) == 0;
+}
+
+static void same_progress(const rdli_progress *one, const rdli_progress *other, int i)
+{
+    ck_assert(one->start[i] == other->start[i] && one->done[i] == other->done[i]);
+    for (int k = 0; k < RDLI_STATE; k++)
+        ck_assert(same_double(one->state[k][i], other->state[k][i]));
+}
+
+static void same_outlook(const rdli_outlook *one, const rdli_outlook *other, int i)
+{
+    ck_assert(one->quiet[i] == other->quiet[i]);
+    if (one->quiet[i])
+        return;
+    for (int end = 0; end < 2; end++) {
+        ck_assert(one->tight[end][i] == other->tight[end][i]);
+        ck_assert(same_double(one->lo[end][i], other->lo[end][i]) && same_double(one->hi[end][i], other->hi[end][i]));
+    }
+    ck_assert(one->known[i] == other->known[i]);
+    ck_assert(same_double(one->path[i], other->path[i]));
+    if (one->known[i])
+        same_progress(&one->progress, &other->progress, i);
+}
+
+static void same_at_a_gap(int kind, const rdli_quad *quad, const rdli_path *one, const rdli_path *other)
+{
+    static rdli_progress progress[2];
+    static rdli_outlook outlooks[2];
+    alignas(32) static const double from[RDLI_LANES] = {-1, -1, 0.01, -1};
+    one->approach(kind, quad, &progress[0]);
+    other->approach(kind, quad, &progress[1]);
+    for (int look = 0; look < 5; look++) {
+        for (int i = 0; i < RDLI_LANES; i++)
+            same_progress(&progress[0], &progress[1], i);
+        one->look_again(kind, quad, &progress[0]);
+        other->look_again(kind, quad, &progress[1]);
+    }
+    one->outlook(kind, quad, 0.5, from, &outlooks[0]);
+    other->outlook(kind, quad, 0.5, from, &outlooks[1]);
+    for (int i = 0; i < RDLI_LANES; i++)
+        same_outlook(&outlooks[0], &outlooks[1], i);
+}
+
+static void compare_paths(int kind, const rdli_quad *quad, const rdli_path *other)
+{
+    const rdli_path *one = &rdli_path_portable;
+    uint8_t verdict[2][RDLI_LANES] = {{9, 9, 9, 9}, {8, 8, 8, 8}};
+    static rdli_answers answers[2];
+    one->screen(kind, quad, verdict[0]);
+    other->screen(kind, quad, verdict[1]);
+    ck_assert(memcmp(verdict[0], verdict[1], sizeof verdict[0]) == 0);
+    one->meet(kind, quad, &answers[0]);
+    other->meet(kind, quad, &answers[1]);
+    for (int i = 0; i < RDLI_LANES; i++) {
+        ck_assert(answers[0].answer[i] == answers[1].answer[i]);
+        ck_assert(same_double(answers[0].lo[i], answers[1].lo[i]) && same_double(answers[0].hi[i], answers[1].hi[i]));
+    }
+    same_at_a_gap(kind, quad, one, other);
+}
+
 START_TEST(lanes_give_the_same_bits)
 {
     rdl_motion motions[COUNT];
     double gaps[COUNT];
+    const rdli_path *wide = rdli_path_avx2();
     for (int kind = 0; kind < 2; kind++) {
         make(_i, kind, motions, gaps);
         for (int first = 0; first + RDLI_LANES <= COUNT; first += RDLI_LANES) {
-            rdli_lanes lanes;
-            uint8_t one[RDLI_LANES] = {9, 9, 9, 9}, other[RDLI_LANES] = {8, 8, 8, 8};
+            rdli_quad quad;
+            rdli_sized sized[RDLI_LANES];
             for (int i = 0; i < RDLI_LANES; i++) {
-                rdli_sized sized;
-                rdli_sized_of(&motions[first + i], &sized);
-                rdli_lanes_load(&lanes, i, &sized.motion, ldexp(gaps[first + i], sized.shift));
+                rdli_sized_of(&motions[first + i], &sized[i]);
+                quad.motion[i] = &sized[i].motion;
+                quad.gap[i] = ldexp(gaps[first + i], sized[i].shift);
             }
-            rdli_screen_portable(kind, &lanes, one);
-            if (rdli_screen_has_avx2())
-                rdli_screen_avx2(kind, &lanes, other);
-            else
-                rdli_screen_choose()(kind, &lanes, other);
-            ck_assert(memcmp(one, other, sizeof one) == 0);
+            compare_paths(kind, &quad, wide ? wide : rdli_path_choose());
+        }
+    }
+}
+END_TEST
+
+static void same_examined(const rdli_examined *one, const rdli_examined *other)
+{
+    ck_assert_int_eq(one->quiet, other->quiet);
+    if (one->quiet)
+        return;
+    ck_assert(one->reaches_path == other->reaches_path && one->below_end == other->below_end);
+    ck_assert(one->contact_at_start == other->contact_at_start);
+    ck_assert(memcmp(&one->start_lo, &other->start_lo, 5 * sizeof(double)) == 0);
+    ck_assert(memcmp(&one->touch, &other->touch, sizeof one->touch) == 0);
+}
+
+START_TEST(examined_lists_and_singles)
+{
+    rdl_motion motions[COUNT];
+    double gaps[COUNT], floors[COUNT][2];
+    static rdli_examined listed[COUNT], floored[COUNT];
+    for (int kind = 0; kind < 2; kind++) {
+        size_t count = motion_families[_i].percent < 10 ? 4 : COUNT - 3;
+        make(_i, kind, motions, gaps);
+        for (size_t i = 0; i < count; i++)
+            floors[i][0] = floors[i][1] = 0.5 * gaps[i];
+        rdli_examine_list(kind, count, motions, gaps, 0.5, NULL, listed);
+        rdli_examine_list(kind, count, motions, gaps, 0.5, (const double (*)[2])floors, floored);
+        for (size_t i = 0; i < count; i++) {
+            rdli_examined single;
+            rdli_examine(kind, &motions[i], gaps[i], 0.5, NULL, &single);
+            same_examined(&listed[i], &single);
+            rdli_examine(kind, &motions[i], gaps[i], 0.5, floors[i], &single);
+            same_examined(&floored[i], &single);
+            rdli_closest closest;
+            rdli_closest_points(kind, (const double (*)[3])motions[i].start, &closest);
+            if (!listed[i].quiet && motion_families[_i].percent >= 50)
+                ck_assert(closest.distance_lo == listed[i].start_lo && closest.distance_hi == listed[i].start_hi);
         }
     }
 }
@@ -142,6 +238,7 @@ int main(void)
     TCase *all = tcase_create("all");
     tcase_set_timeout(all, 120);
     tcase_add_loop_test(all, lanes_give_the_same_bits, 0, motion_family_count);
+    tcase_add_loop_test(all, examined_lists_and_singles, 0, motion_family_count);
     tcase_add_loop_test(all, lists_and_singles, 0, motion_family_count);
     tcase_add_loop_test(all, exact_alone, 0, motion_family_count);
     tcase_add_loop_test(all, symmetries, 0, motion_family_count);
