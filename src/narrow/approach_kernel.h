@@ -1,5 +1,5 @@
 /* narrow/approach_kernel.h: gap > 0 in lanes: closest points, and directions that certify a part of the step. Included
- * after screen_kernel.h and lane_nearest.h.
+ * after screen_kernel.h and nearest_kernel.h.
  *
  * Along a fixed direction every control point of the difference moves linearly, so the times at which the direction
  * separates by more than the gap are an interval, known from three or four linear crossings. The directions of the closest

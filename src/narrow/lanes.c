@@ -1,7 +1,7 @@
 /* narrow/lanes.c: the portable lanes, and the choice of the path. */
 #define LANE_WIDTH 2
-#include "narrow/lane.h"
-#include "narrow/lane_nearest.h"
+#include "narrow/lane_kernel.h"
+#include "narrow/nearest_kernel.h"
 #include "narrow/screen_kernel.h"
 #include "narrow/meet_kernel.h"
 #include "narrow/approach_kernel.h"

@@ -4,8 +4,8 @@
 #if defined(__x86_64__)
 #pragma GCC target("avx2")
 #define LANE_WIDTH 4
-#include "narrow/lane.h"
-#include "narrow/lane_nearest.h"
+#include "narrow/lane_kernel.h"
+#include "narrow/nearest_kernel.h"
 #include "narrow/screen_kernel.h"
 #include "narrow/meet_kernel.h"
 #include "narrow/approach_kernel.h"

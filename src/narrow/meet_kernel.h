@@ -7,7 +7,7 @@
  * stages. */
 
 /* Half the width of a bracket. */
-#define BRACKET 0x1p-28
+#define BRACKET 0x1p-30
 
 /* Value of f at t, from the coefficients f[i] times 1, 3, 3, 1. */
 LANE_INLINE vec cubic_at(const vec f[4], vec t)

@@ -1,4 +1,4 @@
-/* narrow/screen_kernel.h: the first look in lanes: two directions, then the signs of the cubic. Included after lane.h. */
+/* narrow/screen_kernel.h: the first look in lanes: two directions, then the signs of the cubic. Included after lane_kernel.h. */
 
 typedef struct block {
     frames at[2];

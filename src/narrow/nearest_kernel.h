@@ -1,5 +1,5 @@
-/* narrow/lane_nearest.h: closest points in lanes: the arithmetic of nearest.c, so that both give the same bits. Included
- * after lane.h. */
+/* narrow/nearest_kernel.h: closest points in lanes: the arithmetic of nearest.c, so that both give the same bits. Included
+ * after lane_kernel.h. */
 
 /* Below this squared sine between u and v the free minimum is too uncertain to rule out sides (as in nearest.c). */
 #define LANE_WELL_CONDITIONED 0x1p-7

@@ -1,4 +1,4 @@
-/* narrow/lane.h: vectors of LANE_WIDTH doubles, one pair to a lane. Included once per instruction set, with LANE_WIDTH set;
+/* narrow/lane_kernel.h: vectors of LANE_WIDTH doubles, one pair to a lane. Included once per instruction set, with LANE_WIDTH set;
  * inside narrow only.
  *
  * Every lane does the same operations in the same order whatever the width, so all variants give the same bits. The only
