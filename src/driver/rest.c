@@ -1,4 +1,5 @@
-/* driver/rest.c: see rest.h. The broad phase finds the couples, an exact predicate decides each. */
+/* driver/rest.c: see rest.h. The broad phase finds the couples, a filter in doubles drops most of them, an exact predicate
+ * decides the others. */
 #include "driver/rest.h"
 
 #include "broad/broad.h"
@@ -55,6 +56,56 @@ static void box_chunk(void *data, size_t chunk, unsigned worker)
             box_of(s->positions, mesh->triangles[i], 3, &s->boxes.triangles[i]);
 }
 
+static void cross(const double a[3], const double b[3], double c[3])
+{
+    for (int k = 0; k < 3; k++)
+        c[k] = a[(k + 1) % 3] * b[(k + 2) % 3] - a[(k + 2) % 3] * b[(k + 1) % 3];
+}
+
+/* Whether the plane across d through space separates the two for sure. x: ends of the edge, then corners, from the first
+ * corner. d is what it is. A component of x has one rounding, a product one more, the sums two; 16 units of 2^-53 of the sum of
+ * absolute values cover that in any rounding mode, the constant covers underflow. Overflow gives infinity - infinity, which
+ * compares as "no". */
+static bool separates(const double d[3], const double x[5][3])
+{
+    double lo[2] = { INFINITY, INFINITY }, hi[2] = { -INFINITY, -INFINITY };
+    for (int i = 0; i < 5; i++) {
+        const double a = d[0] * x[i][0], b = d[1] * x[i][1], c = d[2] * x[i][2], sum = a + b + c;
+        const double slack = 0x1p-49 * (fabs(a) + fabs(b) + fabs(c)) + 0x1p-1060;
+        const int side = i >= 2;
+        lo[side] = sum - slack < lo[side] ? sum - slack : lo[side];
+        hi[side] = sum + slack > hi[side] ? sum + slack : hi[side];
+        if (!(sum - slack >= -DBL_MAX && sum + slack <= DBL_MAX))
+            return false;
+    }
+    return lo[0] > hi[1] || lo[1] > hi[0];
+}
+
+/* Neighbours in a sheet lie in nearly one plane, so besides the normal the directions within the plane are tried: across the
+ * triangle's sides and across the edge. */
+static bool surely_apart(const double edge[2][3], const double corner[3][3])
+{
+    double x[5][3], normal[3], along[4][3], across[3];
+    for (int i = 0; i < 5; i++)
+        for (int k = 0; k < 3; k++)
+            x[i][k] = (i < 2 ? edge[i][k] : corner[i - 2][k]) - corner[0][k];
+    for (int k = 0; k < 3; k++) {
+        along[0][k] = x[3][k];
+        along[1][k] = x[4][k];
+        along[2][k] = x[4][k] - x[3][k];
+        along[3][k] = x[1][k] - x[0][k];
+    }
+    cross(x[3], x[4], normal);
+    if (separates(normal, (const double (*)[3])x))
+        return true;
+    for (int i = 0; i < 4; i++) {
+        cross(normal, along[i], across);
+        if (separates(across, (const double (*)[3])x))
+            return true;
+    }
+    return false;
+}
+
 static void relate_chunk(void *data, size_t chunk, unsigned worker)
 {
     (void)worker;
@@ -67,7 +118,9 @@ static void relate_chunk(void *data, size_t chunk, unsigned worker)
             memcpy(edge[k], s->positions[e[k]], sizeof edge[k]);
         for (int k = 0; k < 3; k++)
             memcpy(corner[k], s->positions[t[k]], sizeof corner[k]);
-        s->relation[i] = (uint8_t)rdli_edge_against_triangle((const double (*)[3])edge, (const double (*)[3])corner);
+        s->relation[i] = RDL_REST_APART;
+        if (!surely_apart((const double (*)[3])edge, (const double (*)[3])corner))
+            s->relation[i] = (uint8_t)rdli_edge_against_triangle((const double (*)[3])edge, (const double (*)[3])corner);
     }
 }
 
