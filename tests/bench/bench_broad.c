@@ -1,5 +1,5 @@
 /* tests/bench/bench_broad.c: rdl_tree against general-purpose libraries, and the engine's pair lists. Prints Markdown
- * tables. Arguments: numbers of elements (default 10000 and 100000). Fails when two engines disagree on the number of pairs, or
+ * tables. Arguments: "tree" or "lists" for one of the two alone, then numbers of elements (default 10000 and 100000). Fails when two engines disagree on the number of pairs, or
  * brute force (up to 20 thousand elements) on the pairs themselves.
  *
  * Times are the least of several steps. What is compared with one thread is processor time, so that other processes disturb it
@@ -9,6 +9,7 @@
 #include <stdbool.h>
 #include <stdio.h>
 #include <stdlib.h>
+#include <string.h>
 #include <time.h>
 
 #include "bench_broad_anchors.h"
@@ -294,9 +295,9 @@ static bool bench_lists_row(const bench_scene *scene, double push, const char *n
     bench_lists l;
     if (!bench_lists_measure(scene, push, &l) || l.assigned_pairs != l.box_pairs)
         return false;
-    printf("| %s%s | %zu / %zu / %zu | %.1f | %zu | %.1f | %.1f | %zu | %.1f | ", bench_scene_name(scene->kind), note,
+    printf("| %s%s | %zu / %zu / %zu | %.1f | %zu | %.1f | %.1f | %zu | %.1f | %.2f | ", bench_scene_name(scene->kind), note,
            l.vertex_count, l.edge_count, l.triangle_count, 1e3 * l.boxes, l.box_pairs, 1e3 * l.box_seconds,
-           1e3 * l.assigned_seconds, l.near_pairs, 1e3 * l.near_seconds);
+           1e3 * l.assigned_seconds, l.near_pairs, 1e3 * l.near_seconds, l.near_wall[0] / l.near_wall[1]);
     if (l.touches > 0)
         printf("%.1f to %.2f", (double)l.box_pairs / l.touches, (double)l.near_pairs / l.touches);
     else
@@ -336,22 +337,42 @@ static bool bench_scene_lists(bench_scene *scene, int size)
     return fine;
 }
 
-int main(int argc, char **argv)
+static bool bench_trees(int count, const size_t *sizes)
 {
-    const char *const standard[] = {"", "10000", "100000"};
-    const char *const *sizes = argc > 1 ? (const char *const *)argv : standard;
-    const int count = argc > SIZES ? SIZES : argc > 1 ? argc : 3;
     bool fine = true;
     printf("| scene | engine | build, ms | update, ms | pairs, ms | update + pairs, ms | ns per pair | ratio |\n"
            "|---|---|---|---|---|---|---|---|\n");
-    for (int i = 1; i < count; i++)
-        fine = run(strtoul(sizes[i], NULL, 10), i - 1, bench_tree) && fine;
-    print_growth(count - 1);
+    for (int i = 0; i < count; i++)
+        fine = run(sizes[i], i, bench_tree) && fine;
+    if (count > 1)
+        print_growth(count);
+    return fine;
+}
+
+static bool bench_all_lists(int count, const size_t *sizes)
+{
+    bool fine = true;
     printf("\n| scene | vertices / edges / triangles | boxes, ms | pairs by boxes | separate trees, ms | one tree, "
-           "representatives, ms | near pairs | with certificate, ms | pairs per touch | MiB | sheets ignore themselves: "
-           "pairs by boxes, ms, ms with certificate |\n"
-           "|---|---|---|---|---|---|---|---|---|---|---|\n");
-    for (int i = 1; i < count; i++)
-        fine = run(strtoul(sizes[i], NULL, 10), i - 1, bench_scene_lists) && fine;
+           "representatives, ms | near pairs | with certificate, ms | 2 threads: times 1 | pairs per touch | MiB "
+           "| sheets ignore themselves: pairs by boxes, ms, ms with certificate |\n"
+           "|---|---|---|---|---|---|---|---|---|---|---|---|\n");
+    for (int i = 0; i < count; i++)
+        fine = run(sizes[i], i, bench_scene_lists) && fine;
+    return fine;
+}
+
+int main(int argc, char **argv)
+{
+    const bool trees_only = argc > 1 && strcmp(argv[1], "tree") == 0, lists_only = argc > 1 && strcmp(argv[1], "lists") == 0;
+    size_t sizes[SIZES] = {10000, 100000};
+    int count = 0;
+    for (int i = trees_only || lists_only ? 2 : 1; i < argc && count < SIZES; i++)
+        sizes[count++] = strtoul(argv[i], NULL, 10);
+    count = count == 0 ? 2 : count;
+    bool fine = true;
+    if (!lists_only)
+        fine = bench_trees(count, sizes);
+    if (!trees_only)
+        fine = bench_all_lists(count, sizes) && fine;
     return fine ? 0 : 1;
 }

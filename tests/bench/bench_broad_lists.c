@@ -267,12 +267,12 @@ typedef struct bench_stage {
     rdli_broad *broad;
 } bench_stage;
 
-static bool open_stage(bench_stage *stage)
+static bool open_stage(bench_stage *stage, unsigned threads)
 {
-    static const rdl_host host = {.size = sizeof host, .threads = 1};
+    static const rdl_host hosts[2] = {{.size = sizeof(rdl_host), .threads = 1}, {.size = sizeof(rdl_host), .threads = 2}};
     memset(stage, 0, sizeof *stage);
     bool fine = rdli_memory_init(&stage->memory, NULL) == RDL_OK &&
-                rdli_workers_create(&stage->memory, &host, &stage->workers) == RDL_OK &&
+                rdli_workers_create(&stage->memory, &hosts[threads - 1], &stage->workers) == RDL_OK &&
                 rdli_broad_create(&stage->memory, stage->workers, &stage->broad) == RDL_OK;
     if (fine)
         rdli_broad_limit(stage->broad, SIZE_MAX); /* all pairs at once, to count them */
@@ -286,11 +286,42 @@ static void close_stage(bench_stage *stage)
         rdli_workers_destroy(&stage->memory, stage->workers);
 }
 
+static bool same_list(const rdli_pair *a, size_t count_a, const rdli_pair *b, size_t count_b)
+{
+    return count_a == count_b && (count_a == 0 || memcmp(a, b, count_a * sizeof *a) == 0);
+}
+
+/* Wall time of near lists, trees with one thread and with two in turn. */
+static bool measure_threads(const mesh_copy *m, bench_lists *lists)
+{
+    enum { TURNS = 8 };
+    bench_stage stages[2];
+    rdli_pairs pairs[2];
+    bool fine = open_stage(&stages[0], 1);
+    fine = open_stage(&stages[1], 2) && fine;
+    for (int turn = 0; fine && turn <= TURNS; turn++)
+        for (int i = 0; i < 2; i++) {
+            struct timespec before, after;
+            clock_gettime(CLOCK_MONOTONIC, &before);
+            fine = fine && rdli_broad_near_pairs(stages[i].broad, &m->mesh, &m->motion, &m->boxes, &pairs[i]) == RDL_OK;
+            clock_gettime(CLOCK_MONOTONIC, &after);
+            if (turn > 0)
+                keep_least(&lists->near_wall[i], (double)(after.tv_sec - before.tv_sec) +
+                                                     1e-9 * (double)(after.tv_nsec - before.tv_nsec));
+        }
+    fine = fine && same_list(pairs[0].point_triangle, pairs[0].point_triangle_count, pairs[1].point_triangle,
+                             pairs[1].point_triangle_count) &&
+           same_list(pairs[0].edge_edge, pairs[0].edge_edge_count, pairs[1].edge_edge, pairs[1].edge_edge_count);
+    close_stage(&stages[0]);
+    close_stage(&stages[1]);
+    return fine;
+}
+
 static bool measure_broad(const bench_scene *scene, mesh_copy *m, bench_lists *lists)
 {
     bench_stage stage;
     rdli_pairs pairs = {0};
-    bool fine = open_stage(&stage);
+    bool fine = open_stage(&stage, 1);
     for (int run = 0; fine && run < RUNS; run++) {
         double before = seconds();
         rdli_bounds_fill(&m->mesh, &m->motion, stage.workers, &m->boxes);
@@ -304,7 +335,7 @@ static bool measure_broad(const bench_scene *scene, mesh_copy *m, bench_lists *l
     fine = fine && time_broad(stage.broad, m, false, &lists->box_seconds, &pairs);
     lists->box_pairs = count_pairs(&pairs);
     close_stage(&stage);
-    return fine;
+    return fine && measure_threads(m, lists);
 }
 
 /* What culling within sheets could save at most: every sheet a part that ignores itself. */
@@ -323,7 +354,7 @@ static bool measure_culled(const bench_scene *scene, mesh_copy *m, bench_lists *
         muted[p * PARTS / 64 + p / 64] |= 1ull << (p * PARTS + p) % 64;
     m->mesh.part_count = PARTS;
     m->mesh.muted = muted;
-    bool fine = open_stage(&stage);
+    bool fine = open_stage(&stage, 1);
     fine = fine && time_broad(stage.broad, m, true, &lists->culled_near_seconds, &pairs);
     fine = fine && time_broad(stage.broad, m, false, &lists->culled_seconds, &pairs);
     lists->culled_pairs = count_pairs(&pairs);
@@ -336,7 +367,7 @@ bool bench_lists_measure(const bench_scene *scene, double push, bench_lists *lis
     mesh_copy m;
     memset(lists, 0, sizeof *lists);
     lists->boxes = lists->box_seconds = lists->near_seconds = lists->assigned_seconds = 1e9;
-    lists->culled_seconds = lists->culled_near_seconds = 1e9;
+    lists->culled_seconds = lists->culled_near_seconds = lists->near_wall[0] = lists->near_wall[1] = 1e9;
     bool fine = copy_mesh(scene, push, &m);
     fine = fine && measure_broad(scene, &m, lists) && measure_assignment(scene, &m, lists) && measure_culled(scene, &m, lists);
     lists->vertex_count = m.mesh.vertex_count;

@@ -11,6 +11,7 @@ typedef struct bench_lists {
     double boxes;                     /* s: making all boxes */
     size_t box_pairs, near_pairs;     /* point-triangle and edge-edge: boxes overlap; and not certainly apart */
     double box_seconds, near_seconds; /* s: update of the trees, search, lists */
+    double near_wall[2];              /* s, wall time: with one thread and with two; the same lists */
     double touches;                   /* near pairs that touch; estimated from a sample */
     size_t assigned_pairs;            /* representative assignment: must equal box_pairs */
     double assigned_seconds;          /* s: update, search, elementary box tests; lists neither written nor sorted */
