@@ -30,6 +30,7 @@ static const verb verbs[] = {
     {"resolve", "turn start and proposed positions into collision-free delivered ones", verb_resolve, true},
     {"check", "look for tangles and crossings, independently of the resolver", verb_check, true},
     {"replay", "step recorded frames again and compare the bits", verb_replay, true},
+    {"reduce", "find the smallest scene that still shows a failure", verb_reduce, true},
     {"export", "write frames of a shot as OBJ or PLY files", verb_export, true},
 };
 

@@ -80,7 +80,7 @@ make() {
     "$make_shot" "$1" "$2" || fail "make_shot $1" "no shot"
 }
 
-for group in usage info check resolve replay import export interrupt; do
+for group in usage info check resolve replay reduce import export interrupt; do
     rm -rf "${work:?}"/*
     # shellcheck source=/dev/null
     . "$here/$group.sh"

@@ -3,7 +3,7 @@ try usage-nothing 2
 try usage-help 0 --help
 try usage-version 0 --version
 try usage-unknown 2 bogus
-for verb in info check resolve replay import export; do
+for verb in info check resolve replay reduce import export; do
     try "usage-help-$verb" 0 "$verb" --help
     try "usage-none-$verb" 2 "$verb"
     try "usage-option-$verb" 2 "$verb" --no-such-option
