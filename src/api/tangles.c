@@ -25,8 +25,8 @@ static rdl_status search(session *s, const rdl_scene *scene, const rdl_view *pos
     if (x == NULL)
         return RDL_NO_MEMORY;
     rdli_view_read(positions, scene->vertex_count, x);
-    status = rdli_rest_find(&s->memory, s->workers, &s->scene.mesh, (const double (*)[3])x, include_driven != 0, &s->rows,
-                            count);
+    status = rdli_rest_find(&s->memory, s->workers, &s->scene.mesh, (const double (*)[3])x, include_driven != 0, NULL,
+                            &s->rows, count);
     rdli_give(&s->memory, x, scene->vertex_count, sizeof *x);
     return status;
 }

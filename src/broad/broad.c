@@ -248,3 +248,10 @@ rdl_status rdli_broad_couples(rdli_broad *broad, const rdli_mesh *mesh, const rd
     *more = s->next < s->end;
     return status;
 }
+
+void rdli_broad_couples_end(rdli_broad *broad)
+{
+    rdli_query *query = &broad->queries[EDGE_TRIANGLE];
+    rdli_query_release(broad->memory, query);
+    memset(query, 0, sizeof *query);
+}

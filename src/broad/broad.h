@@ -48,5 +48,7 @@ void rdli_broad_limit(rdli_broad *broad, size_t pairs_max);
 rdl_status rdli_broad_couples_begin(rdli_broad *broad, const rdli_mesh *mesh, const rdli_boxes *boxes);
 /* The first part of their list, then the next, while *more; sorted by (edge, triangle). Errors as above. */
 rdl_status rdli_broad_couples(rdli_broad *broad, const rdli_mesh *mesh, const rdli_pair **couples, size_t *count, bool *more);
+/* Gives back the room of the couples, which are seldom wanted. */
+void rdli_broad_couples_end(rdli_broad *broad);
 
 #endif

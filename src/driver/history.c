@@ -66,8 +66,8 @@ static rdl_status name_intersections(rdl_engine *engine)
 {
     rdli_room rows = { NULL, 0 };
     size_t count;
-    rdl_status status = rdli_rest_find(&engine->memory, engine->workers, &engine->mesh, engine->start.data, false, &rows,
-                                       &count);
+    rdl_status status = rdli_rest_find(&engine->memory, engine->workers, &engine->mesh, engine->start.data, false,
+                                       engine->broad, &rows, &count);
     const rdl_tangle *tangles = rows.data;
     const uint32_t (*edges)[2] = engine->mesh.edges;
     for (size_t i = 0; status == RDL_OK && i < count; i++) {

@@ -2,7 +2,6 @@
  * decides the others. */
 #include "driver/rest.h"
 
-#include "broad/broad.h"
 #include "narrow/narrow.h"
 
 typedef struct search {
@@ -159,12 +158,13 @@ static rdl_status search_all(rdli_memory *memory, rdli_workers *workers, rdli_br
         if (status == RDL_OK && s->couple_count > 0)
             status = relate(memory, workers, s, &relations, out, count);
     }
+    rdli_broad_couples_end(broad);
     rdli_room_release(memory, &relations);
     return status;
 }
 
 rdl_status rdli_rest_find(rdli_memory *memory, rdli_workers *workers, const rdli_mesh *mesh,
-                          const double (*positions)[3], bool include_driven, rdli_room *out, size_t *count)
+                          const double (*positions)[3], bool include_driven, rdli_broad *broad, rdli_room *out, size_t *count)
 {
     *count = 0;
     if (mesh->triangle_count == 0)
@@ -179,11 +179,11 @@ rdl_status rdli_rest_find(rdli_memory *memory, rdli_workers *workers, const rdli
         return RDL_NO_MEMORY;
     search s = { .mesh = &ruled, .positions = positions, .boxes = { NULL, boxes, boxes + mesh->edge_count } };
     rdli_parallel_for(workers, chunks, box_chunk, &s);
-    rdli_broad *broad = NULL;
-    rdl_status status = rdli_broad_create(memory, workers, &broad);
+    rdli_broad *own = NULL;
+    rdl_status status = broad == NULL ? rdli_broad_create(memory, workers, &own) : RDL_OK;
     if (status == RDL_OK)
-        status = search_all(memory, workers, broad, &s, out, count);
-    rdli_broad_destroy(broad);
+        status = search_all(memory, workers, broad == NULL ? own : broad, &s, out, count);
+    rdli_broad_destroy(own);
     rdli_give(memory, boxes, total, sizeof *boxes);
     return status;
 }
