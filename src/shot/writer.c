@@ -37,6 +37,8 @@ static void release(rdl_shot_writer *writer)
     rdli_memory memory = writer->memory;
     rdli_give(&memory, writer->path, writer->path_bytes, 1);
     rdli_give(&memory, writer->part, writer->part_bytes, 1);
+    rdli_room_release(&memory, &writer->last);
+    rdli_room_release(&memory, &writer->chunk);
     rdli_give(&memory, writer, 1, sizeof *writer);
 }
 
@@ -295,6 +297,35 @@ static bool write_rules(rdl_shot_writer *writer, const rdl_shot_frame *frame)
            add_rows(writer, RDLI_SET_MUTED_FIRST, 1, 1, &muted_fence);
 }
 
+/* Small states are not worth a second look at the file. */
+static bool is_repeat(const rdl_shot_writer *writer, const double *a, const double *b)
+{
+    enum { WORTH_IT = 512 };
+    return writer->deflate > 0 && writer->vertex_count >= WORTH_IT &&
+           memcmp(a, b, 3 * writer->vertex_count * sizeof *a) == 0;
+}
+
+static bool write_states(rdl_shot_writer *writer, const rdl_shot_frame *frame)
+{
+    bool has_start = (writer->contents & RDL_SHOT_START) != 0, has_proposed = (writer->contents & RDL_SHOT_PROPOSED) != 0;
+    bool has_delivered = (writer->contents & RDL_SHOT_DELIVERED) != 0;
+    bool goes_on = has_start && writer->has_last && is_repeat(writer, frame->start, writer->last.data);
+    bool as_proposed = has_proposed && has_delivered && is_repeat(writer, frame->proposed, frame->delivered);
+    uint64_t row = writer->rows[RDLI_SET_TIME];
+    bool done = goes_on ? rdli_repeat_row(writer, RDLI_SET_DELIVERED, row - 1, RDLI_SET_START)
+                        : add_rows(writer, RDLI_SET_START, 1, 1, frame->start);
+    done = done && add_rows(writer, RDLI_SET_PROPOSED, 1, 1, frame->proposed);
+    if (done)
+        done = as_proposed ? rdli_repeat_row(writer, RDLI_SET_PROPOSED, row, RDLI_SET_DELIVERED)
+                           : add_rows(writer, RDLI_SET_DELIVERED, 1, 1, frame->delivered);
+    if (done && has_start && has_delivered && !goes_on && writer->last.data == NULL)
+        done = rdli_room_reserve(&writer->memory, &writer->last, writer->vertex_count, 3 * sizeof(double), false);
+    writer->has_last = done && has_start && has_delivered;
+    if (writer->has_last)
+        memcpy(writer->last.data, frame->delivered, 3 * writer->vertex_count * sizeof(double));
+    return done;
+}
+
 static bool write_frame(rdl_shot_writer *writer, const rdl_shot_frame *frame)
 {
     uint8_t digest[32];
@@ -312,9 +343,7 @@ static bool write_frame(rdl_shot_writer *writer, const rdl_shot_frame *frame)
                     frame->waypoint_positions) &&
            add_rows(writer, RDLI_SET_WAYPOINT_FIRST, 1, 1, &fence) &&
            add_rows(writer, RDLI_SET_PICTURE, 1, 1, &frame->picture) &&
-           add_rows(writer, RDLI_SET_START, 1, 1, frame->start) &&
-           add_rows(writer, RDLI_SET_PROPOSED, 1, 1, frame->proposed) &&
-           add_rows(writer, RDLI_SET_DELIVERED, 1, 1, frame->delivered) &&
+           write_states(writer, frame) &&
            add_rows(writer, RDLI_SET_DIGEST, 1, 1, digest) &&
            add_rows(writer, RDLI_SET_VERDICT, 1, 1, &frame->verdict) &&
            write_rules(writer, frame) && add_rows(writer, RDLI_SET_TIME, 1, 1, &frame->time) &&
