@@ -101,6 +101,11 @@ bool rdli_carries_load(const rdli_contact *contact)
     return load > 0.0;
 }
 
+static bool moves(const rdli_piece *piece, uint32_t v)
+{
+    return memcmp(piece->start[v], piece->trial[v], sizeof piece->start[v]) != 0;
+}
+
 /* Joins the vertices of loaded contacts; marks groups that touch fixed vertices. */
 static void join_loaded(rdli_response *response, const rdli_piece *piece, const rdli_contact *contacts,
                         const rdli_zone *zone, rdli_group_sums *sums)
@@ -115,16 +120,20 @@ static void join_loaded(rdli_response *response, const rdli_piece *piece, const 
         for (uint32_t i = 0; i < zone->contact_count; i++) {
             const rdli_contact *contact = &contacts[order[i]];
             uint32_t seen = UINT32_MAX;
-            bool fed = false;
+            bool fed = false, leaning = false;
             for (int k = 0; rdli_carries_load(contact) && k < 4; k++) {
                 uint32_t v = contact->vertex[k];
-                fed = fed || piece->fixed[v];
+                fed = fed || (piece->fixed[v] && moves(piece, v));
+                leaning = leaning || piece->fixed[v];
                 if (!piece->fixed[v] && round == 0 && seen != UINT32_MAX)
                     join(parent, seen, v);
                 seen = piece->fixed[v] ? seen : v;
             }
-            if (round == 1 && fed)
-                sums[local[find_root(parent, seen)]].fed = true;
+            if (round == 1 && leaning) {
+                rdli_group_sums *sum = &sums[local[find_root(parent, seen)]];
+                sum->fed = sum->fed || fed;
+                sum->leaning = true;
+            }
         }
 }
 
@@ -148,14 +157,25 @@ static rdli_group_sums *sum_groups(rdli_response *response, const rdli_piece *pi
             sum->meant[k] += mass * meant;
             sum->after += mass * (moved * moved);
             sum->before += mass * (meant * meant);
+            sum->against += mass * (moved * (moved - 2.0 * meant));
         }
     }
     return sums;
 }
 
+/* The start x0 is a possible answer: one that is further from the target x1 than the start is, sum m |x* - x1|^2 - |x0 - x1|^2 =
+ * sum m (x* - x0).(x* - x0 - 2 (x1 - x0)) > 0, went to the far side of other pairs. Margins above the floors put the start
+ * itself outside of the set by a little: this share of the wanted motion. */
+static const double far_share = 0x1p-6;
+
+static bool goes_far(const rdli_group_sums *sum)
+{
+    return sum->mass > 0.0 && !sum->fed && sum->against > far_share * sum->before;
+}
+
 static bool gains_energy(const rdli_group_sums *sum)
 {
-    if (sum->mass == 0.0 || sum->fed)
+    if (sum->mass == 0.0 || sum->leaning)
         return false;
     double after = sum->after, before = sum->before;
     for (int k = 0; k < 3; k++) {
@@ -164,6 +184,14 @@ static bool gains_energy(const rdli_group_sums *sum)
     }
     /* The subtraction of the common motion cancels: its rounding is a share of the whole. */
     return after - before > 1e-12 * before + 16.0 * 0x1p-53 * (sum->after + sum->before);
+}
+
+/* A fence mends both; only what still gains energy behind one, of which rounding may be the cause, becomes rigid. */
+static bool may_raise(const rdli_zone *zone, const rdli_contact *contact, const rdli_group_sums *sum)
+{
+    if (!contact->fenced)
+        return sum->gains || sum->far;
+    return sum->gains && !zone->driven && !contact->rigid;
 }
 
 bool rdli_zone_raise_gaining(rdli_response *response, const rdli_piece *piece, rdli_contact *contacts,
@@ -176,7 +204,8 @@ bool rdli_zone_raise_gaining(rdli_response *response, const rdli_piece *piece, r
     bool any = false;
     for (uint32_t i = 0; i < zone->vertex_count; i++) {
         sums[i].gains = gains_energy(&sums[i]);
-        any = any || sums[i].gains;
+        sums[i].far = goes_far(&sums[i]);
+        any = any || sums[i].gains || sums[i].far;
     }
     if (!any)
         return false;
@@ -186,11 +215,14 @@ bool rdli_zone_raise_gaining(rdli_response *response, const rdli_piece *piece, r
         uint32_t root = UINT32_MAX;
         bool inside = true;
         for (int k = 0; k < 4; k++) {
-            uint32_t v = contact->vertex[k], mine = piece->fixed[v] ? UINT32_MAX : find_root(parent, v);
-            inside = inside && mine != UINT32_MAX && (root == UINT32_MAX || root == mine);
+            uint32_t v = contact->vertex[k];
+            if (piece->fixed[v])
+                continue;
+            uint32_t mine = find_root(parent, v);
+            inside = inside && (root == UINT32_MAX || root == mine);
             root = mine;
         }
-        if (!inside || !sums[local[root]].gains || (contact->fenced && (zone->driven || contact->rigid)))
+        if (!inside || root == UINT32_MAX || !may_raise(zone, contact, &sums[local[root]]))
             continue;
         contact->rigid = contact->fenced;
         contact->fenced = 1;

@@ -7,8 +7,10 @@
 
 /* Sums over a group of vertices: see rdli_zone_raise_gaining. */
 typedef struct rdli_group_sums {
-    double mass, moved[3], meant[3], after, before;
-    bool fed, gains;
+    double mass, moved[3], meant[3], after, before, against;
+    bool fed;     /* loaded contacts with fixed vertices that move */
+    bool leaning; /* loaded contacts with fixed vertices, moving or not */
+    bool gains, far; /* energy; further from the target than the start is */
 } rdli_group_sums;
 
 typedef struct rdli_response {
@@ -57,9 +59,10 @@ bool rdli_carries_load(const rdli_contact *contact);
 void rdli_zone_energies(const rdli_response *response, const rdli_piece *piece, rdli_zone *zone);
 
 /* Looks for groups of the zone that no driven vertex feeds and that have more kinetic energy than was wanted, in the frame of
- * their own centre of mass and beyond rounding, and sends the contacts inside them to the next level; true when there
- * were any to send. A group is what contacts that carry load join: contacts that carry none pass no impulse on, so that
- * energy may not pass either. */
+ * their own centre of mass and beyond rounding, and for groups that lean on nothing but vertices at rest and are further from
+ * where they should be than their start is. Sends the contacts inside them to the next level, and is true when there were
+ * any to send. A group is what contacts that carry load join: contacts that carry none pass no impulse on, so that energy
+ * may not pass either. */
 bool rdli_zone_raise_gaining(rdli_response *response, const rdli_piece *piece, rdli_contact *contacts,
                              const rdli_zone *zone);
 

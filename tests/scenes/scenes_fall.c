@@ -124,7 +124,7 @@ void finish_dense(judge *j, unsigned steps, const uint64_t verdicts[4])
     if (length > 0.0848528 * 1.15)
         judge_fault(j, steps, "the strand grew to %g m", length);
     for (size_t i = 0; i < w->link_count; i++)
-        if (stretch_between(w, w->links[i].a, w->links[i].b) > 1.3 * w->links[i].rest / w->scale) {
+        if (stretch_between(w, w->links[i].a, w->links[i].b) > 1.5 * w->links[i].rest / w->scale) {
             judge_fault(j, steps, "link %zu is at %g of its length", i,
                         stretch_between(w, w->links[i].a, w->links[i].b) * w->scale / w->links[i].rest);
             return;
