@@ -5,7 +5,7 @@
 #include <sys/stat.h>
 #include <unistd.h>
 
-#include "cli.h"
+#include "export.h"
 #include "verbs.h"
 
 static const cli_option options[] = {
@@ -13,6 +13,9 @@ static const cli_option options[] = {
     {"format", "obj|ply", "format of the files (default obj)"},
     {"frames", "A:B", "frames A to B, both included (default all); A or B alone may be left out"},
     {"which", "NAME", "delivered, start or proposed (default: the first of these that the shot has)"},
+    {"vtkhdf", NULL, "one VTKHDF file named PREFIX (UnstructuredGrid; of several frames: with time steps)"},
+    {"scrambled", NULL, "one shot named PREFIX, moved by a random rigid motion, parts renamed: start and proposed only"},
+    {"seed", "N", "which rigid motion (default 1)"},
     {"force", NULL, "replace files that exist"},
 };
 
@@ -27,16 +30,6 @@ static const cli_spec spec = {
     .option_count = sizeof options / sizeof options[0],
     .operands_min = 1,
     .operands_max = 1};
-
-typedef struct exporter {
-    const char *path, *prefix, *extension;
-    rdl_shot *shot;
-    const rdl_scene *scene;
-    unsigned which;
-    size_t first, last, width, written;
-    bool ply, force, folder;
-    double *positions;
-} exporter;
 
 static void file_name(const exporter *e, size_t frame, char name[4096])
 {
@@ -208,9 +201,9 @@ static int run(exporter *e, const cli_line *line)
     e->positions = malloc(3 * e->scene->vertex_count * sizeof *e->positions);
     if (e->positions == NULL)
         return cli_fail("export", e->path, -1, RDL_NO_MEMORY, NULL);
-    code = export_all(e);
+    code = e->scrambled ? export_scrambled(e, (uint64_t)e->seed) : e->vtk ? export_vtk(e) : export_all(e);
     if (code == CLI_DONE)
-        printf("%zu files\n", e->last + 1 - e->first);
+        printf("%zu files\n", e->scrambled || e->vtk ? 1 : e->last + 1 - e->first);
     return code;
 }
 
@@ -233,6 +226,16 @@ int verb_export(int argc, char **argv)
     }
     if (format != NULL && strcmp(format, "obj") != 0 && !e.ply) {
         cli_error("export", "--format: %s is neither obj nor ply", cli_clean(format));
+        return CLI_BAD_INPUT;
+    }
+    const char *seed = cli_value(&spec, &line, "seed");
+    e.seed = 1;
+    e.scrambled = cli_value(&spec, &line, "scrambled") != NULL;
+    e.vtk = cli_value(&spec, &line, "vtkhdf") != NULL;
+    if (seed != NULL && !cli_number(&spec, "seed", seed, 0, 1e9, true, &e.seed))
+        return CLI_BAD_INPUT;
+    if (e.scrambled + e.vtk + (format != NULL) > 1) {
+        cli_error("export", "--format, --vtkhdf and --scrambled exclude each other");
         return CLI_BAD_INPUT;
     }
     if (strlen(e.prefix) > 4000) {

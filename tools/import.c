@@ -28,16 +28,17 @@ static const cli_option options[] = {
 
 static const cli_spec spec = {
     .verb = "import",
-    .operands = "MESH",
+    .operands = "MESH...",
     .summary =
         "Turns a mesh file (OBJ, PLY, OFF, STL, glTF) into a shot of one pose: polygons become triangles, points with\n"
-        "the same bits are joined, holes and flipped faces are named.",
+        "the same bits are joined, holes and flipped faces are named. Several files, in the order given, are the poses\n"
+        "of one mesh: the points that are joined are those of the first.",
     .notes =
         "Findings (exit code 1): holes in a body, edges of more than two faces, faces that run against a neighbour.",
     .options = options,
     .option_count = sizeof options / sizeof options[0],
     .operands_min = 1,
-    .operands_max = 1};
+    .operands_max = CLI_OPERANDS_MAX};
 
 enum { NODES_DEEP = 500, COMPLAINT_MAX = 256 };
 
@@ -49,6 +50,10 @@ typedef struct importer {
     mesh m;
     mesh_faults faults;
     size_t point_room, face_room;
+    const char *const *poses; /* further files */
+    size_t pose_count;
+    mesh raw;         /* of the first file, before points were joined; only with poses */
+    uint32_t *became; /* of its points */
 } importer;
 
 static bool make_room(importer *im, size_t points, size_t faces)
@@ -153,7 +158,7 @@ static const struct aiScene *load(const char *path, char complaint[])
     return scene;
 }
 
-static int read_mesh(importer *im)
+static int read_raw(importer *im)
 {
     static const frame_matrix unit = {{1, 0, 0, 0}, {0, 1, 0, 0}, {0, 0, 1, 0}};
     if (access(im->path, R_OK) != 0)
@@ -176,7 +181,34 @@ static int read_mesh(importer *im)
                 cli_error("import", "%s: vertex %zu: %s", cli_clean(im->path), v, rdl_status_text(RDL_NOT_FINITE));
                 return CLI_BAD_INPUT;
             }
-    if (!mesh_weld(&im->m))
+    return CLI_DONE;
+}
+
+/* What later poses are compared with. */
+static bool keep_raw(importer *im)
+{
+    const mesh *m = &im->m;
+    im->raw.points = malloc((m->point_count + 1) * sizeof *m->points);
+    im->raw.faces = malloc((m->face_count + 1) * sizeof *m->faces);
+    im->became = malloc((m->point_count + 1) * sizeof *im->became);
+    if (im->raw.points == NULL || im->raw.faces == NULL || im->became == NULL)
+        return false;
+    im->raw.point_count = m->point_count;
+    im->raw.face_count = m->face_count;
+    if (m->point_count > 0)
+        memcpy(im->raw.points, m->points, m->point_count * sizeof *m->points);
+    if (m->face_count > 0)
+        memcpy(im->raw.faces, m->faces, m->face_count * sizeof *m->faces);
+    return true;
+}
+
+static int read_mesh(importer *im)
+{
+    int code = read_raw(im);
+    if (code != CLI_DONE)
+        return code;
+    if ((im->pose_count > 0 && !keep_raw(im)) || !mesh_weld(&im->m) ||
+        (im->pose_count > 0 && !mesh_follow(&im->raw, &im->m, im->became)))
         return cli_fail("import", im->path, -1, RDL_NO_MEMORY, NULL);
     if (im->m.face_count == 0) {
         cli_error("import", "%s: the file has no triangles", cli_clean(im->path));
@@ -203,6 +235,57 @@ static void fill_mass(const importer *im, double *mass)
         for (size_t k = 0; k < 3; k++)
             mass[m->faces[f][k]] += im->density * area / 3;
     }
+}
+
+/* The pose of a further file: the same faces, and points that were one in the first file still are. */
+static int read_pose(const importer *im, const char *path, double (*points)[3])
+{
+    importer next = {.path = path, .scale = im->scale};
+    int code = read_raw(&next);
+    const mesh *m = &next.m, *raw = &im->raw;
+    bool same = code == CLI_DONE && m->point_count == raw->point_count && m->face_count == raw->face_count &&
+                (m->face_count == 0 || memcmp(m->faces, raw->faces, m->face_count * sizeof *m->faces) == 0);
+    if (code == CLI_DONE && !same) {
+        cli_error("import", "%s: not the mesh of %s: %zu points and %zu triangles, or others", cli_clean(path),
+                  cli_clean(im->path), m->point_count, m->face_count);
+        code = CLI_BAD_INPUT;
+    }
+    uint8_t *placed = calloc(im->m.point_count + 1, 1);
+    if (placed == NULL && code == CLI_DONE)
+        code = cli_fail("import", path, -1, RDL_NO_MEMORY, NULL);
+    for (size_t i = 0; code == CLI_DONE && i < raw->point_count; i++) {
+        uint32_t v = im->became[i];
+        if (v == UINT32_MAX)
+            continue;
+        if (placed[v] && (points[v][0] != m->points[i][0] || points[v][1] != m->points[i][1] || points[v][2] != m->points[i][2])) {
+            cli_error("import", "%s: points that lie together in %s have parted (vertex %" PRIu32 ")", cli_clean(path),
+                      cli_clean(im->path), v);
+            code = CLI_BAD_INPUT;
+        }
+        memcpy(points[v], m->points[i], sizeof points[v]);
+        placed[v] = 1;
+    }
+    free(placed);
+    mesh_free(&next.m);
+    return code;
+}
+
+static int append_poses(const importer *im, rdl_shot_writer *writer)
+{
+    double(*points)[3] = malloc((im->m.point_count + 1) * sizeof *points);
+    int code = points != NULL ? CLI_DONE : cli_fail("import", im->path, -1, RDL_NO_MEMORY, NULL);
+    for (size_t k = 0; code == CLI_DONE && k < im->pose_count; k++) {
+        rdl_fault fault = {0, ""};
+        code = cli_interrupted() ? CLI_INTERRUPTED : read_pose(im, im->poses[k], points);
+        const rdl_shot_frame frame = {.time = (double)(k + 1) / 24, .delivered = points[0]};
+        rdl_status status = code == CLI_DONE ? rdl_shot_append(writer, &frame, &fault) : RDL_OK;
+        if (status != RDL_OK)
+            code = cli_fail("import", im->out, (long long)k + 1, status, &fault);
+        cli_progress("import", k + 1, im->pose_count);
+    }
+    cli_progress_end();
+    free(points);
+    return code;
 }
 
 static int write_shot(importer *im)
@@ -234,14 +317,15 @@ static int write_shot(importer *im)
     const rdl_shot_frame frame = {.delivered = m->points[0]};
     if (status == RDL_OK)
         status = cli_interrupted() ? RDL_CANCELLED : rdl_shot_append(writer, &frame, &fault);
-    if (status == RDL_OK) {
+    int code = status == RDL_OK ? append_poses(im, writer) : CLI_DONE;
+    if (status == RDL_OK && code == CLI_DONE) {
         status = rdl_shot_finish(writer, &fault);
         writer = NULL;
     }
     rdl_shot_discard(writer);
     free(part);
     free(mass);
-    return status == RDL_OK ? CLI_DONE : cli_fail("import", im->out, -1, status, &fault);
+    return status == RDL_OK ? code : cli_fail("import", im->out, -1, status, &fault);
 }
 
 static json_t *make_json(const importer *im, bool closed)
@@ -253,7 +337,7 @@ static json_t *make_json(const importer *im, bool closed)
                                                (json_int_t)im->faults.holes[i].edges));
     for (size_t i = 0; i < im->faults.flipped_count && i < im->most; i++)
         json_array_append_new(flipped, json_integer((json_int_t)im->faults.flipped[i]));
-    return json_pack("{s:o, s:o, s:o, s:s, s:I, s:I, s:I, s:I, s:I, s:I, s:I, s:b, s:I, s:I, s:I, s:I, s:o, s:o}",
+    return json_pack("{s:o, s:o, s:o, s:s, s:I, s:I, s:I, s:I, s:I, s:I, s:I, s:b, s:I, s:I, s:I, s:I, s:o, s:o, s:I}",
                      "file", cli_json_text(im->path), "output", cli_json_text(im->out), "part", cli_json_text(im->part),
                      "kind", im->cloth ? "cloth" : "body", "vertices", (json_int_t)m->point_count, "triangles",
                      (json_int_t)m->face_count, "welded", (json_int_t)m->welded, "unused", (json_int_t)m->unused,
@@ -261,13 +345,16 @@ static json_t *make_json(const importer *im, bool closed)
                      "skipped", (json_int_t)m->skipped_lines, "closed", (int)closed, "open_edges",
                      (json_int_t)im->faults.open_edges, "branched_edges", (json_int_t)im->faults.branched_edges,
                      "hole_count", (json_int_t)im->faults.hole_count, "flipped_count",
-                     (json_int_t)im->faults.flipped_count, "holes", holes, "flipped", flipped);
+                     (json_int_t)im->faults.flipped_count, "holes", holes, "flipped", flipped,
+                     "poses", (json_int_t)im->pose_count + 1);
 }
 
 static void print_text(const importer *im, bool closed)
 {
     const mesh *m = &im->m;
     const mesh_faults *faults = &im->faults;
+    if (im->pose_count > 0)
+        printf("%zu poses\n", im->pose_count + 1);
     printf("%s: %zu vertices (%zu joined, %zu unused), %zu triangles (%zu degenerate and %zu double ones dropped)\n",
            cli_clean(im->path), m->point_count, m->welded, m->unused, m->face_count, m->dropped_faces, m->double_faces);
     if (m->skipped_lines > 0)
@@ -349,13 +436,15 @@ static bool take_options(importer *im, const cli_line *line)
 
 int verb_import(int argc, char **argv)
 {
-    cli_line line;
+    static cli_line line; /* too large for some stacks */
     int code = CLI_DONE;
     char name[256];
     importer im = {.friction = 0.3, .density = 0.2, .scale = 1};
     if (!cli_read(&spec, argc, argv, &line, &code))
         return code;
     im.path = line.operands[0];
+    im.poses = line.operands + 1;
+    im.pose_count = line.operand_count - 1;
     if (!take_options(&im, &line))
         return CLI_BAD_INPUT;
     default_name(im.path, name);
@@ -363,5 +452,7 @@ int verb_import(int argc, char **argv)
     code = run(&im);
     mesh_free(&im.m);
     mesh_faults_free(&im.faults);
+    mesh_free(&im.raw);
+    free(im.became);
     return code;
 }

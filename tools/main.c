@@ -151,8 +151,7 @@ int main(int argc, char **argv)
         return finish(CLI_DONE);
     }
     if (strcmp(argv[1], "--version") == 0) {
-        printf("raddle %s\n", rdl_version());
-        return finish(CLI_DONE);
+        return finish(print_version());
     }
     for (size_t i = 0; i < VERBS; i++) {
         if (strcmp(argv[1], verbs[i].name) != 0)

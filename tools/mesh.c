@@ -141,6 +141,35 @@ bool mesh_weld(mesh *m)
     return done;
 }
 
+bool mesh_follow(const mesh *raw, const mesh *welded, uint32_t *became)
+{
+    keyed_point *keys = malloc((welded->point_count + 1) * sizeof *keys);
+    if (keys == NULL)
+        return false;
+    for (size_t i = 0; i < welded->point_count; i++) {
+        memcpy(keys[i].place, welded->points[i], sizeof keys[i].place);
+        keys[i].index = (uint32_t)i;
+    }
+    qsort(keys, welded->point_count, sizeof *keys, compare_points);
+    for (size_t i = 0; i < raw->point_count; i++) {
+        double place[3];
+        size_t low = 0, high = welded->point_count;
+        for (size_t k = 0; k < 3; k++)
+            place[k] = raw->points[i][k] + 0.0;
+        while (low < high) {
+            size_t middle = low + (high - low) / 2;
+            if (memcmp(keys[middle].place, place, sizeof place) < 0)
+                low = middle + 1;
+            else
+                high = middle;
+        }
+        bool found = low < welded->point_count && memcmp(keys[low].place, place, sizeof place) == 0;
+        became[i] = found ? keys[low].index : UINT32_MAX;
+    }
+    free(keys);
+    return true;
+}
+
 typedef struct side {
     uint32_t low, high, face;
     uint32_t forward; /* 1: the face runs from low to high */

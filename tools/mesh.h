@@ -32,6 +32,9 @@ bool mesh_weld(mesh *m);
 /* Finds borders, edges of more than two faces, and faces that run against their neighbours. False: no memory. */
 bool mesh_inspect(const mesh *m, mesh_faults *faults);
 void mesh_faults_free(mesh_faults *faults);
+/* Which point of `welded` each point of `raw` became: by their bits; UINT32_MAX: none. raw is the mesh before mesh_weld.
+ * False: no memory. */
+bool mesh_follow(const mesh *raw, const mesh *welded, uint32_t *became);
 void mesh_free(mesh *m);
 
 #endif

@@ -2,6 +2,8 @@
 #ifndef RADDLE_TOOLS_VERBS_H
 #define RADDLE_TOOLS_VERBS_H
 
+/* `raddle --version`. */
+int print_version(void);
 int verb_demo(int argc, char **argv);
 int verb_import(int argc, char **argv);
 int verb_info(int argc, char **argv);

@@ -77,3 +77,31 @@ try import-index 2 import index.off -o x.h5
 printf 'v 0 0 nan\nv 1 0 0\nv 0 1 0\nf 1 2 3\n' >nan.obj
 try import-nan 2 import nan.obj -o x.h5
 holds import-nothing-left ! -e x.h5
+# A numbered sequence of meshes is a shot of poses: check finds the bad frame, reduce works on the interval.
+cat >pose1.obj <<'END'
+v 0 0 1
+v 1 0 1
+v 0 1 1
+v -2 -2 0
+v 3 -2 0
+v -2 3 0
+f 1 2 3
+f 4 5 6
+END
+sed 's/^v \([01]\) \([01]\) 1/v \1 \2 0.5/' pose1.obj >pose2.obj
+sed 's/^v \([01]\) \([01]\) 1/v \1 \2 -0.5/' pose1.obj >pose3.obj
+try import-poses 0 import pose1.obj pose2.obj pose3.obj -o seq.h5 --kind cloth --half-thickness 0.001
+filter='s/: [0-9]* bytes, complete/: N bytes, complete/'
+try import-poses-info 0 info seq.h5
+filter=''
+try import-poses-check 1 check seq.h5
+filter='s/[0-9]* tests/N tests/'
+try import-poses-reduce 0 reduce seq.h5 --frame 2 --keep crossing -o found.h5
+filter=''
+try import-poses-calm 2 reduce seq.h5 --frame 1 --keep crossing -o calm.h5
+try import-poses-other 2 import pose1.obj closed.obj -o x.h5
+# Two triangles whose corners lie together in the first file only.
+printf 'v 0 0 0\nv 1 0 0\nv 0 1 0\nv 1 0 0\nv 1 1 0\nv 0 1 0\nf 1 2 3\nf 4 5 6\n' >torn1.obj
+sed '4s/1 0 0/1 0 0.5/' torn1.obj >torn2.obj
+try import-poses-torn 2 import torn1.obj torn2.obj -o x.h5 --kind cloth --half-thickness 0.001
+holds import-no-poses-left ! -e x.h5

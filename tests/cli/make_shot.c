@@ -259,6 +259,47 @@ static int add_setting(const char *path)
     return H5Fclose(file) >= 0 && done;
 }
 
+/* Prints the datasets of a VTKHDF file with their shapes and first numbers, and whether Points follow the offsets. */
+static herr_t look_at_set(hid_t group, const char *name, const H5L_info_t *link, void *data)
+{
+    double numbers[8192];
+    hsize_t dims[2] = {0, 0};
+    (void)link;
+    (void)data;
+    hid_t set = H5Oopen(group, name, H5P_DEFAULT);
+    if (H5Iget_type(set) == H5I_GROUP) {
+        printf("%s:\n", name);
+        H5Oclose(set);
+        return 0;
+    }
+    hid_t space = H5Dget_space(set);
+    int rank = H5Sget_simple_extent_dims(space, dims, NULL);
+    size_t count = (size_t)dims[0] * (rank > 1 ? (size_t)dims[1] : 1);
+    if (count > sizeof numbers / sizeof numbers[0] ||
+        H5Dread(set, H5T_NATIVE_DOUBLE, H5S_ALL, H5S_ALL, H5P_DEFAULT, numbers) < 0)
+        return -1;
+    printf("%s (%d):", name, rank);
+    for (size_t i = 0; i < count; i++)
+        printf(" %g", numbers[i]);
+    printf("\n");
+    H5Sclose(space);
+    H5Oclose(set);
+    return 0;
+}
+
+static int look_vtk(const char *path)
+{
+    long long version[2] = {0, 0};
+    hid_t file = H5Fopen(path, H5F_ACC_RDONLY, H5P_DEFAULT), group = H5Gopen2(file, "VTKHDF", H5P_DEFAULT);
+    hid_t attribute = H5Aopen(group, "Version", H5P_DEFAULT);
+    int done = H5Aread(attribute, H5T_NATIVE_LLONG, version) >= 0;
+    printf("version %lld.%lld\n", version[0], version[1]);
+    H5Aclose(attribute);
+    done = H5Lvisit(group, H5_INDEX_NAME, H5_ITER_INC, look_at_set, NULL) >= 0 && done;
+    H5Gclose(group);
+    return H5Fclose(file) >= 0 && done;
+}
+
 int main(int argc, char **argv)
 {
     static plan p;
@@ -267,6 +308,8 @@ int main(int argc, char **argv)
         return 2;
     if (strcmp(argv[1], "flip-digest") == 0)
         return flip_digest(argv[2]) ? EXIT_SUCCESS : 3;
+    if (strcmp(argv[1], "look-vtk") == 0)
+        return look_vtk(argv[2]) ? EXIT_SUCCESS : 3;
     if (strcmp(argv[1], "odd-setting") == 0)
         return add_setting(argv[2]) ? EXIT_SUCCESS : 3;
     int nan_wanted = strcmp(argv[1], "nan") == 0;

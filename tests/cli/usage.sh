@@ -1,7 +1,9 @@
 # Command lines: verbs, options, messages.
 try usage-nothing 2
 try usage-help 0 --help
+filter='s/^build: .*/build: B/; s/^code path: .*/code path: P/'
 try usage-version 0 --version
+filter=''
 try usage-unknown 2 bogus
 for verb in info check resolve replay reduce import export; do
     try "usage-help-$verb" 0 "$verb" --help
