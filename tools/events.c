@@ -9,8 +9,8 @@
 #include "cli.h"
 
 static const char *const stages[RDL_EVENT_STAGES] = {"boxes", "pairs", "touches", "zones", "zones", "pieces"};
-static const char *const levels[RDL_LEVEL_COUNT] = {"one-sided solve", "solve against separating planes", "rigid",
-                                                    "shorter piece", "held"};
+static const char *const levels[RDL_LEVEL_COUNT] = {"solved as one-sided contacts", "kept apart by fixed planes",
+                                                    "moved as one rigid body", "in a shorter piece of the step", "held"};
 static const char *const pieces[] = {"accepted", "shortened", "gives way", "held"};
 
 naming naming_of(const scenario *s, const stepper *st)

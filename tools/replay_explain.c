@@ -150,7 +150,7 @@ static void tell_answer(const rdl_touch *touch, const char *what, bool graze)
         printf("  %s: no", what);
     printf("%s\n    decided by %s", graze && touch->touches ? " (they graze, and do not cross)" : "",
            stages[touch->stage < RDL_STAGE_COUNT ? touch->stage : 0]);
-    printf(" (order %u, depth %u)\n", touch->order, touch->depth);
+    printf(" (series order %u, %u halvings)\n", touch->order, touch->depth);
 }
 
 static void tell_roots(const tale *t)
@@ -207,7 +207,9 @@ static void tell_passes(const tale *t)
     char text[NAME_ROOM];
     uint32_t detections = 0, candidate = 0, zoned = 0;
     enum { SHOWN = 12 };
-    printf("\nWhat the engine did with it\n");
+    printf("\nWhat the engine did with it\n"
+           "  A detection looks for pairs that break a floor on the way as it stands. Those that share vertices are solved\n"
+           "  together, as a zone; what was moved is looked at again, until nothing breaks a floor.\n");
     for (size_t i = 0; i < events->count; i++) {
         const rdl_event *event = &events->rows[i];
         bool ours = event->stage != RDL_EVENT_BOX && event->stage != RDL_EVENT_ZONE && event->stage != RDL_EVENT_PIECE &&

@@ -27,7 +27,8 @@ static rdl_event *tell(teller *t, uint32_t stage, uint32_t kind, uint32_t first,
     rdl_event *event = &t->events[t->count++];
     memset(event, 0, sizeof *event);
     event->stage = stage;
-    event->detection = (uint32_t)t->engine->watch_detections;
+    /* Zones and pieces follow a detection that is over. */
+    event->detection = (uint32_t)t->engine->watch_detections - (stage >= RDL_EVENT_ZONE ? 1 : 0);
     event->kind = kind;
     event->first = first;
     event->second = second;

@@ -28,7 +28,7 @@ filter='s/^  this shot .*/  this shot: VALUES/; s/^  the other: .*/  the other: 
 try replay-against-margin 1 replay a.h5 --against aim.h5
 try replay-against-setting 1 replay a.h5 --against a.h5 --aim-margin 4e-6
 try replay-against-input 1 replay a.h5 --against wrong.h5
-filter='/^What the engine did/,$d; s/ (order [0-9]*, depth [0-9]*)/ (ORDER, DEPTH)/'
+filter='/^What the engine did/,$d; s/ (series order [0-9]*, [0-9]* halvings)/ (ORDER)/'
 try replay-explain 0 replay a.h5 --frames 0 --explain pt:0:1
 try replay-explain-edges 0 replay a.h5 --frames 0 --explain ee:2-3:5-6
 try replay-explain-driven 0 replay a.h5 --frames 0 --explain ee:6:8
