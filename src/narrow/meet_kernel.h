@@ -22,19 +22,23 @@ LANE_INLINE vec slope_at(const vec f[4], vec t)
     return (f[1] - 3 * f[0]) * (s * s) + 2 * (f[2] - f[1]) * (s * t) + (3 * f[3] - f[2]) * (t * t);
 }
 
-/* f changes its sign from a to b, once: Newton steps kept inside by bisection. Only a guess. */
-LANE_INLINE vec guess_root(const vec f[4], vec a, vec b, vec at_a, vec at_b)
+/* f changes its sign from a to b, once: Newton steps kept inside by bisection. It begins as a parabola at the end that is a
+ * cut. Only a guess. */
+LANE_INLINE vec guess_root(const vec f[4], vec a, vec b, vec at_a, vec at_b, bits flat_a, bits flat_b)
 {
     bits rising = at_a < 0, moving = a <= b;
-    vec t = a + (b - a) * (at_a / (at_a - at_b));
-    for (int i = 0; i < 6 && mask_of(moving); i++) {
+    vec share = at_a / (at_a - at_b);
+    if (mask_of(flat_a | flat_b))
+        share = pick(flat_a, root(share), pick(flat_b, 1 - root(1 - share), share));
+    vec t = a + (b - a) * share;
+    for (int i = 0; i < 8 && mask_of(moving); i++) {
         vec value = cubic_at(f, t), slope = slope_at(f, t);
         bits before = (value < 0) == rising;
         a = pick(before, t, a);
         b = pick(before, b, t);
         vec next = t - value / slope;
-        bits within = (next > a) & (next < b);
-        next = pick(within, next, 0.5 * (a + b));
+        bits held = (next >= a) & (next <= b);
+        next = pick(held, next, 0.5 * (a + b));
         next = pick(moving, next, t); /* a lane's answer must not depend on its neighbours */
         moving &= absolute(next - t) > 0x1p-36;
         t = next;
@@ -87,10 +91,12 @@ typedef struct crossing {
 
 /* The part [a, b] of the step in the lanes of `ask`, on which f changes its sign exactly once, with certified signs at its
  * ends: is the pair in contact at the root? Lanes that are not certain become open. */
-LANE_INLINE void cross_over(int kind, const block *blk, const vec f[4], vec bound, bits ask, vec a, vec b, crossing *c)
+LANE_INLINE void cross_over(int kind, const block *blk, const vec f[4], vec bound, bits ask, vec a, vec b, bits twice,
+                            crossing *c)
 {
     bits where[WITHIN_COUNT];
-    vec at_a = cubic_at(f, a), at_b = cubic_at(f, b), t = guess_root(f, a, b, at_a, at_b);
+    vec at_a = cubic_at(f, a), at_b = cubic_at(f, b), t;
+    t = guess_root(f, a, b, at_a, at_b, twice & (a > 0), twice & (b < 1));
     vec lo = larger(t - BRACKET, a), hi = smaller(t + BRACKET, b);
     vec at_lo = cubic_at(f, lo), at_hi = cubic_at(f, hi);
     bits rising = (at_lo < -bound) & (at_hi > bound) & (at_a < 0), falling = (at_lo > bound) & (at_hi < -bound) & (at_a > 0);
@@ -113,9 +119,24 @@ LANE_INLINE void critical_points(const vec f[4], vec *first, vec *second)
     *second = pick(one < two, two, one);
 }
 
+/* The coefficients of f on [a, b], one of which is 0 or 1, all have the sign of `plus`, certified (de Casteljau's scheme: a
+ * certain sum of three levels, below the bound's reserve). */
+LANE_INLINE bits keeps_sign(const vec f[4], vec bound, bits plus, vec t, bool left)
+{
+    vec s = 1 - t, c[4] = {f[0], f[1] * (1.0 / 3), f[2] * (1.0 / 3), f[3]};
+    bits keeps = plus | ~plus;
+    for (int level = 3; level >= 0; level--) {
+        vec value = left ? c[0] : c[level];
+        keeps &= pick(plus, value, -value) > bound;
+        for (int i = 0; i < level; i++)
+            c[i] = s * c[i] + t * c[i + 1];
+    }
+    return keeps;
+}
+
 /* f has one sign at both ends of the step, and so at most two roots. The time of its extreme value on the other side; where
- * that is certified to be across 0 there is exactly one root before it and one after. */
-LANE_INLINE bits cut_between(const vec f[4], vec bound, vec *cut)
+ * that is certified to be across 0 there is exactly one root before it and one after. *none: certainly no root. */
+LANE_INLINE bits cut_between(const vec f[4], vec bound, vec *cut, bits *none)
 {
     vec first, second;
     critical_points(f, &first, &second);
@@ -123,9 +144,13 @@ LANE_INLINE bits cut_between(const vec f[4], vec bound, vec *cut)
     vec one = cubic_at(f, first), two = cubic_at(f, second);
     one = pick(plus, one, -one);
     two = pick(plus, two, -two);
-    bits take_two = two_in & (~one_in | (two < one));
+    bits take_two = two_in & (~one_in | (two < one)), in = one_in | two_in;
     *cut = pick(take_two, second, first);
-    return (one_in | two_in) & (pick(take_two, two, one) < -bound);
+    vec value = pick(take_two, two, one);
+    *none = in & (value > bound);
+    if (mask_of(*none))
+        *none &= keeps_sign(f, bound, plus, *cut, true) & keeps_sign(f, bound, plus, *cut, false);
+    return in & (value < -bound);
 }
 
 LANE_INLINE void meet_half(int kind, const rdli_quad *quad, int half, rdli_answers *answers)
@@ -142,13 +167,17 @@ LANE_INLINE void meet_half(int kind, const rdli_quad *quad, int half, rdli_answe
     }
     bits once = (plus[0] & minus[3] & (plus[1] | minus[2])) | (minus[0] & plus[3] & (minus[1] | plus[2]));
     bits twice = (plus[0] & plus[3]) | (minus[0] & minus[3]);
-    if (mask_of(twice))
-        twice &= cut_between(f, bound, &cut);
+    bits none = once & 0;
+    if (mask_of(twice)) {
+        bits cuts = cut_between(f, bound, &cut, &none);
+        none &= twice;
+        twice &= cuts;
+    }
     cut = pick(twice, cut, all(0));
-    crossing c = {~(once | twice), once & 0, all(0), all(0)};
+    crossing c = {~(once | twice | none), none & 0, all(0), all(0)};
     if (mask_of(twice))
-        cross_over(kind, &b, f, bound, twice, all(0), cut, &c);
-    cross_over(kind, &b, f, bound, ~(c.open | c.touch), cut, all(1), &c);
+        cross_over(kind, &b, f, bound, twice, all(0), cut, twice, &c);
+    cross_over(kind, &b, f, bound, ~(c.open | c.touch | none), cut, all(1), twice, &c);
     unsigned open = mask_of(c.open), touch = mask_of(c.touch);
     for (int i = 0; i < LANE_WIDTH; i++) {
         answers->answer[half + i] = open >> i & 1 ? RDLI_LANE_OPEN : touch >> i & 1 ? RDLI_LANE_TOUCH : RDLI_LANE_FREE;

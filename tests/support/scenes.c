@@ -113,15 +113,15 @@ void make_fast_thin(random_source *source, int kind, rdl_motion *motion)
         }
 }
 
-/* Two wavy layers of 5 mm mesh, 0.5 mm apart, seen at neighbouring places; each vertex moves up to 1 mm, mostly along
- * with its layer. */
+/* Two wavy layers of 5 mm mesh, 0.5 mm apart, seen at neighbouring places; each layer moves up to 1.2 mm along every axis,
+ * and each vertex a tenth of that by itself. About a quarter of the pairs touch. */
 void make_cloth(random_source *source, int kind, rdl_motion *motion)
 {
     double m[3][3], origin[3] = {0.0, 0.0, 0.0}, drift[2][3], mesh = 0.005, apart = 0.0005;
     random_rotation(source, m);
     for (int k = 0; k < 3; k++) {
-        drift[0][k] = 0.001 * random_between(source, -1.0, 1.0);
-        drift[1][k] = 0.001 * random_between(source, -1.0, 1.0);
+        drift[0][k] = 0.0012 * random_between(source, -1.0, 1.0);
+        drift[1][k] = 0.0012 * random_between(source, -1.0, 1.0);
     }
     for (int i = 0; i < 4; i++) {
         int layer = i >= first_of_second(kind);
@@ -129,8 +129,8 @@ void make_cloth(random_source *source, int kind, rdl_motion *motion)
         double p[3] = {u + random_between(source, -0.4, 0.4) * mesh, v + random_between(source, -0.4, 0.4) * mesh,
                        layer ? apart : 0.0};
         if (kind == RDL_POINT_TRIANGLE && !layer) {
-            p[0] += 0.6 * mesh;
-            p[1] += 0.3 * mesh;
+            p[0] = (0.6 + random_between(source, -0.25, 0.25)) * mesh;
+            p[1] = (0.3 + random_between(source, -0.25, 0.25)) * mesh;
         }
         if (kind == RDL_EDGE_EDGE && layer)
             p[1] = i == 2 ? -0.6 * mesh : 0.6 * mesh;
@@ -145,12 +145,13 @@ void make_cloth(random_source *source, int kind, rdl_motion *motion)
 }
 
 /* Nearly parallel segments of 2 mm, 0.1 mm apart, that slide along and roll about each other; or a segment's end beside a
- * triangle of the same size. */
+ * triangle of the same size. Some are pressed together by more than they are apart. About a fifth touches. */
 void make_strands(random_source *source, int kind, rdl_motion *motion)
 {
     double axis[3], side[3], up[3], length = 0.002, apart = 0.0001;
     random_direction(source, axis);
     random_direction(source, side);
+    double press = random_below(source, 5) < 2 ? random_between(source, 1.5, 4.0) * apart : 0.0;
     for (int k = 0; k < 3; k++)
         up[k] = axis[(k + 1) % 3] * side[(k + 2) % 3] - axis[(k + 2) % 3] * side[(k + 1) % 3];
     for (int i = 0; i < 4; i++) {
@@ -166,8 +167,10 @@ void make_strands(random_source *source, int kind, rdl_motion *motion)
         double slide = 0.2 * length * random_between(source, -1.0, 1.0);
         for (int k = 0; k < 3; k++) {
             motion->start[i][k] = along * axis[k] + off * side[k] + rise * up[k] +
-                                  0.3 * apart * random_between(source, -1.0, 1.0);
-            motion->end[i][k] = motion->start[i][k] + slide * axis[k] + apart * random_between(source, -1.0, 1.0);
+                                  0.15 * apart * random_between(source, -1.0, 1.0);
+            motion->end[i][k] = motion->start[i][k] + slide * axis[k] + 0.7 * apart * random_between(source, -1.0, 1.0);
+            if (i < first_of_second(kind))
+                motion->end[i][k] += press * (kind == RDL_POINT_TRIANGLE ? -up[k] : side[k]);
         }
     }
 }
