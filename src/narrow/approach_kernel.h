@@ -72,10 +72,11 @@ LANE_INLINE void separated_times(int kind, const reach *r, vec t, vec *from, vec
  * bracket, or nothing (back > 1) as long as the touch at hi is not known to be near a crossing. [isle, land] is a certified
  * part between free and all that; none where isle > 1. left and right: times with the unit directions of their closest
  * points, at which the distance is above the gap; left <= free, and right in [back, lo], or none where it is > 1. time:
- * where to look next. */
+ * where to look next. last, length, slope: where was looked last, the distance there, and its slope. */
 typedef struct state {
     vec free, back, lo, hi, isle, land, time, left, right;
     vec3 left_d, right_d;
+    vec last, length, slope;
 } state;
 static_assert(sizeof(state) == RDLI_STATE * sizeof(vec), "as many as rdli_progress holds");
 
@@ -99,21 +100,37 @@ LANE_INLINE vec turning(int kind, const frames *fa, const frames *fb, const vec3
     return smaller(smaller(first, last), 0.5 * middle) * (1 - 0x1p-48) - 3 * pad;
 }
 
-/* Where the distance and its slope at t suggest that the gap is reached, and a little later; behind a touch that is near a
- * crossing, the bracket's begin; or the middle of what is not yet certified. */
-LANE_INLINE vec target_of(int kind, const block *b, const nearest *n, vec length, vec gap, vec t, const state *s)
+/* Velocity of the difference of the points that are closest now. */
+LANE_INLINE vec3 velocity_of(int kind, const block *b, const nearest *n)
 {
-    vec speed = all(0);
+    vec3 velocity;
     for (int k = 0; k < 3; k++) {
         vec w = b->at[1].w.c[k] - b->at[0].w.c[k], u = b->at[1].u.c[k] - b->at[0].u.c[k];
         vec v = b->at[1].v.c[k] - b->at[0].v.c[k], inner = w - n->s * u, outer = n->r * v;
-        speed += n->e.c[k] * (kind == RDL_POINT_TRIANGLE ? inner - outer : -(inner + outer));
+        velocity.c[k] = kind == RDL_POINT_TRIANGLE ? inner - outer : -(inner + outer);
     }
-    vec reached = t + (gap - length) * length / speed;
+    return velocity;
+}
+
+/* Sets the time to look at next. It is just before the distances and slopes here and at the last time suggest that the gap
+ * is reached: Newton's method, or Hermite's cubic of the time as a function of the distance, where both slopes point there.
+ * Behind a touch that is near a crossing it is the bracket's begin; else the middle of what is not yet certified. */
+LANE_INLINE void aim(vec slope, vec length, vec gap, vec t, bits first, state *s)
+{
+    vec reached = t + (gap - length) / slope, step = length - s->length;
+    vec x = (gap - s->length) / step, y = 1 - x;
+    vec cubic = s->last * (1 + 2 * x) * (y * y) + t * (x * x) * (3 - 2 * x) + step * x * y * (y / s->slope - x / slope);
+    bits both = ~first & (slope < 0) & (s->slope < 0) & (absolute(cubic - reached) < absolute(t - s->last));
+    reached = pick(both, cubic, reached);
+    s->last = t;
+    s->length = length;
+    s->slope = slope;
     bits loose = (s->hi <= 1) & (s->back > 1), close = loose & (absolute(reached - s->hi) < BEHIND);
     vec end = smaller(smaller(s->back, s->hi), smaller(s->isle, all(1)));
-    vec next = pick(close, s->hi - BEHIND, reached + 0.5 * BEHIND);
-    return pick((next > s->free) & (next < end), next, 0.5 * (s->free + end));
+    /* what is certified may end already within half a bracket of the crossing: then just behind it */
+    vec next = pick(reached - 0.5 * BEHIND > s->free, reached - 0.5 * BEHIND, reached + 0.5 * BEHIND);
+    next = pick(close, s->hi - BEHIND, next);
+    s->time = pick((next > s->free) & (next < end), next, 0.5 * (s->free + end));
 }
 
 /* The closest points at both ends of the step, and what their directions show. */
@@ -155,14 +172,16 @@ LANE_INLINE bits begin(int kind, const block *b, vec gap, ends *e, state *s, bit
     reach_gap(b, gap, e->length[0], &e->reach[0]);
     separated_times(kind, &e->reach[0], all(0), &from, &to);
     to = pick(ends_keep(b, e, gap), all(1), to);
-    *s = (state){larger(to, all(0)), none, none, none, none, none, all(0), all(0), none, e->d[0], e->d[1]};
+    *s = (state){larger(to, all(0)), none, none, none, none, none, all(0), all(0), none, e->d[0], e->d[1],
+        all(0), all(0), all(0)};
     bits ask = ~start & (s->free < 1); /* the others must not depend on whether a neighbour asks */
     if (mask_of(ask)) {
         reach_gap(b, gap, e->length[1], &e->reach[1]);
         separated_times(kind, &e->reach[1], all(1), &from, &to);
         s->back = pick(ask, from, s->back);
         s->right = pick(s->back <= 1, all(1), s->right);
-        s->time = pick(ask, target_of(kind, b, &e->n[0], e->length[0], gap, all(0), s), s->time);
+        vec3 velocity = velocity_of(kind, b, &e->n[0]);
+        aim(dot(&velocity, &e->d[0]), e->length[0], gap, all(0), ask | ~ask, s);
     }
     return start;
 }
@@ -185,13 +204,16 @@ LANE_INLINE void touch_here(state *s, bits near, vec at, vec from, const vec3 *d
     s->right_d = choose(sharp, d, &s->right_d);
 }
 
-/* [from, to] is certified in the lanes of apart, and holds s->time. */
-LANE_INLINE void free_here(state *s, bits apart, vec from, vec to, const vec3 *d)
+/* [from, to] is certified in the lanes of apart, and holds s->time. soon: a touch is certain at `touch`. */
+LANE_INLINE void free_here(state *s, bits apart, vec from, vec to, const vec3 *d, bits soon, vec touch)
 {
-    /* just before a touch that was not near a crossing: this is the bracket's begin */
+    /* just before a touch: this is the bracket's begin */
     bits begins = apart & (s->back > 1) & (s->hi <= 1) & (s->hi - s->time <= 1.25 * BEHIND);
+    begins |= apart & soon;
+    s->hi = pick(apart & soon, touch, s->hi);
+    s->isle = pick(begins, all(2), s->isle);
     s->lo = pick(begins, s->time, s->lo);
-    bits forward = apart & (from <= s->free), backward = apart & ((to >= s->back) | begins);
+    bits forward = apart & (from <= s->free), backward = begins | (apart & (to >= s->back));
     s->free = pick(forward, larger(pick(begins, s->time, to), s->free), s->free);
     s->back = pick(backward, pick(begins, from, smaller(from, s->back)), s->back);
     s->right = pick(backward, s->time, s->right);
@@ -209,7 +231,7 @@ LANE_INLINE void free_here(state *s, bits apart, vec from, vec to, const vec3 *d
 LANE_INLINE void look(int kind, const block *b, vec gap, state *s)
 {
     vec from, to;
-    frames here = frames_at(b->at, s->time), left = frames_at(b->at, s->left), right = frames_at(b->at, s->right);
+    frames here = frames_at(b->at, s->time);
     nearest n = nearest_of(kind, &here);
     vec length = root(n.least);
     bits near = (length + 3 * b->pad) * (1 + 8 * UNIT) <= gap;
@@ -220,13 +242,24 @@ LANE_INLINE void look(int kind, const block *b, vec gap, state *s)
     separated_times(kind, &r, at, &from, &to);
     vec3 d = unit_of(&n.e, length);
     bits proved = from <= to, apart = proved & ~near;
-    bits before = apart & (turning(kind, &left, &here, &s->left_d, &d, b->pad) > gap);
-    bits after = apart & (s->right <= 1) & (turning(kind, &here, &right, &d, &s->right_d, b->pad) > gap);
-    from = pick(before, smaller(from, s->free), from);
-    to = pick(after, larger(to, s->back), to);
+    /* the points that are closest now are near enough at the end of a bracket that begins here */
+    vec touch = smaller(s->time + BEHIND, all(1));
+    vec3 velocity = velocity_of(kind, b, &n), then = mixed(&n.e, &velocity, all(1), touch - s->time);
+    bits soon = (root(dot(&then, &then)) + 4 * b->pad) * (1 + 8 * UNIT) <= gap;
+    bits before = apart & (from > s->free), after = apart & (to < s->back) & (s->right <= 1);
+    if (mask_of(before)) {
+        frames left = frames_at(b->at, s->left);
+        before &= turning(kind, &left, &here, &s->left_d, &d, b->pad) > gap;
+        from = pick(before, s->free, from);
+    }
+    if (mask_of(after)) {
+        frames right = frames_at(b->at, s->right);
+        after &= turning(kind, &here, &right, &d, &s->right_d, b->pad) > gap;
+        to = pick(after, s->back, to);
+    }
     touch_here(s, near, at, pick(proved, from, all(2)), &d);
-    free_here(s, apart, from, to, &d);
-    s->time = target_of(kind, b, &n, length, gap, s->time, s);
+    free_here(s, apart, from, to, &d, soon, touch);
+    aim(dot(&velocity, &d), length, gap, s->time, near & ~near, s);
 }
 
 LANE_INLINE void tell(bits which, int half, uint8_t told[RDLI_LANES])

@@ -29,9 +29,14 @@ typedef struct frames {
     vec3 w, u, v;
 } frames;
 
+/* a where `which` is all ones, b where it is 0. */
 LANE_INLINE vec pick(bits which, vec a, vec b)
 {
+#if defined(__x86_64__) && LANE_WIDTH == 4
+    return (vec)_mm256_blendv_pd((__m256d)b, (__m256d)a, (__m256d)which);
+#else
     return (vec)((which & (bits)a) | (~which & (bits)b));
+#endif
 }
 
 LANE_INLINE vec absolute(vec a)
