@@ -78,7 +78,7 @@ typedef struct state {
     vec3 left_d, right_d;
     vec last, length, slope;
 } state;
-static_assert(sizeof(state) == RDLI_STATE * sizeof(vec), "as many as rdli_progress holds");
+static_assert(sizeof(state) == RDLI_STATE * sizeof(vec) && RDLI_STATE % 2 == 0, "as many as a row holds");
 
 /* Zero where the length is. */
 LANE_INLINE vec3 unit_of(const vec3 *e, vec length)
@@ -272,9 +272,9 @@ LANE_INLINE void tell(bits which, int half, uint8_t told[RDLI_LANES])
 LANE_INLINE void save(const state *s, int half, rdli_progress *p)
 {
     const vec *value = &s->free;
+    for (int place = 0; place < RDLI_STATE; place += 2)
+        store_two(value[place], value[place + 1], p->state + half, place);
     tell(is_done(s), half, p->done);
-    for (int i = 0; i < RDLI_STATE; i++)
-        store(value[i], p->state[i] + half);
 }
 
 LANE_INLINE void begin_half(int kind, const rdli_quad *quad, int half, rdli_progress *progress)
@@ -297,8 +297,8 @@ LANE_INLINE void look_half(int kind, const rdli_quad *quad, int half, rdli_progr
     block b = block_of(kind, &p, load(quad->gap + half));
     state s;
     vec *value = &s.free;
-    for (int i = 0; i < RDLI_STATE; i++)
-        value[i] = load(progress->state[i] + half);
+    for (int place = 0; place < RDLI_STATE; place += 2)
+        load_two((const double *const *)progress->state + half, place, &value[place], &value[place + 1]);
     look(kind, &b, b.gap, &s);
     save(&s, half, progress);
 }

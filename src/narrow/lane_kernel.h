@@ -172,28 +172,47 @@ typedef struct points {
     vec3 x[2][4];
 } points;
 
-/* Places 2 j and 2 j + 1 of each lane's 24 doubles: a transposition. */
-LANE_INLINE void load_two(const rdli_quad *quad, int half, int j, vec *first, vec *second)
+/* Two neighbouring doubles of each lane's row: a transposition. */
+LANE_INLINE void load_two(const double *const from[LANE_WIDTH], int place, vec *first, vec *second)
 {
-    const double *from[LANE_WIDTH];
-    for (int i = 0; i < LANE_WIDTH; i++)
-        from[i] = (const double *)quad->motion[half + i] + 2 * j;
 #if LANE_WIDTH == 4
-    __m256d even = _mm256_insertf128_pd(_mm256_castpd128_pd256(_mm_loadu_pd(from[0])), _mm_loadu_pd(from[2]), 1);
-    __m256d odd = _mm256_insertf128_pd(_mm256_castpd128_pd256(_mm_loadu_pd(from[1])), _mm_loadu_pd(from[3]), 1);
+    __m256d even = _mm256_castpd128_pd256(_mm_loadu_pd(from[0] + place));
+    __m256d odd = _mm256_castpd128_pd256(_mm_loadu_pd(from[1] + place));
+    even = _mm256_insertf128_pd(even, _mm_loadu_pd(from[2] + place), 1);
+    odd = _mm256_insertf128_pd(odd, _mm_loadu_pd(from[3] + place), 1);
     *first = (vec)_mm256_unpacklo_pd(even, odd);
     *second = (vec)_mm256_unpackhi_pd(even, odd);
 #else
-    *first = (vec){from[0][0], from[1][0]};
-    *second = (vec){from[0][1], from[1][1]};
+    *first = (vec){from[0][place], from[1][place]};
+    *second = (vec){from[0][place + 1], from[1][place + 1]};
+#endif
+}
+
+LANE_INLINE void store_two(vec first, vec second, double *const to[LANE_WIDTH], int place)
+{
+#if LANE_WIDTH == 4
+    __m256d even = _mm256_unpacklo_pd((__m256d)first, (__m256d)second);
+    __m256d odd = _mm256_unpackhi_pd((__m256d)first, (__m256d)second);
+    _mm_storeu_pd(to[0] + place, _mm256_castpd256_pd128(even));
+    _mm_storeu_pd(to[1] + place, _mm256_castpd256_pd128(odd));
+    _mm_storeu_pd(to[2] + place, _mm256_extractf128_pd(even, 1));
+    _mm_storeu_pd(to[3] + place, _mm256_extractf128_pd(odd, 1));
+#else
+    for (int i = 0; i < LANE_WIDTH; i++) {
+        to[i][place] = first[i];
+        to[i][place + 1] = second[i];
+    }
 #endif
 }
 
 LANE_INLINE void load_points(const rdli_quad *quad, int half, points *p)
 {
-    vec *place = &p->x[0][0].c[0];
-    for (int j = 0; j < 12; j++)
-        load_two(quad, half, j, &place[2 * j], &place[2 * j + 1]);
+    vec *value = &p->x[0][0].c[0];
+    const double *from[LANE_WIDTH];
+    for (int i = 0; i < LANE_WIDTH; i++)
+        from[i] = (const double *)quad->motion[half + i];
+    for (int place = 0; place < 24; place += 2)
+        load_two(from, place, &value[place], &value[place + 1]);
 }
 
 LANE_INLINE frames frames_of(int kind, const vec3 x[4])

@@ -26,10 +26,10 @@ typedef struct rdli_answers {
  * bracket [LO, HI]. */
 enum { RDLI_STATE = 18, RDLI_STATE_LO = 2, RDLI_STATE_HI = 3 };
 typedef struct rdli_progress {
+    double *state[RDLI_LANES];  /* RDLI_STATE numbers of each lane, where the caller keeps them */
     uint8_t start[RDLI_LANES];  /* at or below the gap at t = 0: nothing else counts */
     uint8_t unsure[RDLI_LANES]; /* perhaps so: exact arithmetic must tell */
     uint8_t done[RDLI_LANES];
-    alignas(32) double state[RDLI_STATE][RDLI_LANES];
 } rdli_progress;
 
 /* What the lanes know about the engine's question; lengths in units of the lane's pair. */

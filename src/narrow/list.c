@@ -79,10 +79,15 @@ typedef struct course {
     uint8_t start[BLOCK], unsure[BLOCK], done[BLOCK], looks[BLOCK];
 } course;
 
+/* The rows of the lanes of fill_quad. */
+static void point_rows(const uint8_t *places, size_t count, size_t first, course *c, rdli_progress *p)
+{
+    for (size_t lane = 0; lane < RDLI_LANES; lane++)
+        p->state[lane] = c->state[places[first + lane < count ? first + lane : count - 1]];
+}
+
 static void keep(const rdli_progress *p, size_t lane, size_t at, course *c)
 {
-    for (int i = 0; i < RDLI_STATE; i++)
-        c->state[at][i] = p->state[i][lane];
     c->done[at] = p->done[lane];
     c->start[at] = p->start[lane];
     c->unsure[at] = p->unsure[lane];
@@ -97,15 +102,13 @@ static void look_on(const work *w, uint8_t places[BLOCK], size_t count, course *
             rdli_progress p;
             for (size_t lane = 0; lane < RDLI_LANES; lane++) {
                 size_t at = places[first + lane < count ? first + lane : count - 1];
-                p.start[lane] = p.unsure[lane] = 0;
                 quad.motion[lane] = w->motion[at];
                 quad.gap[lane] = c->gap[at];
-                for (int i = 0; i < RDLI_STATE; i++)
-                    p.state[i][lane] = c->state[at][i];
             }
+            point_rows(places, count, first, c, &p);
             w->path->look_again(w->kind, &quad, &p);
             for (size_t lane = 0; lane < RDLI_LANES && first + lane < count; lane++) {
-                keep(&p, lane, places[first + lane], c);
+                c->done[places[first + lane]] = p.done[lane];
                 c->looks[places[first + lane]]++;
             }
         }
@@ -168,6 +171,7 @@ static void approach_open(const work *w, const uint8_t *places, size_t count, co
         rdli_quad quad;
         rdli_progress p;
         fill_quad(w, places, count, first, &quad);
+        point_rows(places, count, first, &c, &p);
         w->path->approach(w->kind, &quad, &p);
         for (size_t lane = 0; lane < RDLI_LANES && first + lane < count; lane++) {
             size_t at = places[first + lane];
@@ -281,6 +285,7 @@ static void examine_open(const work *w, const rdl_motion motions[], const double
             size_t at = w->open[first + lane < w->open_count ? first + lane : w->open_count - 1];
             from[lane] = ldexp(floors[at][1], w->shift[at]);
         }
+        point_rows(w->open, w->open_count, first, &c, &o->progress);
         w->path->outlook(w->kind, &quad, share, from, o);
         for (size_t lane = 0; lane < RDLI_LANES && first + lane < w->open_count; lane++) {
             size_t at = w->open[first + lane];

@@ -18,21 +18,36 @@ LANE_INLINE vec clamped(vec x)
     return pick(x > 0, pick(x < 1, x, all(1)), all(0));
 }
 
-/* e = sign (w - s u - sign r v). Taken where it is shorter, in the lanes of `where`. */
-LANE_INLINE void offer(int kind, const frames *f, bits where, vec s, vec r, nearest *n)
+/* Takes the difference e where it is shorter, in the lanes of `where`. */
+LANE_INLINE void take(bits where, vec s, vec r, const vec3 *e, nearest *n)
 {
-    double sign = kind == RDL_POINT_TRIANGLE ? 1 : -1;
-    vec3 e;
-    for (int k = 0; k < 3; k++) {
-        vec inner = f->w.c[k] - s * f->u.c[k], outer = r * f->v.c[k];
-        e.c[k] = sign > 0 ? inner - outer : -(inner + outer);
-    }
-    vec square = dot(&e, &e);
+    vec square = dot(e, e);
     bits better = where & (square < n->least);
     n->least = pick(better, square, n->least);
     n->s = pick(better, s, n->s);
     n->r = pick(better, r, n->r);
-    n->e = choose(better, &e, &n->e);
+    n->e = choose(better, e, &n->e);
+}
+
+/* e = sign (w - s u - sign r v); where s or r is 0 or 1 for all lanes the products are left out. */
+enum side { SIDE_NONE, SIDE_S0, SIDE_S1, SIDE_R0, SIDE_R1 };
+LANE_INLINE void offer_side(int kind, const frames *f, bits where, enum side side, vec s, vec r, nearest *n)
+{
+    vec3 e;
+    for (int k = 0; k < 3; k++) {
+        vec w = f->w.c[k], u = f->u.c[k], v = f->v.c[k];
+        vec inner = side == SIDE_S0 ? w : side == SIDE_S1 ? w - u : w - s * u, outer = side == SIDE_R1 ? v : r * v;
+        if (kind == RDL_POINT_TRIANGLE)
+            e.c[k] = side == SIDE_R0 ? inner : inner - outer;
+        else
+            e.c[k] = side == SIDE_R0 ? -inner : -(inner + outer);
+    }
+    take(where, s, r, &e, n);
+}
+
+LANE_INLINE void offer(int kind, const frames *f, bits where, vec s, vec r, nearest *n)
+{
+    offer_side(kind, f, where, SIDE_NONE, s, r, n);
 }
 
 /* u and v nearly parallel: the free minimum from cross products. */
@@ -79,15 +94,15 @@ LANE_INLINE nearest nearest_of(int kind, const frames *f)
     bits inside = ~(parallel | left | low | far | high);
     if (mask_of(~inside)) {
         if (triangle) {
-            offer(kind, f, parallel | left, all(0), clamped(p.wv / p.vv), &n);
-            offer(kind, f, parallel | low, clamped(p.wu / p.uu), all(0), &n);
+            offer_side(kind, f, parallel | left, SIDE_S0, all(0), clamped(p.wv / p.vv), &n);
+            offer_side(kind, f, parallel | low, SIDE_R0, clamped(p.wu / p.uu), all(0), &n);
             vec t = clamped((p.wv - p.wu - p.uv + p.uu) / (p.uu - 2 * p.uv + p.vv));
             offer(kind, f, parallel | far, 1 - t, t, &n);
         } else {
-            offer(kind, f, parallel | left, all(0), clamped(-p.wv / p.vv), &n);
-            offer(kind, f, parallel | far, all(1), clamped((p.uv - p.wv) / p.vv), &n);
-            offer(kind, f, parallel | low, clamped(p.wu / p.uu), all(0), &n);
-            offer(kind, f, parallel | high, clamped((p.wu + p.uv) / p.uu), all(1), &n);
+            offer_side(kind, f, parallel | left, SIDE_S0, all(0), clamped(-p.wv / p.vv), &n);
+            offer_side(kind, f, parallel | far, SIDE_S1, all(1), clamped((p.uv - p.wv) / p.vv), &n);
+            offer_side(kind, f, parallel | low, SIDE_R0, clamped(p.wu / p.uu), all(0), &n);
+            offer_side(kind, f, parallel | high, SIDE_R1, clamped((p.wu + p.uv) / p.uu), all(1), &n);
         }
     }
     if (mask_of(parallel))

@@ -32,7 +32,7 @@ static void same_progress(const rdli_progress *one, const rdli_progress *other, 
     ck_assert(one->start[i] || one->unsure[i] || one->done[i] == other->done[i]);
     bool over = one->done[i] || one->start[i] || one->unsure[i]; /* the rest then only follows from the neighbours' needs */
     for (int k = over ? RDLI_STATE_LO : 0; k < (over ? RDLI_STATE_HI + 1 : RDLI_STATE); k++)
-        ck_assert(same_double(one->state[k][i], other->state[k][i]));
+        ck_assert(same_double(one->state[i][k], other->state[i][k]));
 }
 
 static void same_outlook(const rdli_outlook *one, const rdli_outlook *other, int i)
@@ -54,6 +54,12 @@ static void same_at_a_gap(int kind, const rdli_quad *quad, const rdli_path *one,
 {
     static rdli_progress progress[2];
     static rdli_outlook outlooks[2];
+    static double rows[4][RDLI_LANES][RDLI_STATE];
+    for (int i = 0; i < RDLI_LANES; i++)
+        for (int j = 0; j < 2; j++) {
+            progress[j].state[i] = rows[j][i];
+            outlooks[j].progress.state[i] = rows[2 + j][i];
+        }
     alignas(32) static const double from[RDLI_LANES] = {-1, -1, 0.01, -1};
     one->approach(kind, quad, &progress[0]);
     other->approach(kind, quad, &progress[1]);
