@@ -22,28 +22,40 @@ LANE_INLINE vec slope_at(const vec f[4], vec t)
     return (f[1] - 3 * f[0]) * (s * s) + 2 * (f[2] - f[1]) * (s * t) + (3 * f[3] - f[2]) * (t * t);
 }
 
-/* f changes its sign from a to b, once: Newton steps kept inside by bisection. It begins as a parabola at the end that is a
- * cut. Only a guess. */
-LANE_INLINE vec guess_root(const vec f[4], vec a, vec b, vec at_a, vec at_b, bits flat_a, bits flat_b)
+/* A part of the step on which f changes its sign once; a flat end is a critical point of f. */
+typedef struct part {
+    vec a, b, at_a, at_b, t;
+    bits flat_a, flat_b, moving;
+} part;
+
+/* Guesses of the roots: Newton steps kept inside by bisection. They begin as a parabola at an end that is flat. All parts go
+ * together, because each step waits for its division. */
+LANE_INLINE void guess_roots(const vec f[4], int count, part *p)
 {
-    bits rising = at_a < 0, moving = a <= b;
-    vec share = at_a / (at_a - at_b);
-    if (mask_of(flat_a | flat_b))
-        share = pick(flat_a, root(share), pick(flat_b, 1 - root(1 - share), share));
-    vec t = a + (b - a) * share;
-    for (int i = 0; i < 8 && mask_of(moving); i++) {
-        vec value = cubic_at(f, t), slope = slope_at(f, t);
-        bits before = (value < 0) == rising;
-        a = pick(before, t, a);
-        b = pick(before, b, t);
-        vec next = t - value / slope;
-        bits held = (next >= a) & (next <= b);
-        next = pick(held, next, 0.5 * (a + b));
-        next = pick(moving, next, t); /* a lane's answer must not depend on its neighbours */
-        moving &= absolute(next - t) > 0x1p-36;
-        t = next;
+    for (int j = 0; j < count; j++) {
+        vec share = p[j].at_a / (p[j].at_a - p[j].at_b);
+        if (mask_of(p[j].flat_a | p[j].flat_b))
+            share = pick(p[j].flat_a, root(share), pick(p[j].flat_b, 1 - root(1 - share), share));
+        p[j].t = p[j].a + (p[j].b - p[j].a) * share;
+        p[j].moving = p[j].a <= p[j].b;
     }
-    return t;
+    for (int i = 0; i < 8; i++) {
+        bits moving = p[0].moving & 0;
+        for (int j = 0; j < count; j++) {
+            vec t = p[j].t, value = cubic_at(f, t), slope = slope_at(f, t), next = t - value / slope;
+            bits before = (value < 0) == (p[j].at_a < 0);
+            p[j].a = pick(before, t, p[j].a);
+            p[j].b = pick(before, p[j].b, t);
+            bits held = (next >= p[j].a) & (next <= p[j].b);
+            next = pick(held, next, 0.5 * (p[j].a + p[j].b));
+            next = pick(p[j].moving, next, t); /* a lane's answer must not depend on its neighbours */
+            p[j].moving &= absolute(next - t) > 0x1p-36;
+            p[j].t = next;
+            moving |= p[j].moving;
+        }
+        if (!mask_of(moving))
+            break;
+    }
 }
 
 enum { WITHIN_NO, WITHIN_YES, WITHIN_COUNT };
@@ -89,24 +101,37 @@ typedef struct crossing {
     vec lo, hi;
 } crossing;
 
-/* The part [a, b] of the step in the lanes of `ask`, on which f changes its sign exactly once, with certified signs at its
- * ends: is the pair in contact at the root? Lanes that are not certain become open. */
-LANE_INLINE void cross_over(int kind, const block *blk, const vec f[4], vec bound, bits ask, vec a, vec b, bits twice,
-                            crossing *c)
+/* In the lanes of `ask`, with t a guess of the only root in [a, b], at whose ends f has certified signs: is the pair in
+ * contact at the root? Lanes that are not certain become open. */
+LANE_INLINE void cross_over(int kind, const block *blk, const vec f[4], vec bound, bits ask, vec a, vec b, vec t, crossing *c)
 {
     bits where[WITHIN_COUNT];
-    vec at_a = cubic_at(f, a), at_b = cubic_at(f, b), t;
-    t = guess_root(f, a, b, at_a, at_b, twice & (a > 0), twice & (b < 1));
-    vec lo = larger(t - BRACKET, a), hi = smaller(t + BRACKET, b);
-    vec at_lo = cubic_at(f, lo), at_hi = cubic_at(f, hi);
-    bits rising = (at_lo < -bound) & (at_hi > bound) & (at_a < 0), falling = (at_lo > bound) & (at_hi < -bound) & (at_a > 0);
+    vec lo = larger(t - BRACKET, a), hi = smaller(t + BRACKET, b), at_lo = cubic_at(f, lo), at_hi = cubic_at(f, hi);
+    bits crosses = ((at_lo < -bound) & (at_hi > bound)) | ((at_lo > bound) & (at_hi < -bound));
     within(kind, blk, t, where);
-    bits sure = (rising | falling) & (where[WITHIN_YES] | where[WITHIN_NO]);
-    bits touch = ask & sure & where[WITHIN_YES];
+    bits sure = crosses & (where[WITHIN_YES] | where[WITHIN_NO]), touch = ask & sure & where[WITHIN_YES];
     c->open |= ask & ~sure;
     c->touch |= touch;
     c->lo = pick(touch, lo, c->lo);
     c->hi = pick(touch, hi, c->hi);
+}
+
+/* The roots in the lanes of `ask`: one before and one after the cut in those of `twice`, else one. */
+LANE_INLINE void cross_all(int kind, const block *b, const vec f[4], vec bound, bits ask, bits twice, vec cut, crossing *c)
+{
+    vec at_cut = cubic_at(f, cut);
+    bits never = ask & ~ask;
+    part p[2] = {{cut, all(1), at_cut, f[3], cut, twice, never, never}, {all(0), cut, f[0], at_cut, cut, never, twice, never}};
+    bool both = mask_of(twice) != 0;
+    if (both) {
+        guess_roots(f, 2, p);
+        cross_over(kind, b, f, bound, twice, all(0), cut, p[1].t, c);
+        ask &= ~(c->open | c->touch);
+    } else {
+        guess_roots(f, 1, p);
+    }
+    if (mask_of(ask))
+        cross_over(kind, b, f, bound, ask, cut, all(1), p[0].t, c);
 }
 
 /* Critical points of f in order; where they are no numbers, comparisons with them fail. */
@@ -175,9 +200,7 @@ LANE_INLINE void meet_half(int kind, const rdli_quad *quad, int half, rdli_answe
     }
     cut = pick(twice, cut, all(0));
     crossing c = {~(once | twice | none), none & 0, all(0), all(0)};
-    if (mask_of(twice))
-        cross_over(kind, &b, f, bound, twice, all(0), cut, twice, &c);
-    cross_over(kind, &b, f, bound, ~(c.open | c.touch | none), cut, all(1), twice, &c);
+    cross_all(kind, &b, f, bound, once | twice, twice, cut, &c);
     unsigned open = mask_of(c.open), touch = mask_of(c.touch);
     for (int i = 0; i < LANE_WIDTH; i++) {
         answers->answer[half + i] = open >> i & 1 ? RDLI_LANE_OPEN : touch >> i & 1 ? RDLI_LANE_TOUCH : RDLI_LANE_FREE;
