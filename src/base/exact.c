@@ -147,6 +147,23 @@ rdli_int rdli_int_sub(rdli_arena *arena, rdli_int a, rdli_int b)
     return rdli_int_add(arena, a, rdli_int_negate(b));
 }
 
+static size_t count_low_zeros(rdli_int a)
+{
+    size_t count = 0;
+    while (a.limb[count] == 0)
+        count++;
+    return count;
+}
+
+static size_t count_zeros(const mp_limb_t *limb, size_t count)
+{
+    size_t zeros = 0;
+    for (size_t i = 0; i < count; i++)
+        zeros += limb[i] == 0;
+    return zeros;
+}
+
+/* Numbers of very different size beside each other are mostly zeros: those limbs are left out. */
 rdli_int rdli_int_mul(rdli_arena *arena, rdli_int a, rdli_int b)
 {
     size_t na = length(a), nb = length(b);
@@ -155,9 +172,22 @@ rdli_int rdli_int_mul(rdli_arena *arena, rdli_int a, rdli_int b)
     mp_limb_t *limb = take(arena, na + nb);
     if (!limb)
         return zero;
-    limb[na] = mpn_mul_1(limb, a.limb, (mp_size_t)na, b.limb[0]);
-    for (size_t i = 1; i < nb; i++)
-        limb[na + i] = mpn_addmul_1(limb + i, a.limb, (mp_size_t)na, b.limb[i]);
+    size_t low_a = count_low_zeros(a), low_b = count_low_zeros(b);
+    const mp_limb_t *x = a.limb + low_a, *y = b.limb + low_b;
+    size_t nx = na - low_a, ny = nb - low_b;
+    if (nx - count_zeros(x, nx) < ny - count_zeros(y, ny)) { /* fewer limbs to go through one by one */
+        const mp_limb_t *other = x;
+        x = y;
+        y = other;
+        size_t n = nx;
+        nx = ny;
+        ny = n;
+    }
+    memset(limb, 0, (low_a + low_b) * sizeof *limb);
+    mp_limb_t *out = limb + low_a + low_b;
+    out[nx] = mpn_mul_1(out, x, (mp_size_t)nx, y[0]);
+    for (size_t i = 1; i < ny; i++)
+        out[nx + i] = y[i] ? mpn_addmul_1(out + i, x, (mp_size_t)nx, y[i]) : 0;
     return trim(arena, limb, na + nb, (a.size < 0) != (b.size < 0));
 }
 
