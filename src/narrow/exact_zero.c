@@ -159,20 +159,6 @@ static bool segment_event(rdli_arena *arena, const rdli_point_segment *couple, i
     return false;
 }
 
-/* The couples of rdli_point_segments as frames of doubles. */
-static void couple_of(const rdli_cubic *s, int which, double w[2][3], double u[2][3])
-{
-    bool triangle = s->kind == RDL_POINT_TRIANGLE;
-    for (int end = 0; end < 2; end++)
-        for (int k = 0; k < 3; k++) {
-            double pw = s->at[end].w[k], pu = s->at[end].u[k], pv = s->at[end].v[k];
-            const double from[2][4] = {{pw, -pw, pw + pv, pu - pw}, {pw, pw, pw - pu, 0}};
-            const double along[2][4] = {{pu, pv, pu, pv}, {pu, pv, pv - pu, 0}};
-            w[end][k] = from[triangle][which];
-            u[end][k] = along[triangle][which];
-        }
-}
-
 static bool first_couple_event(rdli_arena *arena, const rdli_point_segment *couple, double *lo, double *hi, uint8_t *depth)
 {
     for (int which = 0; which < 2; which++) {
@@ -194,9 +180,8 @@ static bool first_planar_event(rdli_arena *arena, const rdli_exact_pair *pair, c
     bool found = false;
     touch->time_lo = touch->time_hi = 1;
     for (int i = 0; i < count; i++) {
-        double lo, hi, w[2][3], u[2][3];
-        couple_of(doubles, i, w, u);
-        enum rdli_inside meets = rdli_planar_event(doubles, (const double (*)[3])w, (const double (*)[3])u, &lo, &hi);
+        double lo, hi;
+        enum rdli_inside meets = rdli_planar_event(doubles, i, &lo, &hi);
         if (meets == RDLI_INSIDE_NO ||
             (meets == RDLI_INSIDE_MAYBE && !first_couple_event(arena, &couples[i], &lo, &hi, &touch->depth)))
             continue;

@@ -47,8 +47,24 @@ static int guess(const double q[3], double roots[2])
     return count;
 }
 
-enum rdli_inside rdli_planar_event(const rdli_cubic *s, const double w[2][3], const double u[2][3], double *lo, double *hi)
+/* The couples of rdli_point_segments (exact_pair.h). */
+static void couple_of(const rdli_cubic *s, int which, double w[2][3], double u[2][3])
 {
+    bool triangle = s->kind == RDL_POINT_TRIANGLE;
+    for (int end = 0; end < 2; end++)
+        for (int k = 0; k < 3; k++) {
+            double pw = s->at[end].w[k], pu = s->at[end].u[k], pv = s->at[end].v[k];
+            const double from[2][4] = {{pw, -pw, pw + pv, pu - pw}, {pw, pw, pw - pu, 0}};
+            const double along[2][4] = {{pu, pv, pu, pv}, {pu, pv, pv - pu, 0}};
+            w[end][k] = from[triangle][which];
+            u[end][k] = along[triangle][which];
+        }
+}
+
+enum rdli_inside rdli_planar_event(const rdli_cubic *s, int couple, double *lo, double *hi)
+{
+    double w[2][3], u[2][3];
+    couple_of(s, couple, w, u);
     /* w and u are sums of at most three rounded vectors of this size: at most 3 size each:
      * twice 24 for their own errors, 162 for products, sums and restriction, more for three products */
     double bound = 512 * unit * s->size * s->size + RDLI_UNDERFLOW, roots[2], free = 0;
@@ -61,8 +77,8 @@ enum rdli_inside rdli_planar_event(const rdli_cubic *s, const double w[2][3], co
         w[1][i] * u[1][j] - w[1][j] * u[1][i]};
     if (sign_on(q, 0, 1, bound))
         return RDLI_INSIDE_NO;
-    double along[3] = {rdli_dot(w[0], u[0]), dot_mixed(w, u), rdli_dot(w[1], u[1])};
-    double beyond[3] = {rdli_dot(u[0], u[0]) - along[0], dot_mixed(u, u) - along[1], rdli_dot(u[1], u[1]) - along[2]};
+    double along[3] = {rdli_dot(w[0], u[0]), dot_mixed((const double (*)[3])w, (const double (*)[3])u), rdli_dot(w[1], u[1])};
+    double beyond[3] = {rdli_dot(u[0], u[0]) - along[0], dot_mixed((const double (*)[3])u, (const double (*)[3])u) - along[1], rdli_dot(u[1], u[1]) - along[2]};
     if (sign_on(along, 0, 1, bound) < 0 || sign_on(beyond, 0, 1, 2 * bound) < 0)
         return RDLI_INSIDE_NO;
     int count = guess(q, roots);

@@ -7,7 +7,8 @@
  * arithmetic. */
 #include "narrow/roots.h"
 
-enum { MOST_SPANS = 24, DEEPEST = 12, MOST_ROOTS = 3 };
+/* Where no coefficient has a certain sign the motion is most likely planar, and exact arithmetic has to look anyway. */
+enum { MOST_SPANS = 24, MOST_FLAT_SPANS = 3, DEEPEST = 12, MOST_ROOTS = 3 };
 
 /* One unit of 2^-52 per rounding holds in every rounding mode. */
 static const double unit = 0x1p-52;
@@ -87,6 +88,10 @@ static void make_cubic(rdli_cubic *s)
     }
     /* 6 roundings in a term of n, 8 more here, 16 in a restriction, whose coefficients are at most 2 size */
     s->bound = 64 * unit * size + RDLI_UNDERFLOW;
+    s->most_spans = MOST_FLAT_SPANS;
+    for (int i = 0; i < 4; i++)
+        if (fabs(s->f[i]) > s->bound)
+            s->most_spans = MOST_SPANS;
 }
 
 /* From one projection in which the normal keeps its sign: first and second must lie between 0 and the normal (EE), or be positive with their sum below it (PT). */
@@ -169,7 +174,7 @@ static bool all_free(rdli_cubic *s, double a, double b, int *depth)
             top--;
             continue;
         }
-        if (s->spans > MOST_SPANS || top + 1 >= DEEPEST)
+        if (s->spans > s->most_spans || top + 1 >= DEEPEST)
             return false;
         ends[++top] = 0.5 * (a + end);
         *depth = top > *depth ? top : *depth;
@@ -254,9 +259,9 @@ rdli_cubic rdli_cubic_of(int kind, const rdli_frame *start, const rdli_frame *en
     return s;
 }
 
-bool rdli_roots_touch(int kind, const rdli_frame *start, const rdli_frame *end, rdl_touch *touch)
+bool rdli_roots_touch(const rdli_cubic *cubic, rdl_touch *touch)
 {
-    rdli_cubic s = rdli_cubic_of(kind, start, end);
+    rdli_cubic s = *cubic;
     double roots[MOST_ROOTS], free = 0;
     int count = guess_roots(s.f, roots), depth = 0;
     *touch = (rdl_touch){.time_lo = 1, .time_hi = 1, .stage = RDL_STAGE_ROOTS, .order = 3};

@@ -12,7 +12,7 @@ typedef struct rdli_quadratic {
 
 /* The pair's polynomials in doubles: n = u x v and f = w . n, with bounds. */
 typedef struct rdli_cubic {
-    int kind, spans;
+    int kind, spans, most_spans;
     rdli_frame at[2];
     rdli_quadratic n[3];
     double f[4], bound;
@@ -26,11 +26,16 @@ enum rdli_inside { RDLI_INSIDE_NO, RDLI_INSIDE_MAYBE, RDLI_INSIDE_YES };
  * certainly inside both, or unknown. */
 enum rdli_inside rdli_cubic_inside(const rdli_cubic *s, double a, double b);
 
-/* For a pair that is coplanar all the time: does the point w come onto the segment u in (0, 1)? YES: [lo, hi] encloses
- * the first such time and [0, lo] is free of such times. n: the pair's normals. */
-enum rdli_inside rdli_planar_event(const rdli_cubic *s, const double w[2][3], const double u[2][3], double *lo, double *hi);
+/* For a pair that is coplanar all the time: does the point of the couple (rdli_point_segments: 3 for PT, 4 for EE) come onto
+ * its segment in (0, 1)? YES: [lo, hi] encloses the first such time and [0, lo] is free of such times. */
+enum rdli_inside rdli_planar_event(const rdli_cubic *s, int couple, double *lo, double *hi);
+
+/* Gap 0, for coordinates that are integers of at most 60 bits in some unit: exact signs in words of 128 bits, for a contact
+ * at the start, planar motion, and a contact at the end with nothing before it. shift: of the frames in s
+ * (rdli_scale_points). False where that does not decide: touch is then untouched. */
+bool rdli_words_touch(const rdli_cubic *s, const rdl_motion *motion, int shift, rdl_touch *touch);
 
 /* For frames of ordinary size (rdli_scale_points). False where doubles cannot decide: touch is then untouched. */
-bool rdli_roots_touch(int kind, const rdli_frame *start, const rdli_frame *end, rdl_touch *touch);
+bool rdli_roots_touch(const rdli_cubic *cubic, rdl_touch *touch);
 
 #endif

@@ -51,13 +51,24 @@ static double sized_gap(const rdli_sized *sized, double gap)
     return sized->shift ? ldexp(gap, sized->shift) : gap;
 }
 
+/* Gap 0 in doubles, and in words. What may be planar, or in contact at an end, is asked in words first: roots are of no use
+ * there. */
+static bool zero_touch(const question *q, int shift, rdl_touch *touch)
+{
+    rdli_cubic s = rdli_cubic_of(q->kind, &q->start, &q->end);
+    bool words_first = fabs(s.f[0]) <= s.bound || fabs(s.f[3]) <= s.bound;
+    if (words_first && rdli_words_touch(&s, q->motion, shift, touch))
+        return true;
+    return rdli_roots_touch(&s, touch);
+}
+
 void rdli_find_open_touch(int kind, const rdl_motion *motion, const rdli_sized *sized, double gap, rdl_touch *touch)
 {
     double own_gap = sized_gap(sized, gap);
     question q = {kind, motion, gap, 2, rdli_frame_of(kind, sized->motion.start), rdli_frame_of(kind, sized->motion.end)};
     if (gap > 0 && isnormal(own_gap) && rdli_series_touch(kind, &q.start, &q.end, own_gap, touch))
         return;
-    if (gap == 0 && rdli_roots_touch(kind, &q.start, &q.end, touch))
+    if (gap == 0 && zero_touch(&q, sized->shift, touch))
         return;
     if (gap > 0) {
         rdl_touch at_zero;

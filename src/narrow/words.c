@@ -1,0 +1,169 @@
+/* narrow/words.c: exact decisions at gap 0 in words of 128 bits, for coordinates that are integers of at most 60 bits in
+ * some unit: what is planar, or touches at the start or the end, by construction (lattices, flat layers, states at rest).
+ *
+ * Differences have 61 bits, components of cross products 123, sums of three of those 125: they are exact. The cubic's
+ * coefficients may have 187, but doubles know them to 2^-46 of that; where doubles show that one is below 2^126 its
+ * residue modulo 2^128 is its value. */
+#include "base/vector.h"
+#include "narrow/exact_pair.h"
+
+__extension__ typedef __int128 wide;
+__extension__ typedef unsigned __int128 residue;
+
+typedef struct words {
+    int kind;
+    int64_t w[2][3], u[2][3], v[2][3];
+} words;
+
+static bool difference(const double a[3], const double b[3], double scale, int64_t d[3])
+{
+    for (int k = 0; k < 3; k++) {
+        double x = a[k] * scale, y = b[k] * scale;
+        if (!(fabs(x) < 0x1p60 && fabs(y) < 0x1p60))
+            return false;
+        d[k] = (int64_t)x - (int64_t)y;
+    }
+    return true;
+}
+
+static bool words_of(int kind, const rdl_motion *motion, int unit, words *p)
+{
+    bool edges = kind == RDL_EDGE_EDGE, fits = unit > -1000 && unit < 1000;
+    double scale = fits ? ldexp(1, -unit) : 1;
+    p->kind = kind;
+    for (int end = 0; end < 2 && fits; end++) {
+        const double (*x)[3] = end ? motion->end : motion->start;
+        fits = difference(x[edges ? 2 : 0], x[edges ? 0 : 1], scale, p->w[end]) &&
+               difference(x[edges ? 1 : 2], x[edges ? 0 : 1], scale, p->u[end]) &&
+               difference(x[3], x[edges ? 2 : 1], scale, p->v[end]);
+    }
+    return fits;
+}
+
+/* Component k of a x b. */
+static wide cross(const int64_t a[3], const int64_t b[3], int k)
+{
+    int i = (k + 1) % 3, j = (k + 2) % 3;
+    return (wide)a[i] * b[j] - (wide)a[j] * b[i];
+}
+
+/* Coefficients of w . (u x v) times 1, 3, 3, 1, modulo 2^128. */
+static void cubic_of(const words *p, wide f[4])
+{
+    residue sum[4] = {0, 0, 0, 0};
+    for (int k = 0; k < 3; k++) {
+        residue n0 = (residue)cross(p->u[0], p->v[0], k), n2 = (residue)cross(p->u[1], p->v[1], k);
+        residue n1 = (residue)cross(p->u[0], p->v[1], k) + (residue)cross(p->u[1], p->v[0], k);
+        residue w0 = (residue)(wide)p->w[0][k], w1 = (residue)(wide)p->w[1][k];
+        sum[0] += w0 * n0;
+        sum[1] += w0 * n1 + w1 * n0;
+        sum[2] += w0 * n2 + w1 * n1;
+        sum[3] += w1 * n2;
+    }
+    for (int i = 0; i < 4; i++)
+        f[i] = (wide)sum[i];
+}
+
+static int sign_of(wide x)
+{
+    return (x > 0) - (x < 0);
+}
+
+/* Signs of the cubic's coefficients; false where they are not known. */
+static bool cubic_signs(const words *p, const rdli_cubic *s, int scale, int sign[4])
+{
+    wide f[4];
+    cubic_of(p, f);
+    for (int i = 0; i < 4; i++) {
+        sign[i] = s->f[i] > s->bound ? 1 : s->f[i] < -s->bound ? -1 : 0;
+        if (sign[i])
+            continue;
+        if (!(ldexp(3 * (fabs(s->f[i]) + s->bound), scale) < 0x1p126))
+            return false;
+        sign[i] = sign_of(f[i]);
+    }
+    return true;
+}
+
+/* The pair is coplanar at the end `end` of the step. MAYBE where its normal vanishes. */
+static enum rdli_inside inside_at(const words *p, int end)
+{
+    for (int k = 0; k < 3; k++) {
+        wide n = cross(p->u[end], p->v[end], k), first = cross(p->w[end], p->v[end], k);
+        wide second = cross(p->w[end], p->u[end], k);
+        if (n == 0)
+            continue;
+        if (n < 0) {
+            n = -n;
+            first = -first;
+            second = -second;
+        }
+        bool in = p->kind == RDL_POINT_TRIANGLE ? first >= 0 && second <= 0 && first - second <= n
+                                                : first >= 0 && second >= 0 && first <= n && second <= n;
+        return in ? RDLI_INSIDE_YES : RDLI_INSIDE_NO;
+    }
+    return RDLI_INSIDE_MAYBE;
+}
+
+/* The first event of a planar motion that is free at the start; false where doubles cannot tell. */
+static bool planar_touch(const rdli_cubic *s, rdl_touch *touch)
+{
+    rdl_touch first = {.time_lo = 1, .time_hi = 1, .stage = RDL_STAGE_EXACT, .order = 3};
+    for (int couple = 0; couple < (s->kind == RDL_POINT_TRIANGLE ? 3 : 4); couple++) {
+        double lo, hi;
+        enum rdli_inside meets = rdli_planar_event(s, couple, &lo, &hi);
+        if (meets == RDLI_INSIDE_MAYBE)
+            return false;
+        if (meets == RDLI_INSIDE_NO)
+            continue;
+        first.touches = 1;
+        first.time_lo = lo < first.time_lo ? lo : first.time_lo;
+        first.time_hi = hi < first.time_hi ? hi : first.time_hi;
+    }
+    *touch = first;
+    return true;
+}
+
+static bool is_planar(const int sign[4])
+{
+    return !(sign[0] || sign[1] || sign[2] || sign[3]);
+}
+
+/* No root inside the step: all signs agree, apart from zeros. */
+static bool has_no_root(const int sign[4])
+{
+    bool plus = false, minus = false;
+    for (int i = 0; i < 4; i++) {
+        plus = plus || sign[i] > 0;
+        minus = minus || sign[i] < 0;
+    }
+    return plus != minus;
+}
+
+bool rdli_words_touch(const rdli_cubic *s, const rdl_motion *motion, int shift, rdl_touch *touch)
+{
+    words p;
+    int sign[4], unit = rdli_common_unit(motion, 0);
+    if (!words_of(s->kind, motion, unit, &p) || !cubic_signs(&p, s, -3 * (unit + shift), sign))
+        return false;
+    enum rdli_inside at_start = sign[0] == 0 ? inside_at(&p, 0) : RDLI_INSIDE_NO;
+    if (at_start == RDLI_INSIDE_MAYBE)
+        return false;
+    if (at_start == RDLI_INSIDE_YES) {
+        *touch = (rdl_touch){.touches = 1, .stage = RDL_STAGE_ENDS, .order = 3};
+        return true;
+    }
+    enum rdli_inside at_end = sign[3] == 0 ? inside_at(&p, 1) : RDLI_INSIDE_NO;
+    if (at_end == RDLI_INSIDE_MAYBE)
+        return false;
+    if (is_planar(sign)) {
+        if (!planar_touch(s, touch))
+            return false;
+    } else if (has_no_root(sign)) {
+        *touch = (rdl_touch){.time_lo = 1, .time_hi = 1, .stage = RDL_STAGE_EXACT, .order = 3};
+    } else {
+        return false;
+    }
+    touch->touches = touch->touches || at_end == RDLI_INSIDE_YES;
+    return true;
+}
