@@ -8,7 +8,8 @@
 typedef struct motion_family {
     const char *name;
     void (*make)(random_source *source, int kind, rdl_motion *motion);
-    int percent;  /* how many members a test takes, of its usual count: less where exact arithmetic is slow */
+    int percent;   /* how many members a test takes, of its usual count: less where exact arithmetic is slow */
+    int gap_times; /* at a gap > 0, that many times as many: more where the exact oracle is quick */
 } motion_family;
 
 extern const motion_family motion_families[];

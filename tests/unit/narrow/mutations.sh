@@ -56,7 +56,14 @@ if [ "${2:-}" != quick ]; then
 fi
 mutate "no rounding bound of the cubic" src/narrow/roots.c 's/s->bound = 64 \* unit \* size/s->bound = 0 * size/'
 mutate "no rounding bound of the parameters" src/narrow/roots.c 's/q->bound = 16 \* unit \* largest/q->bound = 0 * largest/'
-mutate "no rounding bound in the screen" src/narrow/screen_kernel.h 's/vec bound = size \* (64 \* 0x1p-52)/vec bound = size * 0/'
+mutate "no rounding bound of the cubic in the lanes" src/narrow/screen_kernel.h 's/\*bound = size \* (64 \* UNIT)/*bound = size * 0/'
+mutate "no margin of the inside test in the lanes" src/narrow/meet_kernel.h 's/double loss = 8.01 \* BRACKET + 0x1p-44/double loss = 0/'
+mutate "no rounding of the frames in the lanes" src/narrow/screen_kernel.h 's/b.pad = 0x1p-47 \* size/b.pad = -0x1p-39 * size/'
+mutate "a turning direction judged by its ends" src/narrow/approach_kernel.h \
+    's/smaller(smaller(first, last), 0.5 \* middle)/smaller(first, last)/'
+mutate "a second root forgotten in the lanes" src/narrow/meet_kernel.h 's/        ask &= ~(c->open | c->touch);/        ask \&= ~(c->open | twice);/'
+mutate "contact at the end forgotten in words" src/narrow/words.c 's/touch->touches || at_end == RDLI_INSIDE_YES/touch->touches/'
+mutate "residues believed without a bound" src/narrow/words.c 's/scale) < 0x1p126/scale) < 0x1p1000/; s/scaled < 0x1p126/scaled < 0x1p1000/'
 mutate "one couple of edges dropped" src/narrow/exact_pair.c 's/    return 4;/    return 3;/'
 mutate "one couple of edges dropped in doubles" src/narrow/span.c \
     's/inner_segment_keeps(&side, &l->v, &l->difference\[2\], level, order)/true/'
