@@ -343,22 +343,31 @@ LANE_INLINE vec least_along(int kind, const vec3 x[4], const vec3 *d)
     return low;
 }
 
-/* The enclosure of rdli_closest_points at one end; returns where it is tight. */
-LANE_INLINE bits enclose(int kind, const vec3 x[4], const frames *f, const vec3 *normal, vec length, vec *lo, vec *hi)
+/* The least projection of one end's control points. */
+LANE_INLINE vec lowest_end(int kind, const reach *r, int end)
 {
-    vec size = size_sum(&f->w) + size_sum(&f->u) + size_sum(&f->v);
+    vec low = smaller(smaller(r->at[end][0], r->at[end][1]), r->at[end][2]);
+    return kind == RDL_POINT_TRIANGLE ? low : smaller(low, r->at[end][3]);
+}
+
+/* The distance at one end, in the lanes of `ask`; returns where it is tight. hi is that of rdli_closest_points. lo comes from
+ * the projections that are known anyway, and from the vertices as there where that is too little. */
+LANE_INLINE bits enclose(int kind, const block *b, const vec3 x[4], const ends *e, int end, bits ask, vec *lo, vec *hi)
+{
+    const frames *f = &b->at[end];
+    vec size = size_sum(&f->w) + size_sum(&f->u) + size_sum(&f->v), length = e->length[end];
     *hi = length * (1 + 8 * UNIT) + 8 * UNIT * size + RDLI_UNDERFLOW;
-    *lo = least_along(kind, x, normal) * (1 - 8 * UNIT);
-    bits tight = (*lo > 0) & (*hi - *lo <= RDLI_TIGHT * *hi);
-    if (mask_of(~tight)) { /* where the difference of the closest points cancels: the normal of the features */
-        vec3 n;
+    *lo = lowest_end(kind, &e->reach[end], end) / length * (1 - 8 * UNIT) - 2 * b->pad;
+    bits tight = (*lo > 0) & (*hi - *lo <= RDLI_TIGHT * *hi), loose = ask & ~tight;
+    if (mask_of(loose)) { /* where the difference of the closest points cancels: the normal of the features */
+        vec3 n, back;
         for (int k = 0; k < 3; k++)
             n.c[k] = cross(&f->u, &f->v, k);
         n = unit_of(&n, root(dot(&n, &n)));
-        vec3 back = negative(&n);
-        n = choose(dot(&n, normal) < 0, &back, &n);
-        vec other = least_along(kind, x, &n) * (1 - 8 * UNIT);
-        *lo = pick(~tight & (other > *lo), other, *lo);
+        back = negative(&n);
+        n = choose(dot(&n, &e->d[end]) < 0, &back, &n);
+        vec one = least_along(kind, x, &e->d[end]), other = least_along(kind, x, &n);
+        *lo = pick(loose, larger(one, other) * (1 - 8 * UNIT), *lo);
         tight = (*lo > 0) & (*hi - *lo <= RDLI_TIGHT * *hi);
     }
     return tight;
@@ -378,7 +387,7 @@ LANE_INLINE void outlook_half(int kind, const rdli_quad *quad, int half, double 
     if (!mask_of(~quiet))
         return;
     for (int end = 0; end < 2; end++) {
-        tight[end] = enclose(kind, p.x[end], &b.at[end], &e.d[end], e.length[end], &lo[end], &hi[end]);
+        tight[end] = enclose(kind, &b, p.x[end], &e, end, ~quiet, &lo[end], &hi[end]);
         store(lo[end], o->lo[end] + half);
         store(hi[end], o->hi[end] + half);
         tell(tight[end], half, o->tight[end]);
