@@ -69,12 +69,11 @@ LANE_INLINE void separated_times(int kind, const reach *r, vec t, vec *from, vec
 }
 
 /* [0, free] is certified free, and [back, 1] while no touch is known (hi > 1); else [back, lo], where [lo, hi] is a
- * bracket, or nothing (back > 1) as long as the touch at hi is not known to be near a crossing. [isle, land] is a certified
- * part between free and all that; none where isle > 1. left and right: times with the unit directions of their closest
+ * bracket, or nothing (back > 1) as long as the touch at hi is not known to be near a crossing. left and right: times with the unit directions of their closest
  * points, at which the distance is above the gap; left <= free, and right in [back, lo], or none where it is > 1. time:
  * where to look next. last, length, slope: where was looked last, the distance there, and its slope. */
 typedef struct state {
-    vec free, back, lo, hi, isle, land, time, left, right;
+    vec free, back, lo, hi, time, left, right;
     vec3 left_d, right_d;
     vec last, length, slope;
 } state;
@@ -126,7 +125,7 @@ LANE_INLINE void aim(vec slope, vec length, vec gap, vec t, bits first, state *s
     s->length = length;
     s->slope = slope;
     bits loose = (s->hi <= 1) & (s->back > 1), close = loose & (absolute(reached - s->hi) < BEHIND);
-    vec end = smaller(smaller(s->back, s->hi), smaller(s->isle, all(1)));
+    vec end = smaller(smaller(s->back, s->hi), all(1));
     /* what is certified may end already within half a bracket of the crossing: then just behind it */
     vec next = pick(reached - 0.5 * BEHIND > s->free, reached - 0.5 * BEHIND, reached + 0.5 * BEHIND);
     next = pick(close, s->hi - BEHIND, next);
@@ -172,7 +171,7 @@ LANE_INLINE bits begin(int kind, const block *b, vec gap, ends *e, state *s, bit
     reach_gap(b, gap, e->length[0], &e->reach[0]);
     separated_times(kind, &e->reach[0], all(0), &from, &to);
     to = pick(ends_keep(b, e, gap), all(1), to);
-    *s = (state){larger(to, all(0)), none, none, none, none, none, all(0), all(0), none, e->d[0], e->d[1],
+    *s = (state){larger(to, all(0)), none, none, none, all(0), all(0), none, e->d[0], e->d[1],
         all(0), all(0), all(0)};
     bits ask = ~start & (s->free < 1); /* the others must not depend on whether a neighbour asks */
     if (mask_of(ask)) {
@@ -199,7 +198,6 @@ LANE_INLINE void touch_here(state *s, bits near, vec at, vec from, const vec3 *d
     s->back = pick(near, pick(at <= s->free, at, from), s->back);
     s->lo = pick(near, at, s->lo);
     s->hi = pick(near, s->time, s->hi);
-    s->isle = pick(near, all(2), s->isle);
     s->right = pick(near, pick(sharp, at, all(2)), s->right);
     s->right_d = choose(sharp, d, &s->right_d);
 }
@@ -211,7 +209,6 @@ LANE_INLINE void free_here(state *s, bits apart, vec from, vec to, const vec3 *d
     bits begins = apart & (s->back > 1) & (s->hi <= 1) & (s->hi - s->time <= 1.25 * BEHIND);
     begins |= apart & soon;
     s->hi = pick(apart & soon, touch, s->hi);
-    s->isle = pick(begins, all(2), s->isle);
     s->lo = pick(begins, s->time, s->lo);
     bits forward = apart & (from <= s->free), backward = begins | (apart & (to >= s->back));
     s->free = pick(forward, larger(pick(begins, s->time, to), s->free), s->free);
@@ -220,11 +217,6 @@ LANE_INLINE void free_here(state *s, bits apart, vec from, vec to, const vec3 *d
     s->right_d = choose(backward, d, &s->right_d);
     s->left = pick(forward & ~backward, s->time, s->left);
     s->left_d = choose(forward & ~backward, d, &s->left_d);
-    bits between = apart & ~(forward | backward);
-    s->land = pick(between, pick(to >= s->isle, larger(to, s->land), to), s->land);
-    s->isle = pick(between, smaller(from, s->isle), s->isle);
-    s->free = pick(s->free >= s->isle, larger(s->free, s->land), s->free);
-    s->isle = pick(s->free >= s->isle, all(2), s->isle);
 }
 
 /* Looks at s->time. */

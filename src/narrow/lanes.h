@@ -24,7 +24,7 @@ typedef struct rdli_answers {
 
 /* How far the lanes have come at a gap > 0; see approach_kernel.h. done: certified, touching where HI <= 1, with the
  * bracket [LO, HI]. */
-enum { RDLI_STATE = 18, RDLI_STATE_LO = 2, RDLI_STATE_HI = 3 };
+enum { RDLI_STATE = 16, RDLI_STATE_LO = 2, RDLI_STATE_HI = 3 };
 typedef struct rdli_progress {
     double *state[RDLI_LANES];  /* RDLI_STATE numbers of each lane, where the caller keeps them */
     uint8_t start[RDLI_LANES];  /* at or below the gap at t = 0: nothing else counts */
