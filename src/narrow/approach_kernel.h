@@ -161,6 +161,18 @@ LANE_INLINE bits ends_keep(const block *b, const ends *e, vec gap)
            (e->turning > gap);
 }
 
+/* Features that end on the other side of each other: Hermite's cubic through both ends, with the distance at the end
+ * negative, is a better first guess than Newton's step from the start. */
+LANE_INLINE void aim_through(int kind, const block *b, vec gap, const ends *e, state *s)
+{
+    vec3 velocity = velocity_of(kind, b, &e->n[1]);
+    vec first = s->slope, last = -dot(&velocity, &e->d[1]), step = -(e->length[1] + e->length[0]);
+    vec x = (gap - e->length[0]) / step, y = 1 - x;
+    vec time = x * x * (3 - 2 * x) + step * x * y * (y / first - x / last) - 0.5 * BEHIND;
+    bits through = (dot(&e->d[0], &e->d[1]) < 0) & (first < 0) & (last < 0) & (time > s->free) & (time < s->back);
+    s->time = pick(through, time, s->time);
+}
+
 /* Returns the lanes that are at or below the gap at the start; *unsure: those that may be, or are so by very little. */
 LANE_INLINE bits begin(int kind, const block *b, vec gap, ends *e, state *s, bits *unsure)
 {
@@ -181,6 +193,7 @@ LANE_INLINE bits begin(int kind, const block *b, vec gap, ends *e, state *s, bit
         s->right = pick(s->back <= 1, all(1), s->right);
         vec3 velocity = velocity_of(kind, b, &e->n[0]);
         aim(dot(&velocity, &e->d[0]), e->length[0], gap, all(0), ask | ~ask, s);
+        aim_through(kind, b, gap, e, s);
     }
     return start;
 }
