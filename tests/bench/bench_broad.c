@@ -1,6 +1,6 @@
 /* tests/bench/bench_broad.c: rdl_tree against general-purpose libraries, and the engine's pair lists. Prints Markdown
- * tables. Arguments: "tree" or "lists" for one of the two alone, then numbers of elements (default 10000 and 100000). Fails when two engines disagree on the number of pairs, or
- * brute force (up to 20 thousand elements) on the pairs themselves.
+ * tables. Arguments: "tree" or "lists" for one of the two alone, then numbers of elements (default 10000 and 100000).
+ * Fails when two engines disagree on the number of pairs, or brute force (up to 20 thousand elements) on the pairs themselves.
  *
  * Times are the least of several steps. What is compared with one thread is processor time, so that other processes disturb it
  * little; two threads are compared with one by wall time. All engines only count what they find; rdl_tree with one thread

@@ -47,6 +47,21 @@ static size_t check_near(const scene *s, int kind, const rdli_pair *all, size_t 
     return touching;
 }
 
+static void transform(scene *s, double scale, double offset, double common)
+{
+    for (uint32_t v = 0; v < s->mesh.vertex_count; v++) {
+        for (int k = 0; k < 3; k++) {
+            s->start[v][k] = (s->start[v][k] + offset) * scale;
+            s->end[v][k] = (s->end[v][k] + offset + common) * scale;
+        }
+        s->vertex_half[v] *= scale;
+    }
+    for (uint32_t e = 0; e < s->mesh.edge_count; e++)
+        s->edge_half[e] *= scale;
+    for (uint32_t t = 0; t < s->mesh.triangle_count; t++)
+        s->triangle_half[t] *= scale;
+}
+
 /* The certificate: nothing that touches is lost, at any size, offset and speed; most that does not touch is left out; and
  * portable code, vector code and any number of threads agree. */
 START_TEST(test_near_pairs)
@@ -59,17 +74,7 @@ START_TEST(test_near_pairs)
     for (size_t c = 0; c < sizeof cases / sizeof *cases; c++) {
         scene *s = make_scene(c);
         place(s, c, cases[c].motion);
-        for (uint32_t v = 0; v < s->mesh.vertex_count; v++) {
-            for (int k = 0; k < 3; k++) {
-                s->start[v][k] = (s->start[v][k] + cases[c].offset) * cases[c].scale;
-                s->end[v][k] = (s->end[v][k] + cases[c].offset + cases[c].common) * cases[c].scale;
-            }
-            s->vertex_half[v] *= cases[c].scale;
-        }
-        for (uint32_t e = 0; e < s->mesh.edge_count; e++)
-            s->edge_half[e] *= cases[c].scale;
-        for (uint32_t t = 0; t < s->mesh.triangle_count; t++)
-            s->triangle_half[t] *= cases[c].scale;
+        transform(s, cases[c].scale, cases[c].offset, cases[c].common);
         rdli_motion motion = {(const double(*)[3])s->start, (const double(*)[3])s->end, NULL};
         size_t points = 0, edges = 0;
         rdli_pair *kept[2] = {NULL, NULL}; /* what the first round found */
