@@ -7,8 +7,8 @@
 
 typedef struct rdli_kernels {
     /* Refits level 0 for packs [first, last), or those of them that have a flag in stale (unless that is NULL), writes their
-     * boxes into level 1 (or the crown), and returns the sum of the extents that the packs add to the mean of their elements. first is a multiple of 8; so is last, unless it is the
-     * end of the level. */
+     * boxes into level 1 (or the crown), and returns the sum of the extents that the packs add to the mean of their
+     * elements. first is a multiple of 8; so is last, unless it is the end of the level. */
     double (*refit_elements)(rdli_tree *tree, const rdl_box *boxes, const uint8_t *stale, uint32_t first, uint32_t last);
     /* Writes the boxes of the packs [first, last) of `level` > 0 into the level above. */
     void (*refit_inner)(rdli_tree *tree, unsigned level, uint32_t first, uint32_t last);
