@@ -29,6 +29,15 @@ static int sign_on(const double q[3], double a, double b, double bound)
     return sign * c[1] > bound && sign * c[2] > bound ? sign : 0;
 }
 
+/* Certainly no root in [a, b]; where the coefficients do not show it, those on both sides of the extreme value may. */
+static bool keeps_sign(const double q[3], double a, double b, double bound)
+{
+    if (sign_on(q, a, b, bound))
+        return true;
+    double cut = (q[0] - q[1]) / (q[0] - 2 * q[1] + q[2]);
+    return cut > a && cut < b && sign_on(q, a, cut, bound) && sign_on(q, cut, b, bound);
+}
+
 /* Roots of the quadratic in (0, 1), guessed, from the left. */
 static int guess(const double q[3], double roots[2])
 {
@@ -86,8 +95,8 @@ enum rdli_inside rdli_planar_event(const rdli_cubic *s, int couple, double *lo, 
         double c[3];
         *lo = roots[m] - half_width > free ? roots[m] - half_width : free;
         *hi = roots[m] + half_width < 1 ? roots[m] + half_width : 1;
-        if (*lo > free && !sign_on(q, free, *lo, bound))
-            return RDLI_INSIDE_MAYBE;
+        if (*lo > free && !keeps_sign(q, free, *lo, bound))
+            break;
         int before = sign_on(along, *lo, *hi, bound), after = sign_on(beyond, *lo, *hi, 2 * bound);
         free = *hi;
         if (before < 0 || after < 0)
@@ -97,5 +106,6 @@ enum rdli_inside rdli_planar_event(const rdli_cubic *s, int couple, double *lo, 
         bool faces = sign_on(s->n[k].c, *lo, *hi, s->n[k].bound) != 0;
         return before > 0 && after > 0 && opposite && faces ? RDLI_INSIDE_YES : RDLI_INSIDE_MAYBE;
     }
-    return free < 1 && !sign_on(q, free, 1, bound) ? RDLI_INSIDE_MAYBE : RDLI_INSIDE_NO;
+    *hi = -1;
+    return free < 1 && !keeps_sign(q, free, 1, bound) ? RDLI_INSIDE_MAYBE : RDLI_INSIDE_NO;
 }

@@ -27,10 +27,11 @@ enum rdli_inside { RDLI_INSIDE_NO, RDLI_INSIDE_MAYBE, RDLI_INSIDE_YES };
 enum rdli_inside rdli_cubic_inside(const rdli_cubic *s, double a, double b);
 
 /* For a pair that is coplanar all the time: does the point of the couple (rdli_point_segments: 3 for PT, 4 for EE) come onto
- * its segment in (0, 1)? YES: [lo, hi] encloses the first such time and [0, lo] is free of such times. */
+ * its segment in (0, 1)? YES: [lo, hi] encloses the first such time and [0, lo] is free of such times. MAYBE: [0, lo] is free
+ * of such times where hi >= 0. */
 enum rdli_inside rdli_planar_event(const rdli_cubic *s, int couple, double *lo, double *hi);
 
-/* Gap 0, for coordinates that are integers of at most 60 bits in some unit: exact signs in words of 128 bits, for a contact
+/* Gap 0, for coordinates that are integers of at most 59 bits in some unit: exact signs in words of 128 bits, for a contact
  * at the start, planar motion, and a contact at the end with nothing before it. shift: of the frames in s
  * (rdli_scale_points). False where that does not decide: touch is then untouched. */
 bool rdli_words_touch(const rdli_cubic *s, const rdl_motion *motion, int shift, rdl_touch *touch);

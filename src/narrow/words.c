@@ -1,8 +1,8 @@
-/* narrow/words.c: exact decisions at gap 0 in words of 128 bits, for coordinates that are integers of at most 60 bits in
+/* narrow/words.c: exact decisions at gap 0 in words of 128 bits, for coordinates that are integers of at most 59 bits in
  * some unit: what is planar, or touches at the start or the end, by construction (lattices, flat layers, states at rest).
  *
- * Differences have 61 bits, components of cross products 123, sums of three of those 125: they are exact. The cubic's
- * coefficients may have 187, but doubles know them to 2^-46 of that; where doubles show that one is below 2^126 its
+ * Differences have 60 bits, components of cross products 121, sums of three of those 123: they are exact. The cubic's
+ * coefficients may have 184, but doubles know them to 2^-46 of that; where doubles show that one is below 2^126 its
  * residue modulo 2^128 is its value. */
 #include "base/vector.h"
 #include "narrow/exact_pair.h"
@@ -19,7 +19,7 @@ static bool difference(const double a[3], const double b[3], double scale, int64
 {
     for (int k = 0; k < 3; k++) {
         double x = a[k] * scale, y = b[k] * scale;
-        if (!(fabs(x) < 0x1p60 && fabs(y) < 0x1p60))
+        if (!(fabs(x) < 0x1p59 && fabs(y) < 0x1p59))
             return false;
         d[k] = (int64_t)x - (int64_t)y;
     }
@@ -105,14 +105,46 @@ static enum rdli_inside inside_at(const words *p, int end)
     return RDLI_INSIDE_MAYBE;
 }
 
-/* The first event of a planar motion that is free at the start; false where doubles cannot tell. */
-static bool planar_touch(const rdli_cubic *s, rdl_touch *touch)
+/* Whether a vector that moves from a to b vanishes at one time, certainly in [lo, hi]. Its components then have the same
+ * ratios of a to a - b. */
+static bool vanishes(const int64_t a[3], const int64_t b[3], double lo, double hi)
+{
+    int k = 0;
+    for (int i = 1; i < 3; i++)
+        k = a[k] == b[k] ? i : k;
+    if (a[k] == b[k])
+        return false;
+    for (int i = 0; i < 3; i++)
+        if ((wide)a[i] * (a[k] - b[k]) != (wide)a[k] * (a[i] - b[i]))
+            return false;
+    double time = (double)a[k] / (double)(a[k] - b[k]), rounding = 0x1p-48;
+    return time > lo + rounding && time < hi - rounding;
+}
+
+/* Whether the point of a couple (rdli_point_segments) comes exactly upon an end of its segment in [lo, hi]. */
+static bool meets_an_end(const words *p, int couple, double lo, double hi)
+{
+    int64_t near[2][3], far[2][3];
+    bool triangle = p->kind == RDL_POINT_TRIANGLE;
+    for (int end = 0; end < 2; end++)
+        for (int k = 0; k < 3; k++) {
+            int64_t w = p->w[end][k], u = p->u[end][k], v = p->v[end][k];
+            const int64_t from[2][4] = {{w, -w, w + v, u - w}, {w, w, w - u, 0}};
+            const int64_t along[2][4] = {{u, v, u, v}, {u, v, v - u, 0}};
+            near[end][k] = from[triangle][couple];
+            far[end][k] = near[end][k] - along[triangle][couple];
+        }
+    return vanishes(near[0], near[1], lo, hi) || vanishes(far[0], far[1], lo, hi);
+}
+
+/* The first event of a planar motion that is free at the start; false where neither doubles nor words can tell. */
+static bool planar_touch(const rdli_cubic *s, const words *p, rdl_touch *touch)
 {
     rdl_touch first = {.time_lo = 1, .time_hi = 1, .stage = RDL_STAGE_EXACT, .order = 3};
     for (int couple = 0; couple < (s->kind == RDL_POINT_TRIANGLE ? 3 : 4); couple++) {
         double lo, hi;
         enum rdli_inside meets = rdli_planar_event(s, couple, &lo, &hi);
-        if (meets == RDLI_INSIDE_MAYBE)
+        if (meets == RDLI_INSIDE_MAYBE && !(hi >= 0 && meets_an_end(p, couple, lo, hi)))
             return false;
         if (meets == RDLI_INSIDE_NO)
             continue;
@@ -157,7 +189,7 @@ bool rdli_words_touch(const rdli_cubic *s, const rdl_motion *motion, int shift, 
     if (at_end == RDLI_INSIDE_MAYBE)
         return false;
     if (is_planar(sign)) {
-        if (!planar_touch(s, touch))
+        if (!planar_touch(s, &p, touch))
             return false;
     } else if (has_no_root(sign)) {
         *touch = (rdl_touch){.time_lo = 1, .time_hi = 1, .stage = RDL_STAGE_EXACT, .order = 3};
