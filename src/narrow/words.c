@@ -85,8 +85,43 @@ static bool cubic_signs(const words *p, const rdli_cubic *s, int scale, int sign
     return true;
 }
 
-/* The pair is coplanar at the end `end` of the step. MAYBE where its normal vanishes. */
-static enum rdli_inside inside_at(const words *p, int end)
+/* A couple of rdli_point_segments at one end: from the segment's first vertex to the point, and along the segment. */
+static void couple_at(const words *p, int couple, int end, int64_t from[3], int64_t along[3])
+{
+    bool triangle = p->kind == RDL_POINT_TRIANGLE;
+    for (int k = 0; k < 3; k++) {
+        int64_t w = p->w[end][k], u = p->u[end][k], v = p->v[end][k];
+        const int64_t points[2][4] = {{w, -w, w + v, u - w}, {w, w, w - u, 0}};
+        const int64_t segments[2][4] = {{u, v, u, v}, {u, v, v - u, 0}};
+        from[k] = points[triangle][couple];
+        along[k] = segments[triangle][couple];
+    }
+}
+
+static int couples_of(int kind)
+{
+    return kind == RDL_POINT_TRIANGLE ? 3 : 4;
+}
+
+static wide dot(const int64_t a[3], const int64_t b[3])
+{
+    return (wide)a[0] * b[0] + (wide)a[1] * b[1] + (wide)a[2] * b[2];
+}
+
+/* The point lies on the closed segment. */
+static bool on_segment(const words *p, int couple, int end)
+{
+    int64_t w[3], u[3];
+    couple_at(p, couple, end, w, u);
+    for (int k = 0; k < 3; k++)
+        if (cross(w, u, k) != 0)
+            return false;
+    wide along = dot(w, u), square = dot(u, u);
+    return square == 0 ? dot(w, w) == 0 : along >= 0 && along <= square;
+}
+
+/* The pair is coplanar at the end `end` of the step: whether it meets there. Without a normal it can only do so at a border. */
+static bool meets_at(const words *p, int end)
 {
     for (int k = 0; k < 3; k++) {
         wide n = cross(p->u[end], p->v[end], k), first = cross(p->w[end], p->v[end], k);
@@ -98,11 +133,13 @@ static enum rdli_inside inside_at(const words *p, int end)
             first = -first;
             second = -second;
         }
-        bool in = p->kind == RDL_POINT_TRIANGLE ? first >= 0 && second <= 0 && first - second <= n
-                                                : first >= 0 && second >= 0 && first <= n && second <= n;
-        return in ? RDLI_INSIDE_YES : RDLI_INSIDE_NO;
+        return p->kind == RDL_POINT_TRIANGLE ? first >= 0 && second <= 0 && first - second <= n
+                                             : first >= 0 && second >= 0 && first <= n && second <= n;
     }
-    return RDLI_INSIDE_MAYBE;
+    for (int couple = 0; couple < couples_of(p->kind); couple++)
+        if (on_segment(p, couple, end))
+            return true;
+    return false;
 }
 
 /* Whether a vector that moves from a to b vanishes at one time, certainly in [lo, hi]. Its components then have the same
@@ -121,19 +158,15 @@ static bool vanishes(const int64_t a[3], const int64_t b[3], double lo, double h
     return time > lo + rounding && time < hi - rounding;
 }
 
-/* Whether the point of a couple (rdli_point_segments) comes exactly upon an end of its segment in [lo, hi]. */
+/* Whether the point of a couple comes exactly upon an end of its segment in [lo, hi]. */
 static bool meets_an_end(const words *p, int couple, double lo, double hi)
 {
-    int64_t near[2][3], far[2][3];
-    bool triangle = p->kind == RDL_POINT_TRIANGLE;
-    for (int end = 0; end < 2; end++)
-        for (int k = 0; k < 3; k++) {
-            int64_t w = p->w[end][k], u = p->u[end][k], v = p->v[end][k];
-            const int64_t from[2][4] = {{w, -w, w + v, u - w}, {w, w, w - u, 0}};
-            const int64_t along[2][4] = {{u, v, u, v}, {u, v, v - u, 0}};
-            near[end][k] = from[triangle][couple];
-            far[end][k] = near[end][k] - along[triangle][couple];
-        }
+    int64_t near[2][3], far[2][3], along[3];
+    for (int end = 0; end < 2; end++) {
+        couple_at(p, couple, end, near[end], along);
+        for (int k = 0; k < 3; k++)
+            far[end][k] = near[end][k] - along[k];
+    }
     return vanishes(near[0], near[1], lo, hi) || vanishes(far[0], far[1], lo, hi);
 }
 
@@ -141,7 +174,7 @@ static bool meets_an_end(const words *p, int couple, double lo, double hi)
 static bool planar_touch(const rdli_cubic *s, const words *p, rdl_touch *touch)
 {
     rdl_touch first = {.time_lo = 1, .time_hi = 1, .stage = RDL_STAGE_EXACT, .order = 3};
-    for (int couple = 0; couple < (s->kind == RDL_POINT_TRIANGLE ? 3 : 4); couple++) {
+    for (int couple = 0; couple < couples_of(s->kind); couple++) {
         double lo, hi;
         enum rdli_inside meets = rdli_planar_event(s, couple, &lo, &hi);
         if (meets == RDLI_INSIDE_MAYBE && !(hi >= 0 && meets_an_end(p, couple, lo, hi)))
@@ -178,16 +211,10 @@ bool rdli_words_touch(const rdli_cubic *s, const rdl_motion *motion, int shift, 
     int sign[4], unit = rdli_common_unit(motion, 0);
     if (!words_of(s->kind, motion, unit, &p) || !cubic_signs(&p, s, -3 * (unit + shift), sign))
         return false;
-    enum rdli_inside at_start = sign[0] == 0 ? inside_at(&p, 0) : RDLI_INSIDE_NO;
-    if (at_start == RDLI_INSIDE_MAYBE)
-        return false;
-    if (at_start == RDLI_INSIDE_YES) {
+    if (sign[0] == 0 && meets_at(&p, 0)) {
         *touch = (rdl_touch){.touches = 1, .stage = RDL_STAGE_ENDS, .order = 3};
         return true;
     }
-    enum rdli_inside at_end = sign[3] == 0 ? inside_at(&p, 1) : RDLI_INSIDE_NO;
-    if (at_end == RDLI_INSIDE_MAYBE)
-        return false;
     if (is_planar(sign)) {
         if (!planar_touch(s, &p, touch))
             return false;
@@ -196,6 +223,6 @@ bool rdli_words_touch(const rdli_cubic *s, const rdl_motion *motion, int shift, 
     } else {
         return false;
     }
-    touch->touches = touch->touches || at_end == RDLI_INSIDE_YES;
+    touch->touches = touch->touches || (sign[3] == 0 && meets_at(&p, 1));
     return true;
 }

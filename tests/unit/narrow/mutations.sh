@@ -62,8 +62,8 @@ mutate "no rounding of the frames in the lanes" src/narrow/screen_kernel.h 's/b.
 mutate "a turning direction judged by its ends" src/narrow/approach_kernel.h \
     's/smaller(smaller(first, last), 0.5 \* middle)/smaller(first, last)/'
 mutate "a second root forgotten in the lanes" src/narrow/meet_kernel.h 's/        ask &= ~(c->open | c->touch);/        ask \&= ~(c->open | twice);/'
-mutate "contact at the end forgotten in words" src/narrow/words.c 's/touch->touches || at_end == RDLI_INSIDE_YES/touch->touches/'
-mutate "residues believed without a bound" src/narrow/words.c 's/scale) < 0x1p126/scale) < 0x1p1000/; s/scaled < 0x1p126/scaled < 0x1p1000/'
+mutate "contact at the end forgotten in words" src/narrow/words.c 's/touch->touches || (sign\[3\] == 0 \&\& meets_at(&p, 1))/touch->touches/'
+mutate "residues believed without a bound" src/narrow/words.c 's/scale) < 0x1p126/scale) < 0x1p1000/'
 mutate "one couple of edges dropped" src/narrow/exact_pair.c 's/    return 4;/    return 3;/'
 mutate "one couple of edges dropped in doubles" src/narrow/span.c \
     's/inner_segment_keeps(&side, &l->v, &l->difference\[2\], level, order)/true/'
