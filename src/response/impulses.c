@@ -6,7 +6,7 @@
 
 /* Zones of few rows are solved to rounding, larger ones to a few digits: whatever the impulses are, they are central and keep
  * both momenta. */
-enum { FEW_ROWS = 64 };
+enum { FEW_ROWS = 64, ENOUGH_SWEEPS = 128 };
 
 typedef struct job {
     rdli_response *response;
@@ -93,9 +93,10 @@ static void solve_zone(void *data, size_t index, unsigned worker)
     double fine = row <= FEW_ROWS ? 0x1p-48 : 0x1p-16;
     for (uint32_t k = 0; k < row; k++)
         rows[k].tolerance = fmax(rows[k].tolerance, fastest * fine);
+    uint32_t most = row <= FEW_ROWS || j->piece->sweeps_max < ENOUGH_SWEEPS ? j->piece->sweeps_max : ENOUGH_SWEEPS;
     rdli_problem problem = { zone->vertex_count, row, inverse, (const double (*)[3])target, rows, load,
         (double (*)[3])r->solutions.data + zone->vertex_first, (double (*)[3])r->scratch.data + zone->vertex_first,
-        (double *)r->row_work.data + RDLI_SOLVE_WORK * (size_t)zone->row_first, NULL, j->piece->sweeps_max, false };
+        (double *)r->row_work.data + RDLI_SOLVE_WORK * (size_t)zone->row_first, NULL, most, false };
     rdli_solve(&problem);
     row = 0;
     for (uint32_t i = 0; i < zone->contact_count; i++)

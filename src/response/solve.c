@@ -7,8 +7,10 @@
 typedef struct state {
     rdli_problem *problem;
     double *gradient, *direction, *image, *scaled; /* row_count each: g, p, A p, scaled multipliers */
-    uint32_t *list;                                /* the rows that matter now, see refresh */
+    uint32_t *list, *other;                        /* the rows that matter now, see refresh; room for the next ones */
     size_t listed;
+    uint32_t *mark, *row_of, *start;               /* rows at vertex v: row_of[start[v] .. start[v + 1] - 1] */
+    uint32_t round;
     double step_bar;                               /* fixed step length of the projection, 1 / |A| */
 } state;
 
@@ -17,8 +19,9 @@ enum {
     CONJUGATE = 96,   /* conjugate gradient steps after which the problem counts as degenerate, and relaxation goes on */
     CHECK = 8,        /* sweeps between two looks at the residuals of the listed rows */
     REFRESH = 32,     /* conjugate gradient steps between two looks at all rows */
-    LOCAL = 64,       /* sweeps over the neighbourhood of what is not done between two looks at all rows */
-    FEW_OPEN = 16     /* fewer than one in so many rows not done: conjugate gradients on all of them would be a waste */
+    LOCAL = 64,       /* sweeps over the neighbourhood of what is not done before its surroundings are looked at */
+    LOCAL_ROUNDS = 64, /* such looks between two looks at all rows */
+    FEW_OPEN = 16     /* fewer than one in so many rows not done: work on all of them would be a waste */
 };
 /* Over-relaxation of the sweeps: any number between 0 and 2 converges; common practice for contact problems. */
 static const double over_relaxation = 1.3;
@@ -325,12 +328,12 @@ static void relax_ahead(state *s, double *momentum)
     *momentum = uphill > 0.0 ? 1.0 : fmin(next, momentum_most);
 }
 
-/* Sweeps over the list until it is done, or `most` of them; counts them as shares of sweeps over all rows. */
-static void relax_list(state *s, double *work, uint32_t most)
+/* Sweeps over the list until it is done, or `most` of them; counts them as shares of sweeps over all rows. Going ahead moves
+ * all vertices: not for short lists. */
+static void relax_list(state *s, double *work, uint32_t most, bool plain)
 {
     rdli_problem *problem = s->problem;
     double momentum = 1.0;
-    bool plain = s->listed < problem->vertex_count; /* going ahead moves all vertices */
     for (size_t i = 0; i < s->listed; i++)
         s->direction[s->list[i]] = s->scaled[s->list[i]];
     memcpy(problem->scratch, problem->solution, plain ? 0 : problem->vertex_count * sizeof problem->scratch[0]);
@@ -349,40 +352,86 @@ static void relax_list(state *s, double *work, uint32_t most)
     }
 }
 
-/* Leaves on the list only rows at vertices of rows that are not done; returns how many are not. Most of a zone is done after
- * a few sweeps, and waits for single vertices that are wedged between rows of nearly opposite directions. */
-static size_t list_neighbours(state *s)
+/* Sorts the rows by their vertices (counting sort); false where the work space is too small for that: rows much fewer than
+ * vertices. */
+static bool index_rows(state *s)
 {
-    rdli_problem *problem = s->problem;
-    size_t open = 0, kept = 0;
-    for (size_t i = 0; i < problem->vertex_count; i++)
-        problem->scratch[i][0] = 0.0;
-    for (size_t i = 0; i < s->listed; i++) {
-        const rdli_row *row = &problem->rows[s->list[i]];
-        if (row_done(s, s->list[i]))
-            continue;
-        open++;
-        for (uint32_t k = 0; k < row->used; k++)
-            problem->scratch[row->vertex[k]][0] = 1.0;
-    }
-    for (size_t i = 0; i < s->listed; i++) {
-        const rdli_row *row = &problem->rows[s->list[i]];
-        bool near = false;
-        for (uint32_t k = 0; k < row->used; k++)
-            near = near || problem->scratch[row->vertex[k]][0] != 0.0;
-        if (near)
-            s->list[kept++] = s->list[i];
-    }
-    s->listed = kept;
-    return open;
+    const rdli_problem *problem = s->problem;
+    size_t n = problem->vertex_count;
+    if (n + 1 > 2 * problem->row_count)
+        return false;
+    memset(s->start, 0, (n + 1) * sizeof *s->start);
+    for (size_t r = 0; r < problem->row_count; r++)
+        for (uint32_t k = 0; k < problem->rows[r].used; k++)
+            s->start[problem->rows[r].vertex[k]]++;
+    for (size_t v = 1; v <= n; v++)
+        s->start[v] += s->start[v - 1];
+    for (size_t r = problem->row_count; r-- > 0;)
+        for (uint32_t k = 0; k < problem->rows[r].used; k++)
+            s->row_of[--s->start[problem->rows[r].vertex[k]]] = (uint32_t)r;
+    return true;
 }
 
-/* Relaxes the neighbourhood of what is not done until a look at all rows finds nothing. */
+/* Replaces the list by the rows at the vertices of its open, or of all its rows. scratch marks the vertices. */
+static void list_around(state *s, bool open_only)
+{
+    rdli_problem *problem = s->problem;
+    size_t count = 0;
+    double now = (double)++s->round;
+    for (size_t i = 0; i < s->listed; i++) {
+        const rdli_row *row = &problem->rows[s->list[i]];
+        if (open_only && row_done(s, s->list[i]))
+            continue;
+        for (uint32_t k = 0; k < row->used; k++) {
+            uint32_t v = row->vertex[k];
+            if (problem->scratch[v][0] == now)
+                continue;
+            problem->scratch[v][0] = now;
+            for (uint32_t e = s->start[v]; e < s->start[v + 1]; e++) {
+                uint32_t r = s->row_of[e];
+                if (s->mark[r] == s->round || problem->rows[r].scale == 0.0)
+                    continue;
+                s->mark[r] = s->round;
+                s->other[count++] = r;
+            }
+        }
+    }
+    uint32_t *swap = s->list;
+    s->list = s->other;
+    s->other = swap;
+    s->listed = count;
+}
+
+/* Relaxes what is not done and its neighbourhood, and looks again only at the rows around, until nothing there is open. Most
+ * of a zone is done after a few sweeps, and waits for single vertices that are wedged between rows of nearly opposite
+ * directions. */
+static void relax_around(state *s, double *work, double most)
+{
+    rdli_problem *problem = s->problem;
+    memset(s->mark, 0, problem->row_count * sizeof *s->mark);
+    for (size_t v = 0; v < problem->vertex_count; v++)
+        problem->scratch[v][0] = 0.0;
+    s->round = 0;
+    for (int round = 0; round < LOCAL_ROUNDS && *work < most; round++) {
+        list_around(s, true);
+        if (s->listed == 0)
+            return;
+        relax_list(s, work, LOCAL, true);
+        list_around(s, false);
+        listed_gradient(s);
+        *work += (double)s->listed / (double)problem->row_count;
+    }
+}
+
+/* Relaxes, locally where that serves, until a look at all rows finds nothing open. */
 static bool relax_locally(state *s, double *work, double most)
 {
-    for (double rounds = 0.0; *work < most && rounds < most; rounds += 1.0) {
-        list_neighbours(s);
-        relax_list(s, work, LOCAL);
+    bool indexed = index_rows(s);
+    for (double looks = 0.0; *work < most && looks < most / CHECK; looks += 1.0) {
+        if (indexed && count_open(s) < s->listed / FEW_OPEN)
+            relax_around(s, work, most);
+        else
+            relax_list(s, work, LOCAL, s->listed < s->problem->vertex_count);
         *work += 1.0;
         refresh(s);
         if (all_done(s))
@@ -426,8 +475,11 @@ static const double hopeless = 0.125;
 rdli_solved rdli_solve(rdli_problem *problem)
 {
     size_t n = problem->row_count;
-    state s = { problem, problem->work, problem->work + n, problem->work + 2 * n, problem->work + 3 * n,
-        (uint32_t *)(problem->work + 4 * n), 0, negligible };
+    uint32_t *numbers = (uint32_t *)(problem->work + 4 * n);
+    state s = { .problem = problem, .gradient = problem->work, .direction = problem->work + n,
+        .image = problem->work + 2 * n, .scaled = problem->work + 3 * n, .list = numbers, .other = numbers + n,
+        .mark = numbers + 2 * n, .row_of = numbers + 3 * n, .start = numbers + 7 * n, .step_bar = negligible };
+    static_assert(RDLI_SOLVE_WORK * sizeof(double) >= 4 * sizeof(double) + 9 * sizeof(uint32_t), "room for the lists");
     rdli_solved solved = { 0, false, false, 0.0, 0.0 };
     scale_rows(problem);
     memset(s.scaled, 0, n * sizeof(double));
@@ -442,11 +494,11 @@ rdli_solved rdli_solve(rdli_problem *problem)
     solved.converged = all_done(&s);
     double most = problem->sweeps_max, work = 0.0;
     if (!solved.converged) {
-        relax_list(&s, &work, RELAXATIONS);
+        relax_list(&s, &work, RELAXATIONS, s.listed < problem->vertex_count);
         refresh(&s);
         solved.converged = all_done(&s);
     }
-    if (!solved.converged && !problem->feasible_only && count_open(&s) > n / FEW_OPEN)
+    if (!solved.converged && !problem->feasible_only && count_open(&s) >= s.listed / FEW_OPEN)
         solved.converged = descend(&s, &solved, &work, CONJUGATE);
     if (!solved.converged && !solved.infeasible)
         solved.converged = relax_locally(&s, &work, most);

@@ -17,7 +17,7 @@ typedef struct rdli_row {
     double scale;         /* 1 / sqrt(A_rr), filled by the solve; 0 = nothing in this row can move */
 } rdli_row;
 
-enum { RDLI_SOLVE_WORK = 5 }; /* doubles of work space per row */
+enum { RDLI_SOLVE_WORK = 9 }; /* doubles of work space per row */
 
 typedef struct rdli_problem {
     size_t vertex_count, row_count;

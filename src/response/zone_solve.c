@@ -139,6 +139,8 @@ enum { REFINING_SWEEPS = 128 };
  * above, so that every row ends above its floor although the solve is quick; each clean pass takes four fifths of that
  * back. */
 static const double slop_share = 0.005, slop_growth = 1.5, slop_kept = 0.2, slop_most = 0.5;
+/* After clean passes have taken most of it, a violation brings so much of the correction back. */
+static const double slop_again = 0x1p-10;
 
 static void keep_slop(const job *j, const rdli_zone *zone, double slop)
 {
@@ -147,7 +149,8 @@ static void keep_slop(const job *j, const rdli_zone *zone, double slop)
         j->contacts[order[i]].slop = slop;
 }
 
-static double zone_slop(const job *j, const rdli_zone *zone, size_t rows)
+/* correction: the zone's worst violation, m. */
+static double zone_slop(const job *j, const rdli_zone *zone, size_t rows, double correction)
 {
     const uint32_t *order = (const uint32_t *)j->response->zone_contacts.data + zone->contact_first;
     double slop = 0.0, floor = DBL_MAX;
@@ -161,7 +164,7 @@ static double zone_slop(const job *j, const rdli_zone *zone, size_t rows)
     if (rows <= FEW_ROWS)
         slop = 0.0;
     else if (zone->violated)
-        slop = fmin(again ? slop_growth * slop : slop, slop_most * floor);
+        slop = fmin(again ? fmax(slop_growth * slop, slop_again * correction) : slop, slop_most * floor);
     else
         slop *= slop_kept;
     keep_slop(j, zone, slop);
@@ -183,7 +186,7 @@ static void set_tolerances(const job *j, const rdli_zone *zone, rdli_problem *pr
             largest = fmax(largest, fabs(problem->target[i][k]));
     }
     double fine = problem->row_count <= FEW_ROWS ? 1e-12 : 2e-8;
-    double resolved = largest * 0x1p-50, slop = zone_slop(j, zone, problem->row_count);
+    double resolved = largest * 0x1p-50, slop = zone_slop(j, zone, problem->row_count, correction);
     for (size_t r = 0; r < problem->row_count; r++) {
         double margin = fmin(problem->rows[r].tolerance, 0.5 * correction) + 2.0 * resolved;
         rdli_row *row = &problem->rows[r];
