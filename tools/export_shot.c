@@ -114,7 +114,7 @@ int export_scrambled(exporter *e, uint64_t seed)
     const rdl_shot_info *about = rdl_shot_describe(e->shot);
     rdl_scene scene = *e->scene;
     rdl_part *parts = malloc(scene.part_count * sizeof *parts);
-    char(*names)[24] = malloc(scene.part_count * sizeof *names);
+    char(*names)[32] = malloc(scene.part_count * sizeof *names);
     rdl_shot_options options;
     rdl_shot_writer *writer = NULL;
     rdl_fault fault = {0, ""};

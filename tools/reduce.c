@@ -175,6 +175,8 @@ static int begin_search(job *j)
         r->keep.exit_code = -2;
         reduce_try(r, r->mask, r->start, r->proposed, &first);
         int code = 0;
+        if (cli_interrupted())
+            return CLI_INTERRUPTED;
         if (sscanf(first.what, "the command ends with code %d", &code) != 1 || code < 0) {
             cli_error("reduce", "--keep: the command could not be run");
             return CLI_NOT_FINISHED;
@@ -192,6 +194,8 @@ static int begin_search(job *j)
                             "only the motion is reduced", cli_clean(j->path), j->frame);
         return CLI_DONE;
     }
+    if (cli_interrupted())
+        return CLI_INTERRUPTED; /* nothing was found out */
     cli_error("reduce", "%s: frame %zu does not show: %s", cli_clean(j->path), j->frame, cli_clean(r->keep.text));
     return CLI_BAD_INPUT;
 }

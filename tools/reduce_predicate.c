@@ -120,10 +120,9 @@ static void judge_way(const predicate *p, const reduced *r, const stepper *st, f
         judge_one(j, from, from, false, true, found);
         judge_one(j, from, end, false, true, found);
     } else {
-        const rdl_report *report = &st->result.report;
-        size_t count = p->as_given ? 0 : report->waypoint_count;
+        size_t count = p->as_given ? 0 : st->result.report.waypoint_count;
         for (size_t w = 0; w < count; w++) {
-            const double *to = report->waypoint_positions + w * state;
+            const double *to = st->result.report.waypoint_positions + w * state;
             judge_one(j, from, to, true, false, found);
             from = to;
         }

@@ -32,3 +32,28 @@ for number in INT TERM HUP; do
     "$raddle" check out.h5.part >out || fail "interrupt-$number" "the part is not clean"
     rm -f out.h5.part
 done
+# reduce keeps the best so far.
+make resolve resolve.h5
+cat >slow.sh <<'END'
+echo >>"$2"
+sleep 0.1
+"$1" check "$3" >/dev/null
+END
+checks=$((checks + 1))
+"$raddle" reduce resolve.h5 --keep "command:sh slow.sh '$raddle' begun \"\$1\"" --jobs 1 -o best.h5 >out 2>err &
+child=$!
+tries=0
+# The first two runs of the command find out what to look for.
+while [ "$(cat begun 2>/dev/null | wc -l)" -lt 4 ] && [ "$tries" -lt 400 ]; do
+    sleep 0.05
+    tries=$((tries + 1))
+done
+kill -s INT "$child"
+wait "$child"
+code=$?
+[ "$code" -eq 130 ] || fail interrupt-reduce "exit code $code instead of 130"
+checks=$((checks + 1))
+"$raddle" info best.h5 >out || fail interrupt-reduce 'no shot was kept'
+holds interrupt-reduce-files -f best.obj -a -f best.png
+rm -f best.* begun slow.sh resolve.h5
+only long.h5

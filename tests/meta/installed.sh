@@ -81,7 +81,7 @@ judge 'pkg-config knows the version' pkg-config --exact-version="$(sed -n 's/^Ve
 for file in "$source"/docs/examples/*.c; do
     [ -f "$file" ] || continue
     package=raddle
-    if grep -q 'raddle/shot\.h' "$file"; then
+    if grep -qE 'raddle/(shot|recorder)\.h' "$file"; then
         package=raddle_shot
     fi
     judge "${file##*/} with the shared library" example "$file" "$package" shared
@@ -90,7 +90,7 @@ find "$work/stage" -name 'libraddle*.so*' -exec rm {} +
 for file in "$source"/docs/examples/*.c; do
     [ -f "$file" ] || continue
     package=raddle
-    if grep -q 'raddle/shot\.h' "$file"; then
+    if grep -qE 'raddle/(shot|recorder)\.h' "$file"; then
         package=raddle_shot
     fi
     judge "${file##*/} with the static library" example "$file" "$package" static
