@@ -159,18 +159,27 @@ static bool segment_event(rdli_arena *arena, const rdli_point_segment *couple, i
     return false;
 }
 
+/* On one line there are two polynomials, one for each end of the segment, and the earlier event counts. */
 static bool first_couple_event(rdli_arena *arena, const rdli_point_segment *couple, double *lo, double *hi, uint8_t *depth)
 {
+    bool any = false;
+    *lo = *hi = 1;
     for (int which = 0; which < 2; which++) {
         size_t mark = arena->used;
         event what = {NULL, NULL, couple};
         rdli_poly f;
-        bool found = segment_event(arena, couple, which, &f) && first_event(arena, &f, &what, lo, hi, depth);
+        double from, to;
+        bool found = segment_event(arena, couple, which, &f) && first_event(arena, &f, &what, &from, &to, depth);
         arena->used = mark;
-        if (found || f.degree == 2) /* not on one line: there is no second polynomial */
-            return found;
+        if (found) {
+            any = true;
+            *lo = from < *lo ? from : *lo;
+            *hi = to < *hi ? to : *hi;
+        }
+        if (f.degree == 2) /* not on one line: there is no second polynomial */
+            break;
     }
-    return false;
+    return any;
 }
 
 static bool first_planar_event(rdli_arena *arena, const rdli_exact_pair *pair, const rdli_cubic *doubles, rdl_touch *touch)
