@@ -9,6 +9,10 @@
 static const double fence_share = 0.45, whole_share = 0.6, rigid_share = 0.75, shorten_share = 0.55;
 /* Until then a zone that breaks in refinement is mended; afterwards what was certified stands. */
 static const double restore_share = 0.3;
+/* And only so long: what takes more passes is not put at risk for a closer answer. */
+static const double refine_share = 0.3;
+/* Beyond so many floors a pair that pushes does so by a stale plane. */
+static const double afar = 1.05;
 /* Certified zones are refined towards the nearest point this often at most. */
 enum { REFINEMENTS = 6 };
 /* And goes back to what was certified this often, before that stands. */
@@ -58,6 +62,27 @@ static double shorter_lead(double lead, double floor)
     return fmin(0.25 * lead, 8.0 * lead * (lead / floor));
 }
 
+/* A contact pushes although its pair ends well beyond its floor: its plane is stale, and vertices that nothing comes near were
+ * moved. Fences and blocked paths may push from afar. */
+static bool pushes_from_afar(const rdl_engine *engine, const rdli_piece *piece, const rdli_zone *zone)
+{
+    const uint32_t *order = (const uint32_t *)engine->response.zone_contacts.data + zone->contact_first;
+    const rdli_contact *contacts = engine->contacts.data;
+    for (uint32_t i = 0; i < zone->contact_count; i++) {
+        const rdli_contact *contact = &contacts[order[i]];
+        double x[4][3];
+        rdli_closest closest;
+        if (contact->fenced || contact->blocks > 1 || !rdli_carries_load(contact))
+            continue;
+        for (int k = 0; k < 4; k++)
+            memcpy(x[k], piece->trial[contact->vertex[k]], sizeof x[k]);
+        rdli_closest_points((int)contact->kind, (const double (*)[3])x, &closest);
+        if (closest.distance_lo > afar * (contact->floor + contact->ahead + contact->slop))
+            return true;
+    }
+    return false;
+}
+
 /* The zone is certified as it stands: keep it, and look whether a closer answer is worth another pass. */
 static bool wants_refinement(rdl_engine *engine, const rdli_piece *piece, rdli_zone *zone, double share)
 {
@@ -93,8 +118,10 @@ static bool wants_refinement(rdl_engine *engine, const rdli_piece *piece, rdli_z
         }
         return true;
     }
-    /* A zone that took long to certify is not put at risk again for a closer answer. */
-    return !frozen && least <= REFINEMENTS && share < fence_share;
+    /* A zone that took long to certify is not put at risk again for a closer answer, unless it is plainly not a near one. */
+    if (!frozen && least <= REFINEMENTS && share < refine_share)
+        return true;
+    return share < fence_share && pushes_from_afar(engine, piece, zone);
 }
 
 /* A zone that was certified and broke in refinement goes back to what was certified. The contacts that broke aim higher in
